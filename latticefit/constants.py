@@ -1,0 +1,32 @@
+"""Physical constants, all from `scipy.constants` (CODATA; R is exact since the SI of 2019)."""
+
+from __future__ import annotations
+
+from math import pi
+from typing import Final
+
+from scipy import constants as _codata
+
+__all__ = [
+    "CALORIE_THERMOCHEMICAL",
+    "DEBYE_CUBIC",
+    "GAS_CONSTANT",
+    "NERNST_LINDEMANN_A0",
+    "STANDARD_TEMPERATURE",
+]
+
+GAS_CONSTANT: Final[float] = float(_codata.R)
+"""Molar gas constant R, J/(mol K)."""
+
+DEBYE_CUBIC: Final[float] = 12 * pi**4 * GAS_CONSTANT / 5
+"""12 pi^4 R/5, J/(mol K): heat capacity of one mole of atoms is this times (T/theta_D)^3 at low T (Debye 1912)."""
+
+STANDARD_TEMPERATURE: Final[float] = 298.15
+"""Reference temperature of standard thermodynamic tables, K."""
+
+CALORIE_THERMOCHEMICAL: Final[float] = float(_codata.calorie)
+"""Thermochemical calorie, J."""
+
+NERNST_LINDEMANN_A0: Final[float] = 0.0214 / CALORIE_THERMOCHEMICAL
+"""Universal coefficient A0 = 0.0214 mol K/cal of W. Nernst and F. A. Lindemann, Z. Elektrochem. 17, 817 (1911),
+in mol K/J: Cp - Cv = A0 Cp^2 T/Tm per mole of atoms."""
