@@ -23,6 +23,7 @@ __all__ = [
     "ExcludedRow",
     "FitRecord",
     "FloatArray",
+    "Frozen",
     "Measurement",
     "ModelSettings",
     "NamedWarning",
@@ -33,6 +34,7 @@ __all__ = [
     "Reading",
     "Repair",
     "ReportSettings",
+    "Quantity",
     "ResidualBand",
     "ResidualStatistics",
     "RunSettings",
@@ -50,7 +52,7 @@ SigmaKind = Literal["stated", "estimated"]
 Level = Literal["note", "warn", "stop"]
 
 
-class _Frozen:
+class Frozen:
     """Make every array of a frozen dataclass read-only and every mapping a read-only view."""
 
     def __post_init__(self) -> None:
@@ -105,7 +107,7 @@ class RunSettings:
 
 
 @dataclass(frozen=True)
-class ModelSettings(_Frozen):
+class ModelSettings(Frozen):
     """The `[model]` table: which terms, how the modes are summed, Cp-Cv, and what the user holds by name."""
 
     terms: str | None = None
@@ -193,7 +195,7 @@ class Reading:
 
 
 @dataclass(frozen=True)
-class Measurement(_Frozen):
+class Measurement(Frozen):
     """Measured heat capacity of one sample, in file order, unusable rows omitted.
 
     Attributes
@@ -229,7 +231,7 @@ class Measurement(_Frozen):
 
 
 @dataclass(frozen=True)
-class PreparedData(_Frozen):
+class PreparedData(Frozen):
     """The points that are fitted, by ascending temperature, each with its standard uncertainty.
 
     Attributes
@@ -281,7 +283,7 @@ class ParameterValue:
 
 
 @dataclass(frozen=True)
-class FitRecord(_Frozen):
+class FitRecord(Frozen):
     """Result of one fit: enough to evaluate the model again without the data.
 
     Attributes
@@ -298,7 +300,8 @@ class FitRecord(_Frozen):
         Their values in SI (K; modes; J/(mol K^2); mol/J; 1/K).
     covariance : ndarray, shape (p, p)
         Of all parameters, of kind `covariance_kind`; rows of fixed parameters are zero, tied ones are filled in.
-        NaN rows mark parameters that are undetermined.
+        Directions that the data do not determine are left out of it; the parameters concerned have the status
+        "undetermined".
     scale_factor : float
         Reduced chi-square; what an absolute covariance would be multiplied by (already done when "scaled").
     condition : float
@@ -383,7 +386,7 @@ class NamedWarning:
 
 
 @dataclass(frozen=True)
-class Diagnosis(_Frozen):
+class Diagnosis(Frozen):
     """Residuals of the fitted points and what they say.
 
     Attributes
@@ -437,7 +440,7 @@ class DerivedValue:
 
 
 @dataclass(frozen=True)
-class ThermodynamicTable(_Frozen):
+class ThermodynamicTable(Frozen):
     """Thermodynamic functions on a grid, per mole of formula unit, shape (m,) each; NaN where not given.
 
     `energy` is H(T)-H(0) with quantity Cp and U(T)-U(0) with Cv, J/mol; `free_energy_function` is -(G(T)-H(0))/T,
@@ -467,7 +470,7 @@ class ThermodynamicTable(_Frozen):
 
 
 @dataclass(frozen=True)
-class PointwiseTheta(_Frozen):
+class PointwiseTheta(Frozen):
     """Calorimetric theta_D(T) of every measured point (order of the measurement), K; NaN with a reason where blank."""
 
     theta: FloatArray
@@ -476,7 +479,7 @@ class PointwiseTheta(_Frozen):
 
 
 @dataclass(frozen=True)
-class Derived(_Frozen):
+class Derived(Frozen):
     """Everything derived from a fit.
 
     `characteristic_temperatures` is keyed as in result.json; `table` is the user's or the standard grid (298.15 K is
@@ -493,7 +496,7 @@ class Derived(_Frozen):
 
 
 @dataclass(frozen=True)
-class Provenance(_Frozen):
+class Provenance(Frozen):
     """Which version made a result, when, with which packages, seed and command."""
 
     version: str

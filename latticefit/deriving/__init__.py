@@ -1,0 +1,22 @@
+"""Characteristic temperatures, thermodynamic functions on any grid, pointwise Debye temperatures."""
+
+from .characteristic import QUANTITIES, CharacteristicTemperature, mean_theta, theta_debye_moment
+from .derive import derive
+from .functions_table import default_grid, functions_table
+from .pointwise import invert_debye, model_theta, pointwise_theta
+from .propagation import propagate, standard_uncertainty
+
+__all__ = [
+    "QUANTITIES",
+    "CharacteristicTemperature",
+    "default_grid",
+    "derive",
+    "functions_table",
+    "invert_debye",
+    "mean_theta",
+    "model_theta",
+    "pointwise_theta",
+    "propagate",
+    "standard_uncertainty",
+    "theta_debye_moment",
+]

@@ -1,0 +1,56 @@
+"""Lattice models: expressions, sums of terms, Cp-Cv, parametrisation; and the same terms as lmfit Models."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from .cp_cv import CP_CV_FORMS, CpCvForm, cp_cv_form
+from .expression import format_expression, parse_expression
+from .model import (
+    Model,
+    PlacedTerm,
+    build_model,
+    components,
+    cp_cv_coefficient,
+    harmonic_heat_capacity,
+    heat_capacity,
+    low_temperature_theta,
+    partials,
+    total_modes,
+)
+from .parametrisation import Parametrisation, jacobian, residual
+from .thermodynamics import energy, entropy, zero_point_energy
+
+__all__ = [
+    "CP_CV_FORMS",
+    "CpCvForm",
+    "Model",
+    "Parametrisation",
+    "PlacedTerm",
+    "build_model",
+    "components",
+    "cp_cv_coefficient",
+    "cp_cv_form",
+    "energy",
+    "entropy",
+    "format_expression",
+    "harmonic_heat_capacity",
+    "heat_capacity",
+    "jacobian",
+    "low_temperature_theta",
+    "parse_expression",
+    "partials",
+    "residual",
+    "total_modes",
+    "zero_point_energy",
+]
+
+
+def __getattr__(name: str) -> Any:
+    """Give the lmfit Model classes (DebyeModel, EinsteinModel ...) on first use: lmfit takes a second to import."""
+    if name.endswith("Model") or name == "weighted_jacobian":
+        from . import lmfit_models
+
+        if hasattr(lmfit_models, name):
+            return getattr(lmfit_models, name)
+    raise AttributeError(f"module {__name__!r} has no attribute {name!r}")

@@ -1,0 +1,109 @@
+"""Thermodynamic functions of a fitted model on any grid, with uncertainties and origin."""
+
+from __future__ import annotations
+
+from typing import Literal
+
+import numpy as np
+
+from ..models import (
+    Model,
+    build_model,
+    components,
+    cp_cv_coefficient,
+    energy,
+    entropy,
+    harmonic_heat_capacity,
+    heat_capacity,
+)
+from ..records import FitRecord, FloatArray, Quantity, ThermodynamicTable
+from .propagation import propagate, standard_uncertainty
+
+__all__ = ["default_grid", "functions_table"]
+
+Origin = Literal["measured", "extrapolated_below", "extrapolated_above"]
+
+_ABOVE = 1.25  # beyond this times the highest fitted point u is withheld: nothing tests Cp - Cv there
+
+BELOW_REASON = "below the lowest fitted point: the covariance of one model is no measure of what it does not see"
+ABOVE_REASON = "more than a quarter above the highest fitted point: the covariance of one model is no measure there"
+
+
+def default_grid(lowest: float, highest: float) -> FloatArray:
+    """Round temperatures from a fifth of the lowest point to the highest, K.
+
+    Steps grow with temperature the way printed tables do; 298.15 K is added by `functions_table`'s callers.
+    """
+    steps = ((0.1, 1.0, 0.1), (1.0, 5.0, 0.5), (5.0, 20.0, 1.0), (20.0, 50.0, 5.0), (50.0, 3000.0, 10.0))
+    grid = np.concatenate([np.round(np.arange(low, high, step), 6) for low, high, step in steps])
+    kept = grid[(grid >= lowest / 5) & (grid <= highest)]
+    return np.asarray(kept if kept.size else np.array([lowest]))
+
+
+def _stack(model: Model, T: FloatArray, values: FloatArray) -> FloatArray:
+    """Heat capacity, energy, entropy and free-energy function, shape (4, m)."""
+    H, S = energy(model, T, values), entropy(model, T, values)
+    return np.stack([heat_capacity(model, T, values), H, S, S - H / T])
+
+
+def _solvable(model: Model, T: FloatArray, values: FloatArray) -> FloatArray:
+    """1 where Cp - Cv has a solution, NaN where the temperature is too high for its form."""
+    if model.cp_cv.name != "nernst-lindemann":
+        return np.ones_like(T)
+    return np.where(
+        4 * cp_cv_coefficient(model, values) * T * harmonic_heat_capacity(model, T, values) < 1, 1.0, np.nan
+    )
+
+
+def functions_table(
+    fit: FitRecord, temperature: FloatArray, lowest: float, highest: float, quantity: Quantity
+) -> ThermodynamicTable:
+    """Evaluate a fit on a grid.
+
+    Parameters
+    ----------
+    fit : FitRecord
+    temperature : ndarray, shape (m,)
+        K, positive.
+    lowest, highest : float
+        Range of the fitted points, K: rows outside are marked as extrapolated.
+    quantity : {"Cp", "Cv"}
+
+    Returns
+    -------
+    ThermodynamicTable
+        Closed forms of the terms; quadrature only for Cp - Cv. u is NaN, with the reason, below the lowest point and
+        far above the highest.
+    """
+    T = np.asarray(temperature, dtype=float)
+    model = build_model(fit.terms, fit.cp_cv)
+    values, covariance = np.array(fit.values), np.array(fit.covariance)
+    rows = _stack(model, T, values) * _solvable(model, T, values)
+    u_fit = propagate(lambda v: _stack(model, T, v), values, covariance)
+    origin: tuple[Origin, ...] = tuple(
+        "extrapolated_below" if t < lowest else "extrapolated_above" if t > highest else "measured" for t in T
+    )
+    reasons = tuple(BELOW_REASON if t < lowest else ABOVE_REASON if t > _ABOVE * highest else None for t in T)
+    withheld = np.where([reason is None for reason in reasons], 1.0, np.nan)
+    u = standard_uncertainty(u_fit, fit.scale_factor, fit.covariance_kind) * withheld
+    below = float(entropy(model, np.array([lowest]), values)[0])
+    return ThermodynamicTable(
+        quantity=quantity,
+        temperature=T,
+        heat_capacity=rows[0],
+        heat_capacity_u=u[0],
+        heat_capacity_u_fit=u_fit[0],
+        energy=rows[1],
+        energy_u=u[1],
+        energy_u_fit=u_fit[1],
+        entropy=rows[2],
+        entropy_u=u[2],
+        entropy_u_fit=u_fit[2],
+        free_energy_function=rows[3],
+        free_energy_function_u=u[3],
+        free_energy_function_u_fit=u_fit[3],
+        entropy_fraction_below_data=np.where(lowest >= T, 1.0, below / np.maximum(rows[2], 1e-300)),
+        origin=origin,
+        u_reasons=reasons,
+        components=dict(components(model, T, values)),
+    )

@@ -1,0 +1,76 @@
+"""Calorimetric Debye temperature of single heat capacities."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from ..constants import GAS_CONSTANT
+from ..functions import debye_heat_capacity, debye_heat_capacity_derivative
+from ..models import Model, cp_cv_coefficient, harmonic_heat_capacity, heat_capacity, total_modes
+from ..records import FitRecord, FloatArray, PointwiseTheta, PreparedData
+
+__all__ = ["invert_debye", "model_theta", "pointwise_theta"]
+
+_LOW, _HIGH, _STEPS = np.log(1e-6), np.log(1e6), 64
+
+
+def invert_debye(ratio: FloatArray) -> FloatArray:
+    """Return x = theta/T at which the Debye function C/(3 N k_B) equals `ratio`; NaN outside 0 < ratio < 1.
+
+    By bisection in ln x: the function falls from 1 to 0 without a turn (P. Debye, Ann. Phys. 39, 789 (1912)).
+    """
+    ratio = np.asarray(ratio, dtype=float)
+    inside = (ratio > 0) & (ratio < 1)
+    low, high = np.full(ratio.shape, _LOW), np.full(ratio.shape, _HIGH)
+    for _ in range(_STEPS):
+        middle = (low + high) / 2
+        above = np.asarray(debye_heat_capacity(np.exp(middle))) > ratio
+        low, high = np.where(above, middle, low), np.where(above, high, middle)
+    return np.where(inside, np.exp((low + high) / 2), np.nan)
+
+
+def _harmonic(model: Model, values: FloatArray, T: FloatArray, measured: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Harmonic lattice part of measured heat capacities and its derivative with respect to them."""
+    lattice = harmonic_heat_capacity(model, T, values)
+    other = heat_capacity(model, T, values) - model.cp_cv.apply(T, lattice, cp_cv_coefficient(model, values))
+    seen = measured - other
+    harmonic = model.cp_cv.invert(T, seen, cp_cv_coefficient(model, values))
+    slope, _ = model.cp_cv.slopes(T, lattice, cp_cv_coefficient(model, values))
+    return harmonic, 1 / slope
+
+
+def _limit(model: Model, fit: FitRecord) -> float:
+    """3 n R, J/(mol K), with the declared atoms; of the fitted modes where none are known."""
+    modes = 3 * fit.atoms if fit.atoms is not None else total_modes(model, fit.values)
+    return modes * GAS_CONSTANT
+
+
+def pointwise_theta(prepared: PreparedData, fit: FitRecord, model: Model) -> PointwiseTheta:
+    """theta_D(T) of every measured point: the Debye temperature whose heat capacity it has, K.
+
+    Electronic part and Cp - Cv of the fit are removed first; u(theta) = u(C)/|dC/dtheta|. Blank, with the reason,
+    where the lattice part is at or above 3nR or not positive.
+    """
+    measurement = prepared.measurement
+    T, measured = np.asarray(measurement.temperature), np.asarray(measurement.heat_capacity)
+    if measurement.sigma is not None:
+        sigma = np.asarray(measurement.sigma)
+    else:  # estimated sigmas are one fraction of the heat capacity everywhere
+        sigma = measured * float(prepared.sigma[0] / prepared.heat_capacity[0])
+    harmonic, slope = _harmonic(model, np.asarray(fit.values), T, measured)
+    limit = _limit(model, fit)
+    x = invert_debye(harmonic / limit)
+    steepness = np.abs(np.asarray(debye_heat_capacity_derivative(np.where(np.isnan(x), 1.0, x)))) * limit / T
+    reasons = tuple(
+        None
+        if 0 < value < limit
+        else ("lattice part at or above 3nR" if value >= limit else "lattice part not positive")
+        for value in harmonic
+    )
+    u = np.where(np.isnan(x), np.nan, sigma * slope / steepness)
+    return PointwiseTheta(theta=x * T, u=u, reasons=reasons)
+
+
+def model_theta(fit: FitRecord, model: Model, T: FloatArray) -> FloatArray:
+    """theta_D(T) of the fitted harmonic lattice, K; NaN where it is not defined."""
+    return np.asarray(invert_debye(harmonic_heat_capacity(model, T, np.asarray(fit.values)) / _limit(model, fit)) * T)

@@ -1,0 +1,170 @@
+"""From prepared data and a named model to a FitRecord."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from typing import Literal, cast
+
+import numpy as np
+from numpy.typing import NDArray
+
+from ..errors import InputError
+from ..models import Model, Parametrisation, build_model
+from ..records import FitRecord, FloatArray, ModelSettings, ParameterValue, PreparedData
+from .covariance import Covariance, at_bounds, covariance
+from .setup import default_mode_sum, parametrise
+from .solve import Solution, minimise_with_lmfit
+from .start import SearchResult, search
+
+__all__ = ["fit_model"]
+
+Status = Literal["fitted", "fixed", "tied", "at_bound", "undetermined"]
+
+
+def fit_model(prepared: PreparedData, settings: ModelSettings, seed: int = 0) -> FitRecord:
+    """Fit one model, without a guess.
+
+    Parameters
+    ----------
+    prepared : PreparedData
+    settings : ModelSettings
+        With `terms` named.
+    seed : int
+        For the few starts that are drawn at random.
+
+    Returns
+    -------
+    FitRecord
+        The covariance is absolute where the sigmas are stated; where they are estimated it is scaled by the reduced
+        chi-square (R. T. Birge, Phys. Rev. 40, 207 (1932)).
+
+    Raises
+    ------
+    InputError
+        For a model that cannot be fitted to these data.
+    """
+    if settings.terms is None:
+        raise InputError("no model is named; give its terms, e.g. --terms 'debye + einstein'")
+    sample = prepared.measurement.sample
+    data = (prepared.temperature, prepared.heat_capacity, prepared.sigma)
+    model = build_model(settings.terms, settings.cp_cv)
+    if prepared.measurement.quantity == "Cv" and settings.cp_cv != "none":
+        raise InputError(
+            f"the data are Cv, so there is no Cp-Cv to describe; leave --cp-cv {settings.cp_cv} out "
+            "(or say --quantity Cp if they are heat capacities at constant pressure)"
+        )
+    par = parametrise(model, settings, sample, data[0], data[1])
+    if data[0].size < par.free.size:
+        raise InputError(
+            f"{data[0].size} points are too few for the {par.free.size} free parameters of {model.expression!r}; "
+            "use fewer terms, fix a parameter, or widen the window"
+        )
+    found = search(par, *data, dict(settings.start), seed)
+    solution = minimise_with_lmfit(found.best.parametrisation, found.best.values, *data)
+    return _record(prepared, settings, model, found, solution)
+
+
+def _record(
+    prepared: PreparedData, settings: ModelSettings, model: Model, found: SearchResult, solution: Solution
+) -> FitRecord:
+    data = (prepared.temperature, prepared.heat_capacity, prepared.sigma)
+    par, values = solution.parametrisation, solution.values
+    bound = at_bounds(par, values, *data)
+    interior = par.hold(bound, values)
+    absolute = covariance(interior, values, *data)
+    dof = data[0].size - par.free.size
+    reduced = solution.chi_square / dof if dof > 0 else 1.0
+    scaled = prepared.sigma_kind == "estimated"
+    matrix = absolute.matrix * (reduced if scaled else 1.0)
+    status = _statuses(par, bound, absolute, values, np.sqrt(np.diag(matrix)))
+    order = _sorted_order(model, values, settings)
+    u_scale = 1.0 if scaled else float(np.sqrt(max(1.0, reduced)))
+    parameters = tuple(
+        _parameter(i, model, par, values, matrix, status[i], u_scale, float(found.best.values[i])) for i in order
+    )
+    named = tuple(_renamed(each, model.names[k]) for k, each in enumerate(parameters))
+    return FitRecord(
+        terms=model.expression,
+        mode_sum=cast(Literal["fixed", "free"], default_mode_sum(settings, prepared.measurement.sample)),
+        cp_cv=model.cp_cv.name,
+        atoms=prepared.measurement.sample.atoms,
+        names=model.names,
+        values=values[order],
+        covariance=matrix[np.ix_(order, order)],
+        parameters=named,
+        covariance_kind="scaled" if scaled else "absolute",
+        scale_factor=reduced,
+        condition=absolute.condition,
+        converged=solution.converged,
+        message=solution.message,
+        chi_square=solution.chi_square,
+        degrees_of_freedom=dof,
+        free_parameters=int(par.free.size),
+        evaluations=solution.evaluations,
+        starts_tried=found.starts_tried,
+        distinct_minima=found.distinct_minima,
+    )
+
+
+def _statuses(
+    par: Parametrisation, bound: NDArray[np.intp], cov: Covariance, values: FloatArray, u: FloatArray
+) -> list[Status]:
+    status: list[Status] = []
+    for i, spec in enumerate(par.model.specs):
+        if i == par.tied:
+            status.append("tied")
+        elif i not in par.free:
+            status.append("fixed")
+        elif i in bound:
+            status.append("at_bound")
+        elif i in cov.undetermined or (spec.role == "scale" and u[i] > values[i]):
+            status.append("undetermined")
+        else:
+            status.append("fitted")
+    return status
+
+
+def _parameter(
+    i: int,
+    model: Model,
+    par: Parametrisation,
+    values: FloatArray,
+    matrix: FloatArray,
+    status: Status,
+    u_scale: float,
+    start: float,
+) -> ParameterValue:
+    spec = model.specs[i]
+    u_fit = None if status in ("undetermined", "at_bound") else float(np.sqrt(matrix[i, i]))
+    return ParameterValue(
+        name=model.names[i],
+        value=float(values[i]),
+        u=None if u_fit is None else u_fit * u_scale,
+        u_fit=u_fit,
+        unit=spec.unit,
+        status=status,
+        low=float(par.low[i]),
+        high=float(par.high[i]),
+        start=start,
+        meaning=spec.meaning,
+    )
+
+
+def _renamed(parameter: ParameterValue, name: str) -> ParameterValue:
+    return replace(parameter, name=name)
+
+
+def _sorted_order(model: Model, values: FloatArray, settings: ModelSettings) -> NDArray[np.intp]:
+    """Positions that put equal terms in order of theta, unless the user names one of their parameters."""
+    named = {*settings.start, *settings.fix, *settings.bounds}
+    order = np.arange(len(model.names))
+    kinds = {each.term.name for each in model.placed}
+    for kind in kinds:
+        same = [each for each in model.placed if each.term.name == kind]
+        if len(same) < 2 or any(model.names[i] in named for each in same for i in range(*each.slice.indices(10**6))):
+            continue
+        scale = next(k for k, spec in enumerate(same[0].term.parameters) if spec.role == "scale")
+        ranked = sorted(same, key=lambda each: values[each.slice.start + scale])
+        for place, each in zip(same, ranked, strict=True):
+            order[place.slice] = np.arange(each.slice.start, each.slice.stop)
+    return order
