@@ -146,7 +146,7 @@ def _entropy_below_data(table: ThermodynamicTable) -> tuple[NamedWarning, ...]:
             code="entropy-below-data",
             level="warn" if share > 10 * _SHARE_BELOW else "note",
             concerns="entropy",
-            message=f"{100 * share:.2g} % of S(298.15 K) comes from below the lowest fitted point, where the model stands alone",
+            message=f"{100 * share:.2g} % of S(298.15 K) comes from below the lowest point, from the model alone",
             found=share,
             threshold=_SHARE_BELOW,
             advice="u of S does not include what the model may get wrong there; points at lower temperatures would",

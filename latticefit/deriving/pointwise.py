@@ -61,14 +61,15 @@ def pointwise_theta(prepared: PreparedData, fit: FitRecord, model: Model) -> Poi
     limit = _limit(model, fit)
     x = invert_debye(harmonic / limit)
     steepness = np.abs(np.asarray(debye_heat_capacity_derivative(np.where(np.isnan(x), 1.0, x)))) * limit / T
-    reasons = tuple(
-        None
-        if 0 < value < limit
-        else ("lattice part at or above 3nR" if value >= limit else "lattice part not positive")
-        for value in harmonic
-    )
+    reasons = tuple(_blank_reason(float(value), limit) for value in harmonic)
     u = np.where(np.isnan(x), np.nan, sigma * slope / steepness)
     return PointwiseTheta(theta=x * T, u=u, reasons=reasons)
+
+
+def _blank_reason(value: float, limit: float) -> str | None:
+    if value >= limit:
+        return "lattice part at or above 3nR"
+    return None if value > 0 else "lattice part not positive"
 
 
 def model_theta(fit: FitRecord, model: Model, T: FloatArray) -> FloatArray:

@@ -117,7 +117,8 @@ def parametrise(
             i = model.index(name)
             if not low[i] <= value <= high[i]:
                 raise InputError(
-                    f"{kind} value of {name}: {value:g} {model.specs[i].unit} lies outside {low[i]:.4g} to {high[i]:.4g}"
+                    f"{kind} value of {name}: {value:g} {model.specs[i].unit} lies outside "
+                    f"{low[i]:.4g} to {high[i]:.4g}"
                 )
     total = _MODES_PER_ATOM * sample.atoms if fixed_sum and sample.atoms is not None else 0.0
     tied = _tied(model, settings, held, total) if fixed_sum else None

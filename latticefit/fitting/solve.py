@@ -44,10 +44,17 @@ def _inside(x: FloatArray, low: FloatArray, high: FloatArray) -> FloatArray:
 def _scipy(
     par: Parametrisation, x: FloatArray, data: tuple[FloatArray, FloatArray, FloatArray], tolerance: float, most: int
 ) -> tuple[FloatArray, float, bool, str, int]:
+
+    def difference(z: FloatArray) -> FloatArray:
+        return residual(par, z, *data)
+
+    def slopes(z: FloatArray) -> FloatArray:
+        return jacobian(par, z, *data)
+
     found = least_squares(
-        lambda z: residual(par, z, *data),
+        difference,
         x,
-        jac=lambda z: jacobian(par, z, *data),
+        jac=slopes,
         bounds=(par.low[par.free], par.high[par.free]),
         x_scale="jac",
         ftol=tolerance,
@@ -58,7 +65,7 @@ def _scipy(
     return found.x, 2 * float(found.cost), bool(found.status > 0), str(found.message), int(found.nfev)
 
 
-def _lmfit_parameters(par: Parametrisation, x: FloatArray) -> lmfit.Parameters:  # type: ignore[no-any-unimported]
+def _lmfit_parameters(par: Parametrisation, x: FloatArray) -> lmfit.Parameters:
     from lmfit import Parameters
 
     parameters = Parameters()
@@ -74,7 +81,7 @@ def _lmfit(
 ) -> tuple[FloatArray, float, bool, str, int]:
     import lmfit
 
-    def vector(parameters: lmfit.Parameters) -> FloatArray:  # type: ignore[no-any-unimported]
+    def vector(parameters: lmfit.Parameters) -> FloatArray:
         return np.array([each.value for each in parameters.values()])
 
     found = lmfit.minimize(

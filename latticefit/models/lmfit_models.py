@@ -34,7 +34,7 @@ def _function(term: Term) -> Callable[..., FloatArray]:
     return heat_capacity
 
 
-class TermModel(lmfit.Model):  # type: ignore[misc,no-any-unimported]
+class TermModel(lmfit.Model):  # type: ignore[misc]
     """An lmfit Model of one registered term.
 
     Parameters
@@ -53,7 +53,7 @@ class TermModel(lmfit.Model):  # type: ignore[misc,no-any-unimported]
             start = {"theta": 300.0, "modes": 3.0}.get(spec.quantity, 1e-3)
             self.set_param_hint(spec.quantity, value=start, min=spec.low, max=spec.high)
 
-    def guess(self, data: FloatArray, T: FloatArray, **kws: Any) -> lmfit.Parameters:  # type: ignore[no-any-unimported]
+    def guess(self, data: FloatArray, T: FloatArray, **kws: Any) -> lmfit.Parameters:
         """Start values from heat capacities `data` (J/(mol K)) at T (K).
 
         Modes from the largest heat capacity (Dulong and Petit), theta from the temperature of half of it, linear
@@ -73,16 +73,14 @@ class TermModel(lmfit.Model):  # type: ignore[misc,no-any-unimported]
                 values[spec.quantity] = float(data[lowest] / T[lowest])
         return lmfit.models.update_param_vals(self.make_params(**values), self.prefix, **kws)
 
-    def partials(self, parameters: lmfit.Parameters, T: FloatArray) -> dict[str, FloatArray]:  # type: ignore[no-any-unimported]
+    def partials(self, parameters: lmfit.Parameters, T: FloatArray) -> dict[str, FloatArray]:
         """Derivatives of the term with respect to each of its parameters, by full name, each of shape (n,)."""
         names = [self.prefix + spec.quantity for spec in self.term.parameters]
         columns = self.term.partials(np.asarray(T, dtype=float), *(parameters[name].value for name in names))
         return dict(zip(names, columns, strict=True))
 
 
-def _collect(  # type: ignore[no-any-unimported]
-    model: lmfit.Model, parameters: lmfit.Parameters, T: FloatArray
-) -> dict[str, FloatArray]:
+def _collect(model: lmfit.Model, parameters: lmfit.Parameters, T: FloatArray) -> dict[str, FloatArray]:
     if isinstance(model, TermModel):
         return model.partials(parameters, T)
     if isinstance(model, lmfit.model.CompositeModel) and getattr(model.op, "__name__", "") == "add":
@@ -90,7 +88,7 @@ def _collect(  # type: ignore[no-any-unimported]
     raise InputError("an analytic Jacobian is known only for latticefit's term models added with '+'")
 
 
-def weighted_jacobian(model: lmfit.Model) -> Callable[..., FloatArray]:  # type: ignore[no-any-unimported]
+def weighted_jacobian(model: lmfit.Model) -> Callable[..., FloatArray]:
     """Return a function to pass as ``fit_kws={"Dfun": ...}`` to ``model.fit``.
 
     lmfit's residual is (data - model) weights, so the columns are minus the partials times the weights, for the
@@ -108,9 +106,7 @@ def weighted_jacobian(model: lmfit.Model) -> Callable[..., FloatArray]:  # type:
         For another kind of model, or for a parameter with an expression.
     """
 
-    def dfun(  # type: ignore[no-any-unimported]
-        parameters: lmfit.Parameters, data: FloatArray, weights: FloatArray | None, T: FloatArray
-    ) -> FloatArray:
+    def dfun(parameters: lmfit.Parameters, data: FloatArray, weights: FloatArray | None, T: FloatArray) -> FloatArray:
         tied = [name for name, each in parameters.items() if each.expr]
         if tied:
             raise InputError(f"parameter {tied[0]!r} has an expression; the analytic Jacobian does not follow it")
