@@ -51,5 +51,5 @@ def propagate(function: Callable[[FloatArray], FloatArray], values: FloatArray, 
 
 
 def standard_uncertainty(u_fit: FloatArray, scale_factor: float, kind: str) -> FloatArray:
-    """u that latticefit stands behind: u_fit, times sqrt(reduced chi-square) where stated sigmas fall short."""
+    """Return u as latticefit states it: u_fit, times sqrt(reduced chi-square) where stated sigmas fall short."""
     return u_fit * (np.sqrt(max(1.0, scale_factor)) if kind == "absolute" else 1.0)

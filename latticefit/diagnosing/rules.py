@@ -128,7 +128,7 @@ def _correlated_residuals(case: Case) -> NamedWarning | None:
         ),
         found=dw if low else p,
         threshold=_DURBIN_WATSON if low else _RUNS_P,
-        advice="see the residual figure: a wave means a missing term, a step a join of runs, smoothness a smoothed table",
+        advice="look at the residuals: a wave means a missing term, a step a join of runs, smoothness a smoothed table",
     )
 
 

@@ -312,7 +312,7 @@ def search(
     ]
     rough += _rescanned(parametrisation, min(rough, key=_chi_square), given, thin)
     rough.sort(key=_chi_square)
-    near = [each for each in rough if each.chi_square < rough[0].chi_square + 10 * _REPORTED][:_REFINED]
+    near = [each for each in rough if each.chi_square <= rough[0].chi_square + 10 * _REPORTED][:_REFINED]
     fine = [minimise(parametrisation, each.values, T, measured, sigma, tolerance=1e-9) for each in near]
     best = min(fine, key=_chi_square)
     scale_positions = [i for i, spec in enumerate(model.specs) if spec.role == "scale"]
