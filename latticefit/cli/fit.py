@@ -1,0 +1,126 @@
+"""``latticefit fit``: from files or a run sheet to a report folder."""
+
+from __future__ import annotations
+
+import argparse
+import shlex
+import sys
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from ..errors import InputError
+from . import options
+from .parsing import CommandParser
+
+if TYPE_CHECKING:
+    from ..records import Analysis, Measurement, Sheet
+
+__all__ = ["parser", "run"]
+
+_EXAMPLE = (
+    "latticefit fit run.csv --formula Cu --terms 'debye + einstein + electronic' \\\n"
+    "      --cp-cv nernst-lindemann --sigma '1% below 100 K, 0.3% above'"
+)
+
+
+def parser() -> CommandParser:
+    """Return the command's parser."""
+    made = CommandParser("fit", "Fit a lattice model to measured heat capacities and write a report folder.", _EXAMPLE)
+    made.add_argument("files", nargs="+", metavar="FILE|SHEET", help="files of one sample, or one run sheet (.toml)")
+    options.add_sample_options(made)
+    options.add_column_options(made)
+    options.add_point_options(made)
+    options.add_model_options(made)
+    options.add_report_options(made)
+    made.add_argument("--allow-outside", action="store_true", help="let a sheet name files outside its own folder")
+    return made
+
+
+def _from_sheet(arguments: argparse.Namespace) -> tuple[Sheet, Path, Path | None]:
+    """The request of a run sheet, the folder its paths start from, and the report folder that was asked for."""
+    from dataclasses import replace
+
+    from ..reading import read_sheet
+
+    if len(arguments.files) > 1:
+        raise InputError("give one run sheet, or data files, not both; a sheet lists its files in [[run]] tables")
+    given = options.given_options(arguments, parser())
+    if given:
+        raise InputError(f"{given[0]} is given beside a run sheet; write it into the sheet {arguments.files[0]!r}")
+    path = Path(arguments.files[0])
+    sheet = read_sheet(path, arguments.allow_outside)
+    out = path.parent / sheet.report.out if sheet.report.out else None
+    return replace(sheet, report=options.report_settings(arguments, sheet.report)), path.parent, out
+
+
+def _from_options(arguments: argparse.Namespace) -> tuple[Sheet, Path, Path | None]:
+    from ..records import Sheet
+
+    if arguments.allow_outside:
+        raise InputError("--allow-outside concerns run sheets; files on the command line may lie anywhere")
+    runs = tuple(options.run_settings(arguments, file) for file in arguments.files)
+    sheet = Sheet(
+        options.sample_settings(arguments), runs, options.model_settings(arguments), options.report_settings(arguments)
+    )
+    return sheet, Path(), None
+
+
+def _out_folder(arguments: argparse.Namespace, sheet: Sheet, from_sheet: Path | None) -> Path | None:
+    """Where the report goes; None when only JSON is wanted."""
+    if arguments.out is not None:
+        return Path(arguments.out)
+    if arguments.json:
+        return None
+    return from_sheet or Path(f"{Path(sheet.runs[0].file).stem}_latticefit")
+
+
+def run(arguments: argparse.Namespace) -> int:
+    """Fit, write the report, print the summary or the JSON record."""
+    from ..reading import read_measurement
+
+    any_sheet = any(options.is_sheet(file) for file in arguments.files)
+    sheet, base, from_sheet = (_from_sheet if any_sheet else _from_options)(arguments)
+    if sheet.model.terms is None:
+        raise InputError("this version fits a model that you name; give --terms, e.g. --terms 'debye + einstein'")
+    out = _out_folder(arguments, sheet, from_sheet)
+    if out is not None:
+        from ..report import check_out_folder
+
+        check_out_folder(out, arguments.replace)
+
+    def tell(words: str) -> None:
+        if not arguments.quiet:
+            print(f"latticefit: {words}", file=sys.stderr, flush=True)
+
+    measurement = read_measurement(sheet.sample, sheet.runs, base)
+    _tell_repairs(measurement, tell)
+    return _finish(arguments, sheet, measurement, out, tell)
+
+
+def _tell_repairs(measurement: Measurement, tell: object) -> None:
+    assert callable(tell)
+    for repair in measurement.repairs:
+        where = repair.file if repair.line is None else f"{repair.file}, line {repair.line}"
+        tell(f"{where}: {repair.message}")
+
+
+def _finish(
+    arguments: argparse.Namespace, sheet: Sheet, measurement: Measurement, out: Path | None, tell: object
+) -> int:
+    from ..analysis import analyse
+    from ..report import json_text, result_record, summary_text, write_report
+
+    assert callable(tell)
+    command = shlex.join(["latticefit", *sys.argv[1:]])
+    analysis = analyse(sheet, measurement, command=command, progress=tell)
+    if out is not None:
+        tell("writing the report")
+        write_report(analysis, out, arguments.replace, sheet.report.figures)
+    print(json_text(result_record(analysis)) if arguments.json else summary_text(analysis, out), end="")
+    return 0 if _trustworthy(analysis) else 3
+
+
+def _trustworthy(analysis: Analysis) -> bool:
+    """Whether anything came out: the fit converged and determined at least one free parameter, or had none."""
+    free = [each for each in analysis.fit.parameters if each.status not in ("fixed", "tied")]
+    return analysis.fit.converged and (not free or any(each.status == "fitted" for each in free))

@@ -1,0 +1,46 @@
+"""Frozen records handed from stage to stage: what was asked, read, prepared, fitted, found and derived.
+
+A record holds facts and no logic. Temperatures are in K; heat capacity and entropy in J/(mol K), energy in
+J/mol, per mole of formula unit; everything else in SI. Arrays inside a record are read-only.
+"""
+
+from __future__ import annotations
+
+from .base import Basis, FloatArray, Frozen, Level, Quantity, SigmaKind
+from .data import ExcludedRow, Measurement, PreparedData, Reading, Repair, Sample
+from .derived import Analysis, Derived, DerivedValue, PointwiseTheta, Provenance, ThermodynamicTable
+from .findings import Diagnosis, FitRecord, NamedWarning, ParameterValue, ResidualBand, ResidualStatistics, ValidityFact
+from .request import ModelSettings, ReportSettings, RunSettings, SampleSettings, Sheet
+
+__all__ = [
+    "Analysis",
+    "Basis",
+    "Derived",
+    "DerivedValue",
+    "Diagnosis",
+    "ExcludedRow",
+    "FitRecord",
+    "FloatArray",
+    "Frozen",
+    "Level",
+    "Measurement",
+    "ModelSettings",
+    "NamedWarning",
+    "ParameterValue",
+    "PointwiseTheta",
+    "PreparedData",
+    "Provenance",
+    "Quantity",
+    "Reading",
+    "Repair",
+    "ReportSettings",
+    "ResidualBand",
+    "ResidualStatistics",
+    "RunSettings",
+    "Sample",
+    "SampleSettings",
+    "Sheet",
+    "SigmaKind",
+    "ThermodynamicTable",
+    "ValidityFact",
+]

@@ -1,0 +1,128 @@
+"""What was read and prepared: the sample, the measured points, and those that are fitted."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from .base import Basis, FloatArray, Frozen, Quantity, SigmaKind
+from .request import RunSettings, SampleSettings
+
+__all__ = ["ExcludedRow", "Measurement", "PreparedData", "Reading", "Repair", "Sample"]
+
+
+@dataclass(frozen=True)
+class Sample:
+    """The sample: atoms per formula unit, molar mass in kg/mol, mass in kg, melting point in K; None where unknown."""
+
+    name: str
+    formula: str | None = None
+    atoms: float | None = None
+    molar_mass: float | None = None
+    mass: float | None = None
+    melting_point: float | None = None
+
+
+@dataclass(frozen=True)
+class Repair:
+    """Something that the reader mended or left out, and where. `line` is None when it concerns the whole file."""
+
+    file: str
+    line: int | None
+    message: str
+
+
+@dataclass(frozen=True)
+class ExcludedRow:
+    """A row that the reader could not use; values are NaN where unreadable. `run` is the index of its source."""
+
+    run: int
+    line: int
+    temperature: float
+    heat_capacity: float
+    sigma: float
+    reason: str
+
+
+@dataclass(frozen=True)
+class Reading:
+    """How one file was read: path, sha256 of its bytes, and the choices that were made."""
+
+    path: str
+    file: str
+    sha256: str
+    label: str
+    encoding: str
+    delimiter: str
+    decimal: str
+    temperature_column: str
+    heat_capacity_column: str
+    sigma_column: str | None
+    temperature_unit: str
+    heat_capacity_unit: str
+    rows: int
+    settings: RunSettings
+
+
+@dataclass(frozen=True)
+class Measurement(Frozen):
+    """Measured heat capacity of one sample, in file order, unusable rows omitted.
+
+    Attributes
+    ----------
+    temperature : ndarray, shape (n,)
+        K.
+    heat_capacity : ndarray, shape (n,)
+        J/(mol K) when `basis` is "mol", J/(g K) when "gram", J/K when "sample".
+    sigma : ndarray, shape (n,), or None
+        Standard uncertainty (k = 1) as stated by the file or the user, unit as `heat_capacity`.
+    run : ndarray of int, shape (n,)
+        Index into `readings`.
+    line : ndarray of int, shape (n,)
+        1-based line in the file.
+    """
+
+    sample: Sample
+    temperature: FloatArray
+    heat_capacity: FloatArray
+    sigma: FloatArray | None
+    run: NDArray[np.intp]
+    line: NDArray[np.intp]
+    quantity: Quantity
+    basis: Basis
+    sigma_text: str
+    readings: tuple[Reading, ...]
+    repairs: tuple[Repair, ...]
+    excluded: tuple[ExcludedRow, ...]
+    sample_settings: SampleSettings
+
+
+@dataclass(frozen=True)
+class PreparedData(Frozen):
+    """The points that are fitted, by ascending temperature, each with its standard uncertainty.
+
+    Attributes
+    ----------
+    temperature, heat_capacity, sigma : ndarray, shape (n,)
+        K, J/(mol K), J/(mol K); ascending temperature.
+    run : ndarray of int, shape (n,)
+        Index into ``measurement.readings``.
+    index : ndarray of int, shape (n,)
+        Position of each point in the arrays of `measurement`.
+    reasons : tuple of (str or None), length of the measurement
+        Why a measured point is not fitted; None for the fitted ones.
+    sigma_text : str
+        The sigma model in force, in words.
+    """
+
+    measurement: Measurement
+    temperature: FloatArray
+    heat_capacity: FloatArray
+    sigma: FloatArray
+    run: NDArray[np.intp]
+    index: NDArray[np.intp]
+    reasons: tuple[str | None, ...]
+    sigma_kind: SigmaKind
+    sigma_text: str

@@ -1,0 +1,167 @@
+"""What was fitted and found: parameters, covariance, residuals, validity, warnings."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Literal
+
+from .base import FloatArray, Frozen, Level
+
+__all__ = [
+    "Diagnosis",
+    "FitRecord",
+    "NamedWarning",
+    "ParameterValue",
+    "ResidualBand",
+    "ResidualStatistics",
+    "ValidityFact",
+]
+
+
+@dataclass(frozen=True)
+class ParameterValue:
+    """One parameter of the model with its uncertainty (k = 1), unit and status.
+
+    `u` is the standard uncertainty that latticefit stands behind, `u_fit` the one from the covariance alone; both
+    None where undetermined, 0 where fixed.
+    """
+
+    name: str
+    value: float
+    u: float | None
+    u_fit: float | None
+    unit: str
+    status: Literal["fitted", "fixed", "tied", "at_bound", "undetermined"]
+    low: float
+    high: float
+    start: float
+    meaning: str
+
+
+@dataclass(frozen=True)
+class FitRecord(Frozen):
+    """Result of one fit: enough to evaluate the model again without the data.
+
+    Attributes
+    ----------
+    terms : str
+        The model expression in its standard spelling, e.g. ``"debye + 2 einstein"``.
+    mode_sum : {"fixed", "free"}
+        Whether the modes are held at 3 per atom.
+    atoms : float or None
+        Atoms per formula unit.
+    names : tuple of str, length p
+        Every parameter of the model, free or not.
+    values : ndarray, shape (p,)
+        Their values in SI (K; modes; J/(mol K^2); mol/J; 1/K).
+    covariance : ndarray, shape (p, p)
+        Of all parameters, of kind `covariance_kind`; rows of fixed parameters are zero, tied ones are filled in.
+        Directions that the data do not determine are left out of it; the parameters concerned have the status
+        "undetermined".
+    scale_factor : float
+        Reduced chi-square; what an absolute covariance would be multiplied by (already done when "scaled").
+    condition : float
+        Condition number of the covariance of the free parameters scaled to unit diagonal.
+    starts_tried, distinct_minima : int
+        Local fits made to find the minimum, and distinct minima found within a chi-square of 4 of the best.
+    """
+
+    terms: str
+    mode_sum: Literal["fixed", "free"]
+    cp_cv: str
+    atoms: float | None
+    names: tuple[str, ...]
+    values: FloatArray
+    covariance: FloatArray
+    parameters: tuple[ParameterValue, ...]
+    covariance_kind: Literal["absolute", "scaled"]
+    scale_factor: float
+    condition: float
+    converged: bool
+    message: str
+    chi_square: float
+    degrees_of_freedom: int
+    free_parameters: int
+    evaluations: int
+    starts_tried: int
+    distinct_minima: int
+
+
+@dataclass(frozen=True)
+class ResidualBand:
+    """Residuals of one temperature decade: how many points, rms and largest in percent of the model."""
+
+    temperature_low: float
+    temperature_high: float
+    points: int
+    rms_percent: float
+    max_abs_percent: float
+
+
+@dataclass(frozen=True)
+class ResidualStatistics:
+    """Numbers on the residuals of the fitted points; None where they are not defined."""
+
+    reduced_chi_square: float | None
+    chi_square_p: float | None
+    aicc: float | None
+    bic: float | None
+    rms_percent: float
+    max_abs_percent: float
+    max_abs_percent_temperature: float
+    durbin_watson: float | None
+    lag1_correlation: float | None
+    runs_test_p: float | None
+    longest_run: int
+    bands: tuple[ResidualBand, ...]
+
+
+@dataclass(frozen=True)
+class ValidityFact:
+    """One yes-or-no fact on the fit: what was asked, whether it holds, and the number behind it in words."""
+
+    name: str
+    holds: bool
+    detail: str
+
+
+@dataclass(frozen=True)
+class NamedWarning:
+    """A named finding: code in kebab-case, level, what it concerns, and what to do next."""
+
+    code: str
+    level: Level
+    concerns: str
+    message: str
+    found: float | str | None
+    threshold: float | str | None
+    advice: str
+
+
+@dataclass(frozen=True)
+class Diagnosis(Frozen):
+    """Residuals of the fitted points and what they say.
+
+    Attributes
+    ----------
+    model, residual, residual_percent, residual_normalised : ndarray, shape (n,)
+        For the fitted points in the order of `PreparedData`: model in J/(mol K), measured - model in J/(mol K), the
+        same in percent of the model, and divided by sigma.
+    model_all : ndarray, shape (m,)
+        The model at every point of the measurement, fitted or not, in its order.
+    describes : bool
+        Whether the model describes the data.
+    verdict : str
+        The same in one or two sentences.
+    """
+
+    model: FloatArray
+    residual: FloatArray
+    residual_percent: FloatArray
+    residual_normalised: FloatArray
+    model_all: FloatArray
+    statistics: ResidualStatistics
+    validity: tuple[ValidityFact, ...]
+    describes: bool
+    verdict: str
+    warnings: tuple[NamedWarning, ...]

@@ -1,0 +1,11 @@
+#!/bin/sh
+# The main job on demo data (invented): fit a metal with a mixed model and write a report.
+set -eu
+cd "$(dirname "$0")/.."
+. scripts/environment.sh ""
+
+"$VENV/bin/latticefit" fit data/demo/norrium.csv --formula "Nb" --name "Norrium" \
+    --terms "debye + einstein + electronic" --cp-cv nernst-lindemann \
+    --out demo_latticefit --replace
+echo
+echo "Open demo_latticefit/report.html in a browser; demo_latticefit/report.txt is the same in plain text."
