@@ -53,7 +53,7 @@ def _run(words: list[str]) -> int:
     if words[0] not in COMMANDS:
         kind = "option" if words[0].startswith("-") else "command"
         raise InputError(f"there is no {kind} {words[0]!r}; {nearest(words[0], COMMANDS)} (see latticefit --help)")
-    command: _Command = import_module(f".{words[0]}", __name__)  # type: ignore[assignment]
+    command: _Command = import_module(f".{words[0]}", __name__)
     return command.run(command.parser().read(words[1:]))
 
 

@@ -76,12 +76,14 @@ def _out_folder(arguments: argparse.Namespace, sheet: Sheet, from_sheet: Path | 
 
 def run(arguments: argparse.Namespace) -> int:
     """Fit, write the report, print the summary or the JSON record."""
+    from ..models import build_model
     from ..reading import read_measurement
 
     any_sheet = any(options.is_sheet(file) for file in arguments.files)
     sheet, base, from_sheet = (_from_sheet if any_sheet else _from_options)(arguments)
     if sheet.model.terms is None:
         raise InputError("this version fits a model that you name; give --terms, e.g. --terms 'debye + einstein'")
+    build_model(sheet.model.terms, sheet.model.cp_cv)  # a misspelt term is told before anything is read
     out = _out_folder(arguments, sheet, from_sheet)
     if out is not None:
         from ..report import check_out_folder

@@ -149,6 +149,6 @@ def _entropy_below_data(table: ThermodynamicTable) -> tuple[NamedWarning, ...]:
             message=f"{100 * share:.2g} % of S(298.15 K) comes from below the lowest point, from the model alone",
             found=share,
             threshold=_SHARE_BELOW,
-            advice="u of S does not include what the model may get wrong there; points at lower temperatures would",
+            advice="u of S has a rough allowance for what the model may get wrong there; measure lower",
         ),
     )

@@ -60,7 +60,7 @@ def inspection_text(measurement: Measurement) -> str:
         f"  temperature {harmless(reading.temperature_column)}, in {reading.temperature_unit}",
         f"  {measurement.quantity}          {harmless(reading.heat_capacity_column)}, in {reading.heat_capacity_unit}"
         + ("" if reading.heat_capacity_unit == unit else f", converted to {unit}"),
-        f"  sigma       {harmless(measurement.sigma_text)}",
+        f"  sigma       {harmless(measurement.sigma_text) or 'none stated; fit estimates it from the local scatter'}",
         f"  points      {T.size} of {reading.rows} rows, {T.min():.4g} to {T.max():.4g} K",
         f"  spread      {_per_decade(T)}",
         f"  repeats     {_repeats(T)}",
@@ -73,7 +73,7 @@ def inspection_text(measurement: Measurement) -> str:
         if position == _SHOWN_ROWS and T.size > 2 * _SHOWN_ROWS:
             lines.append(f"  {'...':>12}")
         sigma = "" if measurement.sigma is None else significant(float(measurement.sigma[i]), 2)
-        lines.append(f"  {significant(float(T[i]), 6):>12} {significant(float(C[i]), 6):>18} {sigma:>12}")
+        lines.append(f"  {float(T[i]):>12.6g} {float(C[i]):>18.6g} {sigma:>12}")
     lines += ["", "  repairs     " + ("none" if not measurement.repairs else "")]
     for each in measurement.repairs:
         where = "whole file" if each.line is None else f"line {each.line}"
