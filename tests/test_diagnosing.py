@@ -1,0 +1,190 @@
+"""Residual statistics, validity facts, the verdict, and each named warning with a clean case beside it."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+from helpers import invented_solid, prepared_data
+from hypothesis import given
+from hypothesis import strategies as st
+
+from latticefit.diagnosing import (
+    RULES,
+    akaike,
+    bayes,
+    diagnose,
+    durbin_watson,
+    lag1_correlation,
+    runs_test,
+)
+from latticefit.fitting import fit_model
+from latticefit.records import Diagnosis, ModelSettings, PreparedData
+
+T = np.geomspace(2.0, 300.0, 120)
+METAL = ("debye + einstein + electronic", [330.0, 2.5, 120.0, 0.5, 7e-4])
+
+
+def diagnosed(data: PreparedData, terms: str, mode_sum: str | None = None, **settings: object) -> Diagnosis:
+    return diagnose(data, fit_model(data, ModelSettings(terms, mode_sum, **settings)))  # type: ignore[arg-type]
+
+
+def one_run(n: int) -> np.ndarray:
+    return np.zeros(n, dtype=np.intp)
+
+
+def test_durbin_watson_of_white_and_alternating_and_drifting_residuals() -> None:
+    """Near 2 for white noise, near 4 for alternation, near 0 for a drift (Durbin and Watson 1950)."""
+    x = np.arange(1.0, 401.0)
+    white = np.random.default_rng(1).standard_normal(400)
+    assert durbin_watson(x, white, one_run(400)) == pytest.approx(2.0, abs=0.35)
+    assert durbin_watson(x, (-1.0) ** x, one_run(400)) == pytest.approx(4.0, abs=0.02)
+    assert durbin_watson(x, np.sin(x / 60), one_run(400)) < 0.01  # type: ignore[operator]
+
+
+def test_neighbours_in_different_runs_and_repeats_do_not_count_as_correlation() -> None:
+    """Two runs with opposite offsets are judged within each; repeats at one temperature are averaged first."""
+    x = np.repeat(np.arange(1.0, 51.0), 2)
+    run = np.tile([0, 1], 50)
+    white = np.random.default_rng(2).standard_normal(100)
+    assert durbin_watson(x, white, run) == pytest.approx(2.0, abs=0.5)
+    triplicates = np.repeat(np.random.default_rng(3).standard_normal(60), 3)
+    at = np.repeat(np.arange(1.0, 61.0), 3)
+    assert durbin_watson(at, triplicates, one_run(180)) == pytest.approx(2.0, abs=0.6)
+    assert abs(lag1_correlation(at, triplicates, one_run(180)) or 1.0) < 0.3
+
+
+def test_runs_test_tells_chance_from_order() -> None:
+    """Alternation and a half-and-half order are improbable, white noise is not (Wald and Wolfowitz 1940)."""
+    x = np.arange(1.0, 61.0)
+    white = np.random.default_rng(5).standard_normal(60)
+    assert (runs_test(x, white, one_run(60))[0] or 0) > 0.05
+    assert (runs_test(x, (-1.0) ** x, one_run(60))[0] or 1) < 1e-10
+    p, longest = runs_test(x, np.where(x <= 30, 1.0, -1.0), one_run(60))
+    assert (p or 1) < 1e-10
+    assert longest == 30
+
+
+def test_runs_test_against_the_exact_probability() -> None:
+    """For 10 + 10 signs in 20 runs of one, the z-value is (20 - 11)/sqrt(180*190... )): worked by hand."""
+    x = np.arange(1.0, 21.0)
+    p, longest = runs_test(x, (-1.0) ** x, one_run(20))
+    z = (20 - 11) / np.sqrt(200 * 180 / (400 * 19))
+    from scipy.stats import norm
+
+    assert p == pytest.approx(2 * norm.sf(z))
+    assert longest == 1
+
+
+@given(st.integers(1, 8), st.integers(3, 500), st.floats(0, 1e4))
+def test_information_criteria_are_those_for_known_sigma(k: int, n: int, chi_square: float) -> None:
+    """AICc and BIC stand on chi2 itself; AICc is undefined for n <= k + 1 and exceeds chi2 + 2k otherwise."""
+    value = akaike(chi_square, k, n)
+    if n <= k + 1:
+        assert value is None
+    else:
+        assert value == pytest.approx(chi_square + 2 * k + 2 * k * (k + 1) / (n - k - 1))
+    assert bayes(chi_square, k, n) == pytest.approx(chi_square + k * np.log(n))
+
+
+def test_residuals_have_the_sign_and_scale_of_the_contract() -> None:
+    """Residual = measured - model, percent of the model, normalised by sigma; chi2 is the sum of squares."""
+    data = invented_solid(*METAL, T, atoms=1)
+    fit = fit_model(data, ModelSettings(METAL[0]))
+    found = diagnose(data, fit)
+    assert np.allclose(found.residual, data.heat_capacity - found.model, rtol=0, atol=0)
+    assert np.allclose(found.residual_percent, 100 * found.residual / found.model)
+    assert float((found.residual_normalised**2).sum()) == pytest.approx(fit.chi_square, rel=1e-12)
+    assert found.statistics.rms_percent == pytest.approx(np.sqrt(np.mean(found.residual_percent**2)))
+    assert sum(band.points for band in found.statistics.bands) == T.size
+    assert [band.temperature_low for band in found.statistics.bands] == [1.0, 10.0, 100.0]
+
+
+def test_clean_case_is_silent_and_described() -> None:
+    """A right model on good Cv data from theta/150 triggers no warning, and every validity fact holds."""
+    data = invented_solid(*METAL, T, atoms=1, quantity="Cv", seed=3)
+    found = diagnosed(data, METAL[0])
+    assert found.describes
+    assert "describes the data" in found.verdict
+    assert [each.code for each in found.warnings] == []
+    assert all(fact.holds for fact in found.validity)
+
+
+def colder(lowest: float) -> np.ndarray:
+    return np.geomspace(lowest, 300.0, 120)
+
+
+def triggers() -> dict[str, Diagnosis]:
+    """One diagnosis that must raise each warning."""
+    insulator = ("debye + einstein", [220.0, 3.5, 610.0, 2.5])
+    metal = invented_solid(*METAL, T, atoms=1)
+    C = np.array(metal.heat_capacity)
+    wavy = prepared_data(T, C * (1 + 0.02 * np.sin(8 * np.log(T))), 0.005 * C, atoms=1)
+    two = invented_solid("debye + 2 einstein", [200.0, 4.0, 330.0, 2.0, 400.0, 3.0], T, atoms=3)
+    return {
+        "low-temperature-reach": diagnosed(invented_solid(*METAL, colder(8.0), atoms=1), METAL[0]),
+        "model-misfit": diagnosed(metal, "debye + electronic"),
+        "correlated-residuals": diagnosed(wavy, METAL[0]),
+        "parameter-at-bound": diagnosed(metal, METAL[0], bounds={"debye_theta": (350.0, 400.0)}),
+        "undetermined-parameters": diagnosed(
+            invented_solid("einstein", [200.0, 6.0], np.geomspace(20, 300, 80), atoms=2),
+            "debye + 2 einstein",
+            "free",
+            fix={"einstein1_theta": 200.0, "einstein2_theta": 200.0},
+        ),
+        "strong-correlation": diagnosed(two, "debye + 2 einstein"),
+        "cp-cv-missing": diagnosed(metal, METAL[0]),
+        "mode-sum": diagnosed(replace_atoms(invented_solid(*insulator, T), 3.0), "debye + einstein", "free"),
+        "sigma-overstated": diagnosed(prepared_data(T, C, 0.05 * C, atoms=1), METAL[0]),
+        "sigma-assumed": diagnosed(
+            replace(metal, sigma_kind="estimated", sigma_text="assumed: 1 % of the heat capacity"), METAL[0]
+        ),
+        "few-points": diagnosed(invented_solid(*METAL, T[::7], atoms=1), METAL[0]),
+        "not-unique": not_unique(),
+    }
+
+
+def replace_atoms(data: PreparedData, atoms: float) -> PreparedData:
+    sample = replace(data.measurement.sample, atoms=atoms)
+    return replace(data, measurement=replace(data.measurement, sample=sample))
+
+
+def not_unique() -> Diagnosis:
+    data = invented_solid(*METAL, T, atoms=1)
+    fit = replace(fit_model(data, ModelSettings(METAL[0])), distinct_minima=2)
+    return diagnose(data, fit)
+
+
+TRIGGERS = triggers()
+
+
+def test_every_rule_has_a_case_that_triggers_it() -> None:
+    """As many triggering cases as rules: a new rule without one fails here."""
+    assert len(TRIGGERS) == len(RULES)
+
+
+@pytest.mark.parametrize("code", TRIGGERS)
+def test_warning_is_raised_with_number_threshold_and_advice(code: str) -> None:
+    """Each case raises its warning, with what was found, and what to do next."""
+    found = {each.code: each for each in TRIGGERS[code].warnings}
+    assert code in found
+    assert found[code].advice
+    assert found[code].message
+    assert found[code].level in ("note", "warn", "stop")
+
+
+@pytest.mark.parametrize(("lowest", "level"), [(8.0, "warn"), (14.0, "stop")])
+def test_low_temperature_reach_has_two_levels(lowest: float, level: str) -> None:
+    """Warn from theta/50, stop from theta/30 (theta = 351 K here)."""
+    found = diagnosed(invented_solid(*METAL, colder(lowest), atoms=1), METAL[0])
+    assert {each.code: each.level for each in found.warnings}["low-temperature-reach"] == level
+
+
+def test_more_parameters_than_the_data_can_test_is_not_called_a_description() -> None:
+    """With as many points as parameters nothing tests the model, and the verdict says so."""
+    data = invented_solid("debye", [280.0, 6.0], np.array([20.0, 100.0]))
+    found = diagnosed(data, "debye", "free")
+    assert not found.describes
+    assert "nothing tests it" in found.verdict
+    assert found.statistics.reduced_chi_square is None
