@@ -65,9 +65,7 @@ def imported_rooms(source: str, package: list[str]) -> set[str]:
 
 
 def rooms_of(module: Path) -> set[str]:
-    return imported_rooms(
-        module.read_text(encoding="utf-8"), ["latticefit", *module.relative_to(PACKAGE).parent.parts]
-    )
+    return imported_rooms(module.read_text(encoding="utf-8"), ["latticefit", *module.relative_to(PACKAGE).parent.parts])
 
 
 @pytest.mark.parametrize("module", MODULES, ids=lambda m: str(m.relative_to(PACKAGE)))

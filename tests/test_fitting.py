@@ -77,9 +77,7 @@ def random_truth(rng: np.random.Generator) -> np.ndarray:
     while True:
         debye, einstein = np.exp(rng.uniform(np.log(60), np.log(1000), 2))
         if max(debye, einstein) / min(debye, einstein) >= 1.4:
-            return np.array(
-                [debye, rng.uniform(0.9, 4.5), einstein, rng.uniform(0.3, 2), rng.uniform(0.3e-3, 3e-3)]
-            )
+            return np.array([debye, rng.uniform(0.9, 4.5), einstein, rng.uniform(0.3, 2), rng.uniform(0.3e-3, 3e-3)])
 
 
 def test_equal_terms_are_sorted_by_theta() -> None:
@@ -125,7 +123,9 @@ def test_tied_modes_that_would_turn_negative_are_held_at_zero() -> None:
     data = prepared_data(T, C, 0.01 * C + 0.01, atoms=2)
     fit = fit_model(data, ModelSettings("debye + einstein", bounds={"debye_theta": (700.0, 900.0)}))
     assert np.all(fit.values >= 0)
-    assert fit.values[fit.names.index("debye_modes")] + fit.values[fit.names.index("einstein_modes")] == pytest.approx(6)
+    assert fit.values[fit.names.index("debye_modes")] + fit.values[fit.names.index("einstein_modes")] == pytest.approx(
+        6
+    )
 
 
 def test_covariance_agrees_with_the_scatter_of_refits() -> None:

@@ -121,9 +121,7 @@ CASES = {
     "tied moved": ModelSettings("debye + 2 einstein + electronic", "fixed", start={"debye_modes": 4.0}),
     "bounded": ModelSettings("debye + 2 einstein + electronic", "fixed", bounds={"einstein1_theta": (50.0, 200.0)}),
     "two debye": ModelSettings("2 debye", "fixed"),
-    "all modes fixed": ModelSettings(
-        "debye + einstein", "fixed", fix={"debye_modes": 4.0, "einstein_modes": 2.0}
-    ),
+    "all modes fixed": ModelSettings("debye + einstein", "fixed", fix={"debye_modes": 4.0, "einstein_modes": 2.0}),
 }
 
 

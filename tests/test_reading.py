@@ -174,9 +174,9 @@ def test_columns_by_choice(
 
 def test_exact_header_stands_before_column_number(tmp_path: Path) -> None:
     """A header that is itself a number is found before the column of that number."""
-    text = "T_K;a1;1 \n5;6;7\n".replace("a1;1 ", "'1';x")
-    measurement = read_text(tmp_path, text, temperature="T_K", heat_capacity="'1'", heat_capacity_unit="J/(mol K)")
-    assert measurement.heat_capacity[0] == 6
+    text = "T_K;2;1\n5;6;7\n"
+    measurement = read_text(tmp_path, text, heat_capacity="2", sigma="1", heat_capacity_unit="J/(mol K)")
+    assert (measurement.heat_capacity[0], measurement.sigma) == (6, [7])
 
 
 def test_no_header(tmp_path: Path) -> None:
@@ -191,7 +191,7 @@ def test_no_header(tmp_path: Path) -> None:
 def test_wide_table_without_unit_row(tmp_path: Path) -> None:
     """In a wide table the named column of the sample is found among others, and its own error column with it."""
     text = (
-        "Time (s),Sample temperature (K),Temperature rise (K),Heat capacity (µJ/K),Addenda (µJ/K),Error (µJ/K),Field (T)\n"
+        "t (s),Sample temperature (K),Temperature rise (K),Heat capacity (µJ/K),Addenda (µJ/K),Error (µJ/K),B (T)\n"
         "1,2,.02,30,8,.3,0\n2,4,.04,40,9,.4,0\n"
     )
     measurement = read_text(tmp_path, text)
@@ -335,7 +335,7 @@ def test_rows_that_cannot_be_used_are_listed(tmp_path: Path) -> None:
         line: f"row left out: {reason}" for line, reason in expected.items()
     }
     assert measurement.readings[0].rows == 17
-    assert measurement.excluded[5].heat_capacity == -3 and measurement.excluded[5].run == 0
+    assert (measurement.excluded[5].heat_capacity, measurement.excluded[5].run) == (-3, 0)
 
 
 def test_file_order_is_kept(tmp_path: Path) -> None:

@@ -40,9 +40,9 @@ def _points(container: Any) -> np.ndarray:
 
 
 @pytest.mark.parametrize("name", FIGURES)
-@pytest.mark.parametrize("case", [*CASES, "undetermined"])
-def test_every_figure_draws_every_case(name: str, case: str, tmp_path: Path) -> None:
-    """Each registered figure renders each case as SVG, returns frozen artists and states a finding."""
+@pytest.mark.parametrize("case", ["metal", "coldstop", "undetermined"])
+def test_every_figure_draws_good_and_poor_cases(name: str, case: str, tmp_path: Path) -> None:
+    """Each registered figure can be rendered, whatever was determined, returns frozen artists and states a finding."""
     found = undetermined(tmp_path) if case == "undetermined" else build(CASES[case], tmp_path)
     assert render(draw_figure(name, found), "svg").lstrip().startswith(b"<?xml")
     artists = _artists(name, found)

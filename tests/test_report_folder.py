@@ -226,7 +226,7 @@ def test_the_old_report_comes_back_when_the_last_step_fails(
 
 def test_missing_parent_is_refused(tmp_path: Path) -> None:
     """The folder for the report must exist, and the sentence says which one does not."""
-    with pytest.raises(InputError, match=r"nowhere' does not exist"):
+    with pytest.raises(InputError, match=r"nowhere' for the report does not exist"):
         check_out_folder(tmp_path / "nowhere" / "out", replace=False)
 
 

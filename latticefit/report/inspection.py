@@ -14,6 +14,8 @@ from .wording import harmless, significant
 __all__ = ["inspection_record", "inspection_text"]
 
 _UNITS = {"mol": ("J/(mol K)", "J_mol_K"), "gram": ("J/(g K)", "J_g_K"), "sample": ("J/K", "J_K")}
+_DELIMITERS = {"comma": ",", "semicolon": ";", "tab": "\t", "blank": " "}
+_DECIMALS = {"point": ".", "comma": ","}
 _SHOWN_ROWS = 3
 
 
@@ -25,8 +27,8 @@ def inspection_record(measurement: Measurement) -> dict[str, Any]:
     return {
         "file": reading.file,
         "encoding": reading.encoding,
-        "delimiter": reading.delimiter,
-        "decimal": reading.decimal,
+        "delimiter": _DELIMITERS.get(reading.delimiter, reading.delimiter),
+        "decimal": _DECIMALS.get(reading.decimal, reading.decimal),
         "columns": {
             "temperature": reading.temperature_column,
             "heat_capacity": reading.heat_capacity_column,
@@ -53,10 +55,9 @@ def inspection_text(measurement: Measurement) -> str:
     unit = _UNITS[measurement.basis][0]
     T, C = np.asarray(measurement.temperature), np.asarray(measurement.heat_capacity)
     order = np.argsort(T, kind="stable")
-    delimiter = {"\t": "tab", ",": "comma", ";": "semicolon", " ": "blanks"}.get(reading.delimiter, reading.delimiter)
     lines = [
         harmless(reading.file),
-        f"  written     {reading.encoding}, separated by {delimiter}, decimal {_mark(reading.decimal)}",
+        f"  written     {reading.encoding}, separated by {reading.delimiter}, decimal {reading.decimal}",
         f"  temperature {harmless(reading.temperature_column)}, in {reading.temperature_unit}",
         f"  {measurement.quantity}          {harmless(reading.heat_capacity_column)}, in {reading.heat_capacity_unit}"
         + ("" if reading.heat_capacity_unit == unit else f", converted to {unit}"),
@@ -79,10 +80,6 @@ def inspection_text(measurement: Measurement) -> str:
         where = "whole file" if each.line is None else f"line {each.line}"
         lines.append(f"    {where}: {harmless(each.message)}")
     return "\n".join(lines).rstrip() + "\n"
-
-
-def _mark(decimal: str) -> str:
-    return {".": "point", ",": "comma"}.get(decimal, decimal)
 
 
 def _per_decade(T: np.ndarray) -> str:
