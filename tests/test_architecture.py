@@ -139,7 +139,7 @@ def test_the_gas_constant_stands_in_one_file() -> None:
 def test_help_needs_nothing_heavy() -> None:
     """``latticefit --help`` imports neither numpy nor scipy nor lmfit, so it answers at once."""
     code = (
-        "import sys; from latticefit.cli import main; main(['--help']); main(['fit', '--version'][:0] or ['--version']);"
+        "import sys; from latticefit.cli import main; main(['--help']); main(['--version']);"
         "heavy = {'numpy', 'scipy', 'pandas', 'matplotlib', 'lmfit', 'pint'} & set(sys.modules); sys.exit(bool(heavy))"
     )
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=False)

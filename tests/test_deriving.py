@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import itertools
+
 import numpy as np
 import pytest
 from helpers import invented_solid
@@ -120,7 +122,7 @@ def test_table_is_consistent_and_in_closed_form() -> None:
         edges = [0.0, *np.geomspace(upper / 100, upper, 6)]
         H = sum(
             quad(lambda t: float(heat_capacity(model, np.array([t]), fit.values)[0]), a, b, epsrel=1e-11)[0]
-            for a, b in zip(edges[:-1], edges[1:], strict=True)
+            for a, b in itertools.pairwise(edges)
         )
         assert table.energy[k] == pytest.approx(H, rel=1e-8)
     assert_allclose(table.free_energy_function, table.entropy - table.energy / table.temperature, rtol=1e-12)

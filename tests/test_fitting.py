@@ -118,7 +118,7 @@ def test_superfluous_term_ends_at_its_bound_not_below() -> None:
 
 
 def test_tied_modes_that_would_turn_negative_are_held_at_zero() -> None:
-    """When the mode count that follows from the sum would be negative, another is tied and this one held by its bound."""
+    """A mode count that would be negative by the sum rule is held at its bound and another one follows from the sum."""
     C = heat_capacity(build_model("einstein"), T, np.array([200.0, 6.0]))
     data = prepared_data(T, C, 0.01 * C + 0.01, atoms=2)
     fit = fit_model(data, ModelSettings("debye + einstein", bounds={"debye_theta": (700.0, 900.0)}))

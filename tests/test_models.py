@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from dataclasses import replace
 
 import numpy as np
@@ -206,7 +207,7 @@ def test_energy_and_entropy_are_integrals_to_1e_8(form: str, upper: float) -> No
         return float(heat_capacity(model, np.array([t]), values)[0])
 
     edges = [0.0, *np.geomspace(upper / 300, upper, 10)]
-    pairs = list(zip(edges[:-1], edges[1:], strict=True))
+    pairs = list(itertools.pairwise(edges))
     H = sum(quad(capacity, a, b, epsabs=0, epsrel=1e-11)[0] for a, b in pairs)
     S = sum(quad(lambda t: capacity(t) / t, a, b, epsabs=0, epsrel=1e-11)[0] for a, b in pairs)
     at = np.array([upper])

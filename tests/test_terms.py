@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import itertools
+
 import numpy as np
 import pytest
 from numpy.testing import assert_allclose
@@ -37,7 +39,7 @@ def test_entropy_is_integral_of_heat_capacity_over_temperature(each: Term) -> No
         edges = [0.0, *np.geomspace(min(2.0, upper) / 50, upper, 8)]
         total = sum(
             quad(lambda t: float(each.heat_capacity(np.array(t), *p)) / t, a, b, epsabs=0, epsrel=1e-11)[0]
-            for a, b in zip(edges[:-1], edges[1:], strict=True)
+            for a, b in itertools.pairwise(edges)
             if float(each.heat_capacity(np.array(b), *p)) > 1e-250
         )
         assert_allclose(float(each.entropy(np.array(upper), *p)), total, rtol=1e-9, atol=1e-30)
