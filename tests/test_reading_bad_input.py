@@ -162,8 +162,8 @@ CHOICES: list[tuple[str, dict[str, Any], str]] = [
      "'J/(mol k)' is not a unit of heat capacity that latticefit knows: did you mean 'J/(mol K)'?"),
     (GOOD, {"temperature_unit": "F"},
      "'F' is not a unit of temperature that latticefit knows: known are K, degC and mK"),
-    (GOOD, {"sigma": "sigm"}, "run.csv: --sigma 'sigm' is neither a column nor a sigma text such as '0.5%'; known are "
-     "Cp_J_molK and T_K"),
+    (GOOD, {"sigma": "sigm"}, "run.csv: --sigma 'sigm' is neither a column nor a sigma text such as '0.5%'; the "
+     "columns are 'T_K' and 'Cp_J_molK'"),
     (GOOD, {"sigma": "0.5"}, "run.csv: --sigma '0.5' is no column number; for a percentage write 0.5%"),
     (GOOD, {"sigma": "3"}, "run.csv: there is no column 3; the file has 2"),
     (GOOD, {"sigma": "Cp_J_molK"}, "run.csv: 'Cp_J_molK' holds the data and cannot be their sigma"),
