@@ -8,7 +8,7 @@ import numpy as np
 
 from ..constants import STANDARD_TEMPERATURE
 from ..diagnosing import REACH_STOP, REACH_WARN
-from ..models import Model, build_model, low_temperature_theta, zero_point_energy
+from ..models import Model, build_model, low_temperature_theta, total_modes, zero_point_energy
 from ..records import (
     Derived,
     DerivedValue,
@@ -29,6 +29,7 @@ Status = Literal["determined", "interval", "undetermined", "undefined"]
 
 _SHARE_BELOW = 0.005
 _CURVE_POINTS = 400
+_NEGLIGIBLE = 1e-4  # a term with less than this share of the modes moves no moment
 
 
 def derive(prepared: PreparedData, fit: FitRecord, grid: tuple[float, ...] | None = None) -> Derived:
@@ -79,34 +80,55 @@ def _reach(fit: FitRecord, model: Model, lowest: float) -> tuple[Status, str | N
     return "determined", remark
 
 
+def _spectrum(fit: FitRecord, model: Model) -> tuple[Status, str | None]:
+    """Whether the temperatures of all terms that carry modes are determined: moments rest on every one of them."""
+    total = total_modes(model, np.asarray(fit.values))
+    for i in model.modes:
+        own = next(each for each in model.placed if each.slice.start <= i < each.slice.stop)
+        parameters = fit.parameters[own.slice]
+        lost = [p.name for p in parameters if p.name != fit.names[i] and p.status in ("at_bound", "undetermined")]
+        if lost and fit.values[i] > _NEGLIGIBLE * total:
+            return "undetermined", f"{lost[0]} is not determined by the data, and every moment rests on it"
+    return "determined", None
+
+
 def _characteristic(each: CharacteristicTemperature, fit: FitRecord, model: Model, lowest: float) -> DerivedValue:
-    status: Status = "determined"
-    reason: str | None = None
-    if each.key == "theta_debye_low_temperature":
-        status, reason = _reach(fit, model, lowest)
+    low_temperature = each.key == "theta_debye_low_temperature"
+    status, reason = _reach(fit, model, lowest) if low_temperature else _spectrum(fit, model)
     values = np.array(fit.values)
     value = each.function(model, values, fit.atoms)
     if value is None and status == "determined":
         status, reason = "undefined", "not defined for this model"
-    u_fit = None
-    if value is not None:
+    if status != "determined":
+        return _derived_value(each, None, None, None, status, reason)
 
-        def of(v: FloatArray) -> FloatArray:
-            found = each.function(model, v, fit.atoms)
-            return np.array(np.nan if found is None else found)
+    def of(v: FloatArray) -> FloatArray:
+        found = each.function(model, v, fit.atoms)
+        return np.array(np.nan if found is None else found)
 
-        u_fit = float(propagate(of, values, np.array(fit.covariance)))
-        u_fit = u_fit if np.isfinite(u_fit) else None
-    shown = status == "determined" and value is not None
-    u = _u(fit, u_fit) if shown and u_fit is not None else None
+    u_fit = float(propagate(of, values, np.array(fit.covariance)))
+    if not np.isfinite(u_fit):
+        return _derived_value(each, value, None, None, status, reason)
+    return _derived_value(each, value, _u(fit, u_fit), u_fit, status, reason)
+
+
+def _derived_value(
+    each: CharacteristicTemperature,
+    value: float | None,
+    u: float | None,
+    u_fit: float | None,
+    status: Status,
+    reason: str | None,
+) -> DerivedValue:
+    low, high = (None, None) if value is None or u is None else (value - 2 * u, value + 2 * u)
     return DerivedValue(
         key=each.key,
         symbol=each.symbol,
-        value=value if shown else None,
+        value=value,
         u=u,
-        u_fit=u_fit if shown else None,
-        low=None if value is None or u is None else value - 2 * u,
-        high=None if value is None or u is None else value + 2 * u,
+        u_fit=u_fit,
+        low=low,
+        high=high,
         unit="K",
         definition=each.definition,
         source=each.source,

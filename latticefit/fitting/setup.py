@@ -14,6 +14,7 @@ from ..records import FloatArray, ModelSettings, Sample
 __all__ = ["default_mode_sum", "parametrise"]
 
 _MODES_PER_ATOM = 3
+_COLDEST_THETA = 0.3  # below this times the lowest point a term is a constant and its theta without meaning
 _LARGEST_DILATION = 0.24  # 4 A T C stays below 0.96 up to the highest point, so that Cp - Cv has a solution
 
 
@@ -32,9 +33,10 @@ def _check_names(model: Model, names: Iterable[str], what: str) -> None:
 
 
 def _bounds(
-    model: Model, settings: ModelSettings, hottest: float, largest: float, atoms: float | None
+    model: Model, settings: ModelSettings, coldest: float, hottest: float, largest: float, atoms: float | None
 ) -> tuple[FloatArray, FloatArray]:
-    low = np.array([spec.low for spec in model.specs])
+    lowest = _COLDEST_THETA * coldest
+    low = np.array([max(spec.low, lowest) if spec.role == "scale" else spec.low for spec in model.specs])
     high = np.array([spec.high for spec in model.specs])
     if model.cp_cv.name == "nernst-lindemann":
         limit = largest if atoms is None else max(largest, _MODES_PER_ATOM * atoms * 8.5)
@@ -109,7 +111,7 @@ def parametrise(
     fixed_sum = default_mode_sum(settings, sample) == "fixed"
     if fixed_sum and sample.atoms is None:
         raise InputError("a fixed mode sum needs the atoms per formula unit; give the formula or the number of atoms")
-    low, high = _bounds(model, settings, float(T.max()), float(measured.max()), sample.atoms)
+    low, high = _bounds(model, settings, float(T.min()), float(T.max()), float(measured.max()), sample.atoms)
     held = _held(model, settings, sample)
     base = np.full(len(model.names), np.nan)
     for kind, given in (("fixed", held), ("start", dict(settings.start))):

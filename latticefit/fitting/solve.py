@@ -20,6 +20,15 @@ if TYPE_CHECKING:
 
 __all__ = ["Solution", "minimise", "minimise_with_lmfit"]
 
+_WORDS = {
+    0: "the number of evaluations ran out",
+    1: "the gradient vanished",
+    2: "chi-square no longer changed",
+    3: "the parameters no longer changed",
+    4: "neither chi-square nor the parameters changed any more",
+}
+"""How a minimiser stopped, by its status."""
+
 _INSIDE = 1e-6  # how far inside its bounds, as a fraction of the range or of the value, a start is kept
 
 
@@ -62,7 +71,7 @@ def _scipy(
         gtol=None,
         max_nfev=most,
     )
-    return found.x, 2 * float(found.cost), bool(found.status > 0), str(found.message), int(found.nfev)
+    return found.x, 2 * float(found.cost), bool(found.status > 0), _WORDS[int(found.status)], int(found.nfev)
 
 
 def _lmfit_parameters(par: Parametrisation, x: FloatArray) -> lmfit.Parameters:
@@ -97,7 +106,8 @@ def _lmfit(
         xtol=tolerance,
         gtol=None,
     )
-    return vector(found.params), float(found.chisqr), bool(found.success), str(found.message), int(found.nfev)
+    words = _WORDS.get(int(getattr(found, "status", -1)), str(found.message))
+    return vector(found.params), float(found.chisqr), bool(found.success), words, int(found.nfev)
 
 
 def _violated(par: Parametrisation, values: FloatArray) -> bool:

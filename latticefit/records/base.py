@@ -34,4 +34,5 @@ class Frozen:
 
 
 def empty() -> Mapping[str, float]:
+    """Return an empty read-only mapping, the default of settings by parameter name."""
     return MappingProxyType({})

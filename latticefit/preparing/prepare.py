@@ -1,0 +1,131 @@
+"""From a Measurement to the points that are fitted: windows, masks, order, and a sigma for each."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import Final
+
+import numpy as np
+
+from ..errors import InputError
+from ..records import FloatArray, Measurement, PreparedData, SigmaKind
+from .scatter import local_scatter
+
+__all__ = ["prepare"]
+
+Interval = tuple[float, float]
+
+_FEWEST_POINTS: Final = 10
+_LEAST_SCATTER: Final = 1e-4
+_ASSUMED: Final = 0.01
+
+
+def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Sequence[Interval] = ()) -> PreparedData:
+    """Choose the points to fit and give each a standard uncertainty.
+
+    Parameters
+    ----------
+    measurement : Measurement
+        Per mole of formula unit.
+    window, mask : sequence of (low, high)
+        Closed intervals in K for all runs, beside those in the settings of each run. Several windows count as their
+        union; a point must lie in those of its run and in those given here. A point in any mask is left out.
+
+    Returns
+    -------
+    PreparedData
+        By ascending temperature, equal temperatures in file order. Without a stated sigma one relative sigma is
+        estimated from the local scatter of the points used, the same for every model that is fitted to them.
+
+    Raises
+    ------
+    InputError
+        If the heat capacity is not per mole, or no point is left.
+    """
+    _refuse_other_basis(measurement)
+    reasons = _reasons(measurement, tuple(window), tuple(mask))
+    used = np.array([i for i, reason in enumerate(reasons) if reason is None], dtype=np.intp)
+    if used.size == 0:
+        first = next((reason for reason in reasons if reason), "none was read")
+        raise InputError(f"no point is left to fit: all {len(reasons)} are left out (the first: {first})")
+    index = used[np.argsort(measurement.temperature[used], kind="stable")]
+    temperature, heat_capacity = measurement.temperature[index], measurement.heat_capacity[index]
+    if measurement.sigma is not None:
+        kind: SigmaKind = "stated"
+        sigma, text = measurement.sigma[index], f"stated: {measurement.sigma_text}"
+    else:
+        kind = "estimated"
+        sigma, text = _estimated(temperature, heat_capacity)
+    return PreparedData(
+        measurement=measurement,
+        temperature=temperature,
+        heat_capacity=heat_capacity,
+        sigma=sigma,
+        run=measurement.run[index],
+        index=index,
+        reasons=reasons,
+        sigma_kind=kind,
+        sigma_text=text,
+    )
+
+
+def _refuse_other_basis(measurement: Measurement) -> None:
+    if measurement.basis == "gram":
+        raise InputError("the heat capacity is per gram: give --formula or --molar-mass to make it per mole")
+    if measurement.basis == "sample":
+        sample = measurement.sample
+        missing = ["--mass"] if sample.mass is None else []
+        missing += ["--formula or --molar-mass"] if sample.molar_mass is None else []
+        raise InputError(f"the heat capacity is per sample: give {' and '.join(missing)} to make it per mole")
+
+
+# ------------------------------------------------------------------------------------------------ windows and masks
+
+
+def _reasons(measurement: Measurement, window: Sequence[Interval], mask: Sequence[Interval]) -> tuple[str | None, ...]:
+    by_run = [(reading.settings.window, reading.settings.mask) for reading in measurement.readings]
+    reasons: list[str | None] = []
+    for temperature, run in zip(measurement.temperature.tolist(), measurement.run.tolist(), strict=True):
+        run_window, run_mask = by_run[run]
+        masked = next((interval for interval in (*run_mask, *mask) if _inside(temperature, interval)), None)
+        if not _in_any(temperature, run_window):
+            reasons.append(_outside(run_window))
+        elif not _in_any(temperature, window):
+            reasons.append(_outside(window))
+        else:
+            reasons.append(None if masked is None else f"masked {_words(masked)}")
+    return tuple(reasons)
+
+
+def _inside(temperature: float, interval: Interval) -> bool:
+    return interval[0] <= temperature <= interval[1]
+
+
+def _in_any(temperature: float, windows: Sequence[Interval]) -> bool:
+    return not windows or any(_inside(temperature, window) for window in windows)
+
+
+def _outside(windows: Sequence[Interval]) -> str:
+    return f"outside window{'s' if len(windows) > 1 else ''} {' and '.join(map(_words, windows))}"
+
+
+def _words(interval: Interval) -> str:
+    low, high = interval
+    if np.isinf(high):
+        return f"from {low:g} K"
+    return f"up to {high:g} K" if low <= 0 else f"{low:g}-{high:g} K"
+
+
+# ------------------------------------------------------------------------------------------------------------ sigma
+
+
+def _estimated(temperature: FloatArray, heat_capacity: FloatArray) -> tuple[FloatArray, str]:
+    scatter = local_scatter(temperature, heat_capacity) if temperature.size >= _FEWEST_POINTS else None
+    if scatter is not None and scatter >= _LEAST_SCATTER:
+        return scatter * heat_capacity, f"estimated from local scatter: {_percent(scatter)} of the heat capacity"
+    why = "too few points to estimate it from" if scatter is None else "the local scatter is too small to be noise"
+    return _ASSUMED * heat_capacity, f"assumed: {_ASSUMED * 100:g} % of the heat capacity ({why})"
+
+
+def _percent(scatter: float) -> str:
+    return f"{100 * scatter:.3f} %" if scatter < 1e-3 else f"{100 * scatter:.2f} %"

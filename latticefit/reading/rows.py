@@ -1,0 +1,144 @@
+"""From cells to numbers, row by row: what cannot be read is refused, what cannot be used is told apart and why."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from ..errors import InputError
+from ..records import FloatArray
+from .columns import Column
+from .table import Row, Table
+from .values import Decimal, Number, mixed_decimals, parse_number
+from .wording import quoted
+
+__all__ = ["Cells", "place", "read_cells", "reasons_against", "refuse_bad_sigma", "refuse_too_few"]
+
+
+@dataclass(frozen=True)
+class Cells:
+    """Numbers of every row in the file's own units, shape (m,), NaN where missing.
+
+    `written_sigma` holds the uncertainties written with the heat capacities, as in ``12.34(5)``.
+    """
+
+    temperature: FloatArray
+    heat_capacity: FloatArray
+    sigma: FloatArray | None
+    written_sigma: FloatArray
+    temperature_has_sigma: bool
+    decimal: Decimal
+
+
+def read_cells(table: Table, columns: Sequence[Column], shown: str) -> Cells:
+    """Read the cells of the chosen columns: temperature, heat capacity, and sigma where there is one.
+
+    Raises
+    ------
+    InputError
+        If a cell is no number, or decimal points and commas are mixed.
+    """
+    decimal = _decimal(table, columns, shown)
+    numbers = [_numbers(table, column, decimal, shown) for column in columns]
+    written = [math.nan if number.uncertainty is None else number.uncertainty for number in numbers[1]]
+    arrays = [np.array([number.value for number in column]) for column in numbers]
+    return Cells(
+        temperature=arrays[0],
+        heat_capacity=arrays[1],
+        sigma=arrays[2] if len(arrays) > 2 else None,
+        written_sigma=np.array(written),
+        temperature_has_sigma=any(number.uncertainty is not None for number in numbers[0]),
+        decimal=decimal,
+    )
+
+
+def _decimal(table: Table, columns: Sequence[Column], shown: str) -> Decimal:
+    cells = (table.cell(row, column.index) for row in table.rows for column in columns)
+    decimal, with_point, with_comma = mixed_decimals(cells)
+    if with_point is not None and with_comma is not None:
+        first, other = (_whereabouts(table, columns, cell) for cell in (with_point, with_comma))
+        raise InputError(
+            f"{shown}: decimal points and decimal commas are mixed ({first} and {other}); write them one way"
+        )
+    return decimal
+
+
+def _whereabouts(table: Table, columns: Sequence[Column], cell: str) -> str:
+    for row in table.rows:
+        for column in columns:
+            if table.cell(row, column.index) == cell:
+                return f"{quoted(cell)} in line {row.line}, {_column(column)}"
+    return quoted(cell)
+
+
+def _numbers(table: Table, column: Column, decimal: Decimal, shown: str) -> list[Number]:
+    numbers = []
+    for row in table.rows:
+        cell = table.cell(row, column.index)
+        number = parse_number(cell, decimal)
+        if number is None:
+            raise InputError(f"{place(shown, row, column)}: {quoted(cell)} cannot be read as a number")
+        numbers.append(number)
+    return numbers
+
+
+def _column(column: Column) -> str:
+    return column.label if column.header is None else f"column {quoted(column.label)}"
+
+
+def place(shown: str, row: Row, column: Column) -> str:
+    """Return where a cell stands: file, line and column."""
+    return f"{shown}: line {row.line}, {_column(column)}"
+
+
+def reasons_against(
+    temperature: FloatArray, heat_capacity: FloatArray, sigma: FloatArray | None, written: FloatArray, unit: str
+) -> list[str | None]:
+    """Say for each row why it cannot be used, None where it can.
+
+    Parameters
+    ----------
+    temperature, heat_capacity, sigma : ndarray, shape (m,)
+        K and any unit of heat capacity.
+    written, unit : ndarray and str
+        Heat capacity as the file has it, and its unit, for the words.
+    """
+    reasons: list[str | None] = []
+    for i, (t, c) in enumerate(zip(temperature, heat_capacity, strict=True)):
+        reason = None
+        if not math.isfinite(t):
+            reason = "no temperature" if math.isnan(t) else "the temperature is infinite"
+        elif t <= 0:
+            reason = f"the temperature, {t:g} K, is not above 0 K"
+        elif not math.isfinite(c):
+            reason = "no heat capacity" if math.isnan(c) else "the heat capacity is infinite"
+        elif c <= 0:
+            reason = f"the heat capacity, {written[i]:g} {unit}, is not above 0"
+        elif sigma is not None and not math.isfinite(sigma[i]):
+            reason = "no sigma" if math.isnan(sigma[i]) else "sigma is infinite"
+        reasons.append(reason)
+    return reasons
+
+
+def refuse_too_few(reasons: Sequence[str | None], table: Table, shown: str) -> None:
+    """Raise InputError if fewer than half of the rows can be used."""
+    left_out = [i for i, reason in enumerate(reasons) if reason is not None]
+    if 2 * len(left_out) > len(reasons):
+        used, first = len(reasons) - len(left_out), left_out[0]
+        raise InputError(
+            f"{shown}: only {used} of {len(reasons)} rows can be used; the first one left out is line "
+            f"{table.rows[first].line} ({reasons[first]})"
+        )
+
+
+def refuse_bad_sigma(sigma: FloatArray, usable: NDArray[np.bool_], table: Table, column: Column, shown: str) -> None:
+    """Raise InputError if a usable row states a sigma that is not above 0."""
+    bad = np.flatnonzero(usable & (sigma <= 0))
+    if bad.size:
+        row = table.rows[int(bad[0])]
+        cell = quoted(table.cell(row, column.index))
+        raise InputError(f"{place(shown, row, column)}: sigma must be above 0, not {cell}; correct or empty the cell")

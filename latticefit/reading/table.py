@@ -1,0 +1,210 @@
+"""From lines of text to a table: which sign separates the columns, and whether a line names them."""
+
+from __future__ import annotations
+
+import csv
+import re
+from collections import Counter
+from contextlib import suppress
+from dataclasses import dataclass
+from typing import Final, NamedTuple
+
+from ..errors import InputError
+from .text import TextFile
+from .values import is_number
+from .wording import quoted, shown_name
+
+__all__ = ["MAX_COLUMNS", "Row", "Table", "find_table"]
+
+MAX_COLUMNS: Final = 1000
+_SAMPLED_LINES: Final = 200
+_DELIMITERS: Final[dict[str, str | None]] = {"tab": "\t", "semicolon": ";", "comma": ",", "blank": None}
+
+
+class Row(NamedTuple):
+    """One line of the table: its 1-based number in the file and its cells."""
+
+    line: int
+    cells: list[str]
+
+
+@dataclass(frozen=True)
+class Table:
+    """The table of a file; `headers` is None where no line names the columns, else one header a column."""
+
+    delimiter: str
+    headers: tuple[str, ...] | None
+    width: int
+    rows: tuple[Row, ...]
+    notes: tuple[str, ...]
+
+    def cell(self, row: Row, column: int) -> str:
+        """Return a cell, empty where the line ends before it."""
+        return row.cells[column] if column < len(row.cells) else ""
+
+
+class _Line(NamedTuple):
+    line: int
+    text: str
+
+
+def find_table(source: TextFile) -> Table:
+    """Find the table in a file.
+
+    Raises
+    ------
+    InputError
+        If there is none, if it has one column, or if it is not clear where its columns are.
+    """
+    shown = shown_name(source.name)
+    lines = _without_comments(source.lines)
+    if not lines:
+        raise InputError(f"{shown}: holds comments only, no data")
+    delimiter = _find_delimiter(lines[:_SAMPLED_LINES])
+    rows = [row for row in (Row(line, _split(text, delimiter)) for line, text in lines) if any(row.cells)]
+    if not any(is_number(cell) for row in rows for cell in row.cells):
+        raise InputError(f"{shown}: no column holds numbers")
+    width = max(len(row.cells) for row in rows)
+    if width > MAX_COLUMNS:
+        raise InputError(f"{shown}: has {width} columns, more than the {MAX_COLUMNS} that are read")
+    headers, notes = None, source.notes
+    if _is_header(rows):
+        head, rows = rows[0], rows[1:]
+        headers = _fit_header(lines[0].text, head, rows, delimiter, shown)
+    else:
+        commented = _commented_header(source.lines, rows, delimiter)
+        if commented is not None:
+            headers = tuple(commented.cells)
+            notes = (*notes, f"column names taken from the comment in line {commented.line}")
+    _check_rows(rows, headers, delimiter, shown)
+    width = max(len(row.cells) for row in rows) if headers is None else len(headers)
+    if width < 2:
+        raise InputError(f"{shown}: has one column; temperature and heat capacity are needed side by side")
+    return Table(delimiter, headers, width, tuple(rows), notes)
+
+
+def _without_comments(lines: list[str]) -> list[_Line]:
+    kept = []
+    for number, line in enumerate(lines, start=1):
+        text = line.strip(" \r\x1a\x0c")
+        if not text.strip() or text.lstrip().startswith("#"):
+            continue
+        if "#" in text:
+            text = re.sub(r"\s#(?:\s.*)?$", "", text)
+        kept.append(_Line(number, _joined_uncertainty(text)))
+    return kept
+
+
+def _joined_uncertainty(text: str) -> str:
+    """Write ``12.34 +/- 0.05`` as one word, so that blanks around the sign do not make columns."""
+    if "±" not in text and "+-" not in text and "+/-" not in text:
+        return text
+    return re.sub(r"[ \u00a0\u2009]*(?:±|\+/-|\+-)[ \u00a0\u2009]*", "±", text)
+
+
+def _split(text: str, delimiter: str) -> list[str]:
+    sign = _DELIMITERS[delimiter]
+    if sign is None:
+        return [word.strip('"') for word in re.findall(r'"[^"]*"|\S+', text)]
+    cells = text.split(sign)
+    if '"' in text:
+        with suppress(csv.Error):  # a cell beyond the module's size limit; it is no number either way
+            cells = next(csv.reader([text], delimiter=sign, skipinitialspace=True))
+    cells = [cell.strip() for cell in cells]
+    while cells and not cells[-1]:
+        cells.pop()
+    return cells
+
+
+def _find_delimiter(lines: list[_Line]) -> str:
+    """Choose the sign that makes most lines into rows of numbers; a tie goes to the order of the list."""
+    best, best_score = "blank", (0, 0, 0.0)
+    for delimiter in _DELIMITERS:
+        rows = [_split(text, delimiter) for _, text in lines]
+        counts = [(sum(map(is_number, cells)), len(cells)) for cells in rows]
+        numbers, cells = (sum(part) for part in zip(*counts, strict=True))
+        score = (
+            sum(number >= 2 for number, _ in counts),
+            sum(number >= 1 and size >= 2 for number, size in counts),
+            numbers / max(cells, 1),
+        )
+        if score > best_score:
+            best, best_score = delimiter, score
+    return best
+
+
+def _is_header(rows: list[Row]) -> bool:
+    """Say whether the first row names the columns: it holds no number, or has a word above the first number."""
+    head = rows[0].cells
+    below = rows[1].cells if len(rows) > 1 else [""]
+    word_above_number = not is_number(head[0]) and is_number(below[0] if below else "")
+    return word_above_number or not any(map(is_number, head))
+
+
+def _fit_header(text: str, head: Row, rows: list[Row], delimiter: str, shown: str) -> tuple[str, ...]:
+    """Return the headers; in a table separated by blanks they may hold blanks themselves, as in ``T (K)``."""
+    if not rows:
+        raise InputError(f"{shown}: no data follow the header in line {head.line}")
+    if delimiter != "blank":
+        return tuple(head.cells)
+    width = Counter(len(row.cells) for row in rows).most_common(1)[0][0]
+    bracketed = re.sub(r"\s+(?=[(\[])", " ", text)
+    for pattern in (r"\s+", r"\s{2,}|\t", r"\s+(?![^(\[]*[)\]])(?![(\[])"):
+        headers = [part.strip().strip('"') for part in re.split(pattern, bracketed)]
+        if len(headers) == width:
+            return tuple(headers)
+    if len(head.cells) == width:
+        return tuple(head.cells)
+    raise InputError(
+        f"{shown}: line {head.line} has {len(head.cells)} words over {width} columns; separate the columns by tabs, "
+        "commas or semicolons"
+    )
+
+
+def _commented_header(lines: list[str], rows: list[Row], delimiter: str) -> Row | None:
+    """Return the comment just above the first row if it names a column each, one of them a temperature."""
+    above = rows[0].line - 1
+    comment = lines[above - 1].strip() if above >= 1 else ""
+    cells = _split(comment.lstrip("# \t"), delimiter) if comment.startswith("#") else []
+    width = max(len(row.cells) for row in rows)
+    named = any(re.match(r"(?i)t(emp(erature)?)?(?![A-Za-z])", cell) for cell in cells)
+    return Row(above, cells) if named and len(cells) == width and not any(map(is_number, cells)) else None
+
+
+def _check_rows(rows: list[Row], headers: tuple[str, ...] | None, delimiter: str, shown: str) -> None:
+    width = max(len(row.cells) for row in rows) if headers is None else len(headers)
+    for row in rows:
+        if delimiter == "comma":
+            comma = next((cell for cell in row.cells if "," in cell and is_number(cell)), None)
+            if comma is not None:
+                raise _decimal_comma(row, f"{quoted(comma)} has a decimal comma in a comma-separated file", shown)
+        if len(row.cells) > width or (delimiter == "blank" and len(row.cells) != width):
+            named = (
+                f"the header names {_counted(width, 'column')}" if headers is not None else f"there are {width} columns"
+            )
+            found = f"line {row.line} has {_counted(len(row.cells), 'cell')} where {named}"
+            if delimiter == "comma" and all(is_number(cell) and "." not in cell for cell in row.cells):
+                raise _decimal_comma(row, f"{found}, perhaps decimal commas in a comma-separated file", shown)
+            raise InputError(f"{shown}: {found}")
+    if delimiter == "comma" and headers is None:
+        _refuse_unclear_commas(rows, shown)
+
+
+def _counted(number: int, noun: str) -> str:
+    return f"{number} {noun}" if number == 1 else f"{number} {noun}s"
+
+
+def _refuse_unclear_commas(rows: list[Row], shown: str) -> None:
+    """Refuse whole numbers between commas where nothing tells a separator from a decimal comma."""
+    cells = [cell for row in rows for cell in row.cells]
+    whole = not any("." in cell for cell in cells)
+    leading_zero = any(re.fullmatch(r"0\d+", cell) for cell in cells)
+    if whole and (leading_zero or max(len(row.cells) for row in rows) > 2):
+        raise _decimal_comma(rows[0], "it is not clear whether its commas separate columns or are decimal", shown)
+
+
+def _decimal_comma(row: Row, found: str, shown: str) -> InputError:
+    where = "" if found.startswith("line") else f"line {row.line}: "
+    return InputError(
+        f"{shown}: {where}{found}; use decimal points, or separate the columns by semicolons or tabs and name them"
+    )
