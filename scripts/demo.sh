@@ -4,7 +4,7 @@ set -eu
 cd "$(dirname "$0")/.."
 . scripts/environment.sh ""
 
-"$VENV/bin/latticefit" fit data/demo/norrium.csv --formula "Nb" --name "Norrium" \
+"$VENV/bin/latticefit" fit data/demo/norrium.csv --atoms 1 --molar-mass "96.20 g/mol" --name "Norrium N-7" \
     --terms "debye + einstein + electronic" --cp-cv nernst-lindemann \
     --out demo_latticefit --replace
 echo
