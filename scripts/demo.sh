@@ -2,7 +2,8 @@
 # The main job on demo data (invented): fit a metal with a mixed model and write a report.
 set -eu
 cd "$(dirname "$0")/.."
-. scripts/environment.sh ""
+EXTRA=
+. scripts/environment.sh
 
 "$VENV/bin/latticefit" fit data/demo/norrium.csv --atoms 1 --molar-mass "96.20 g/mol" --name "Norrium N-7" \
     --terms "debye + einstein + electronic" --cp-cv nernst-lindemann \

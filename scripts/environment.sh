@@ -1,9 +1,8 @@
 # Sourced by the other scripts from the top of the project: makes the virtual environment on first use.
-# usage: . scripts/environment.sh EXTRA     EXTRA is "" or an extra of pyproject.toml such as "dev"
+# usage: EXTRA=dev; . scripts/environment.sh     EXTRA is empty or an extra of pyproject.toml
 # LATTICEFIT_VENV names another folder than .venv.
 
 VENV="${LATTICEFIT_VENV:-.venv}"
-EXTRA="$1"
 
 find_python() {
     for candidate in python3.11 python3.12 python3.13 python3.14 python3 python; do

@@ -3,7 +3,8 @@
 #   sh scripts/test.sh -k copper
 set -eu
 cd "$(dirname "$0")/.."
-. scripts/environment.sh dev
+EXTRA=dev
+. scripts/environment.sh
 
 if [ $# -gt 0 ]; then
     exec "$VENV/bin/python" -m pytest "$@"

@@ -3,20 +3,21 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
 import numpy as np
 import pytest
+from helpers import REFERENCE, prepared_data
 from numpy.testing import assert_allclose, assert_array_equal
+from reading_helpers import read_text
 
 from latticefit.errors import InputError
 from latticefit.preparing import prepare
 from latticefit.preparing.scatter import local_scatter
 from latticefit.reading import read_measurement
-from latticefit.records import FloatArray, RunSettings, SampleSettings
-from tests.helpers import REFERENCE
-from tests.reading_helpers import read_text
+from latticefit.records import FloatArray, Measurement, RunSettings, SampleSettings
 
 INF = math.inf
 
@@ -207,3 +208,16 @@ def test_smooth_data_have_an_assumed_sigma(tmp_path: Path) -> None:
     prepared = prepare(read_text(tmp_path, table(T, T**2)))
     assert prepared.sigma_text == "assumed: 1 % of the heat capacity (the local scatter is too small to be noise)"
     assert_allclose(prepared.sigma, 0.01 * prepared.heat_capacity)
+
+
+@pytest.mark.parametrize(("points", "kind"), [(12, "assumed"), (16, "assumed"), (20, "estimated"), (60, "estimated")])
+def test_points_too_far_apart_get_an_assumed_sigma(points: int, kind: str) -> None:
+    """On 2-300 K seven neighbours of 12 or 16 points curve more than a parabola: 1 % is assumed and said to be."""
+    T = np.geomspace(2.0, 300.0, points)
+    C = 25 * T**3 / (T**3 + 60.0**3)
+    assert prepare(sparse_measurement(T, C)).sigma_text.startswith(kind)
+
+
+def sparse_measurement(T: np.ndarray, C: np.ndarray) -> Measurement:
+    noisy = C * (1 + 0.005 * np.random.default_rng(8).standard_normal(T.size))
+    return replace(prepared_data(T, noisy, 0.01 * noisy, atoms=1).measurement, sigma=None)

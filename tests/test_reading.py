@@ -8,14 +8,14 @@ from typing import Any
 
 import numpy as np
 import pytest
+from helpers import REFERENCE
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 from numpy.testing import assert_allclose, assert_array_equal
+from reading_helpers import messages, read_text
 
 from latticefit.reading import read_measurement
 from latticefit.records import RunSettings, SampleSettings
-from tests.helpers import REFERENCE
-from tests.reading_helpers import messages, read_text
 
 NO_SAMPLE = SampleSettings()
 M_CU = 63.546  # g/mol, IUPAC standard atomic weight of copper (from memory)

@@ -7,14 +7,14 @@ from pathlib import Path
 from typing import Any
 
 import pytest
+from helpers import REFERENCE
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
+from reading_helpers import read_text
 
 from latticefit.errors import InputError
 from latticefit.reading import read_measurement, text
 from latticefit.records import Measurement, RunSettings, SampleSettings
-from tests.helpers import REFERENCE
-from tests.reading_helpers import read_text
 
 GOOD = "T_K,Cp_J_molK\n1,2\n2,3\n"
 GRAM = SampleSettings()

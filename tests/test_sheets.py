@@ -10,6 +10,7 @@ from typing import Any
 import pytest
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
+from reading_helpers import read_text
 
 from latticefit.errors import InputError
 from latticefit.reading import (
@@ -23,7 +24,6 @@ from latticefit.reading import (
 )
 from latticefit.reading.options import interval_text
 from latticefit.records import ModelSettings, ReportSettings, RunSettings, SampleSettings, Sheet
-from tests.reading_helpers import read_text
 
 INF = math.inf
 

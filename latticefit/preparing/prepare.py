@@ -9,7 +9,7 @@ import numpy as np
 
 from ..errors import InputError
 from ..records import FloatArray, Measurement, PreparedData, SigmaKind
-from .scatter import local_scatter
+from .scatter import local_scatter, neighbour_span
 
 __all__ = ["prepare"]
 
@@ -18,6 +18,7 @@ Interval = tuple[float, float]
 _FEWEST_POINTS: Final = 10
 _LEAST_SCATTER: Final = 1e-4
 _ASSUMED: Final = 0.01
+_WIDEST_SPAN: Final = 6.0  # seven neighbours over a wider factor in T curve more than a parabola: 2 to 7 % for 0.5 %
 
 
 def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Sequence[Interval] = ()) -> PreparedData:
@@ -120,10 +121,14 @@ def _words(interval: Interval) -> str:
 
 
 def _estimated(temperature: FloatArray, heat_capacity: FloatArray) -> tuple[FloatArray, str]:
-    scatter = local_scatter(temperature, heat_capacity) if temperature.size >= _FEWEST_POINTS else None
+    enough = temperature.size >= _FEWEST_POINTS
+    close = neighbour_span(temperature) <= _WIDEST_SPAN
+    scatter = local_scatter(temperature, heat_capacity) if enough and close else None
     if scatter is not None and scatter >= _LEAST_SCATTER:
         return scatter * heat_capacity, f"estimated from local scatter: {_percent(scatter)} of the heat capacity"
-    why = "too few points to estimate it from" if scatter is None else "the local scatter is too small to be noise"
+    why = "the local scatter is too small to be noise"
+    if scatter is None:
+        why = "the points are too far apart to estimate it" if enough else "too few points to estimate it from"
     return _ASSUMED * heat_capacity, f"assumed: {_ASSUMED * 100:g} % of the heat capacity ({why})"
 
 

@@ -9,11 +9,17 @@ import numpy as np
 
 from ..records import FloatArray
 
-__all__ = ["local_scatter"]
+__all__ = ["local_scatter", "neighbour_span"]
 
 _NEIGHBOURS: Final = 7
 _NORMAL_MEDIAN: Final = 1.4826  # standard deviation of a normal distribution over the median of its absolute values
 _LEAST_FREEDOM: Final = 1e-6
+
+
+def neighbour_span(temperature: FloatArray) -> float:
+    """Median over the points of the factor in T that the 7 nearest neighbours span; `temperature` ascending, K."""
+    size = min(_NEIGHBOURS, temperature.size)
+    return float(np.median(temperature[size - 1 :] / temperature[: temperature.size - size + 1]))
 
 
 def local_scatter(temperature: FloatArray, heat_capacity: FloatArray) -> float | None:

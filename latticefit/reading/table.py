@@ -155,9 +155,9 @@ def _fit_header(text: str, head: Row, rows: list[Row], delimiter: str, shown: st
             return tuple(headers)
     if len(head.cells) == width:
         return tuple(head.cells)
+    words, columns = _counted(len(head.cells), "word"), _counted(width, "column")
     raise InputError(
-        f"{shown}: line {head.line} has {len(head.cells)} words over {width} columns; separate the columns by tabs, "
-        "commas or semicolons"
+        f"{shown}: line {head.line} has {words} over {columns}; separate the columns by tabs, commas or semicolons"
     )
 
 
