@@ -64,7 +64,9 @@ def analyse(
     record = fit_model(prepared, sheet.model, sheet.report.random_seed)
     diagnosis = diagnose(prepared, record)
     tell("deriving thermodynamic functions")
-    derived = derive(prepared, record, parse_grid(sheet.report.grid) if sheet.report.grid else None)
+    derived = derive(
+        prepared, record, diagnosis.describes, parse_grid(sheet.report.grid) if sheet.report.grid else None
+    )
     return Analysis(
         sheet=sheet,
         measurement=measurement,
@@ -268,6 +270,7 @@ class Fit:
                 float(fitted.temperature[0]),
                 float(fitted.temperature[-1]),
                 fitted.measurement.quantity,
+                self.analysis.diagnosis.describes,
             )
         )
 

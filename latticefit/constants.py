@@ -29,4 +29,4 @@ CALORIE_THERMOCHEMICAL: Final[float] = float(_codata.calorie)
 
 NERNST_LINDEMANN_A0: Final[float] = 0.0214 / CALORIE_THERMOCHEMICAL
 """Universal coefficient A0 = 0.0214 mol K/cal of W. Nernst and F. A. Lindemann, Z. Elektrochem. 17, 817 (1911),
-in mol K/J: Cp - Cv = A0 Cp^2 T/Tm per mole of atoms."""
+in mol K/J: Cp - Cv = A0 Cp^2 T/Tm per mole of atoms (the number 0.0214 from memory)."""

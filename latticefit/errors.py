@@ -37,7 +37,7 @@ def nearest(word: str, known: Iterable[str]) -> str:
     """
     choices = sorted(known)
     begun = [choice for choice in choices if word and choice.startswith(word)]
-    match = begun if len(begun) == 1 else difflib.get_close_matches(word, choices, n=1, cutoff=0.55)
+    match = begun if len(begun) == 1 else difflib.get_close_matches(word, choices, n=1, cutoff=0.6)
     if match:
         return f"did you mean {match[0]!r}?"
     listed = ", ".join(choices[:-1]) + (" and " if len(choices) > 1 else "") + choices[-1] if choices else "none"

@@ -5,11 +5,21 @@ from __future__ import annotations
 import math
 from decimal import ROUND_HALF_EVEN, Context, Decimal
 
-__all__ = ["format_value", "round_to_uncertainty"]
+__all__ = ["format_value", "percent_text", "round_to_uncertainty"]
 
 _PLAIN_FIGURES = 6  # of a value without a usable uncertainty
 _DOUBLE_FIGURES = 15  # decimal figures that a double holds
 _CONTEXT = Context(prec=1000, Emin=-2000, Emax=2000)  # room for any two doubles side by side
+
+
+def percent_text(percent: float) -> str:
+    """Return a percentage to two figures, never as a power of ten: ``"0.46 %"``, ``"more than 1000 %"``."""
+    if abs(percent) > 1000 or math.isnan(percent):
+        return "more than 1000 %"
+    size = Decimal(repr(float(percent)))
+    if size == 0:
+        return "0 %"
+    return f"{_to_place(size, _two_figure_place(abs(size))):f} %"
 
 
 def round_to_uncertainty(value: float, u: float | None) -> tuple[str, str]:

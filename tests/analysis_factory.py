@@ -97,6 +97,9 @@ def _diagnosis(case: Case, prepared: PreparedData, warnings: tuple[NamedWarning,
         runs_test_p=0.62 if good else 1e-6,
         longest_run=6 if good else 21,
         bands=tuple(bands),
+        entropy_miss=0.01,
+        energy_miss=0.5,
+        run_means_percent=(0.0,),
     )
     facts = (
         ValidityFact("converged", True, "the minimum was reached in 9 evaluations"),

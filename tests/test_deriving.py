@@ -18,13 +18,18 @@ from latticefit.deriving import (
     default_grid,
     derive,
     functions_table,
-    invert_debye,
     propagate,
-    theta_debye_moment,
 )
 from latticefit.fitting import fit_model
-from latticefit.functions import debye_heat_capacity
-from latticefit.models import build_model, energy, entropy, heat_capacity, zero_point_energy
+from latticefit.functions import debye_heat_capacity, invert_debye
+from latticefit.models import (
+    build_model,
+    energy,
+    entropy,
+    heat_capacity,
+    theta_debye_moment,
+    zero_point_energy,
+)
 from latticefit.records import Derived, DerivedValue, FitRecord, FloatArray, ModelSettings, PreparedData
 
 T = np.geomspace(2.0, 300.0, 120)

@@ -1,9 +1,9 @@
 """Characteristic temperatures, thermodynamic functions on any grid, pointwise Debye temperatures."""
 
-from .characteristic import QUANTITIES, CharacteristicTemperature, mean_theta, theta_debye_moment
+from .characteristic import QUANTITIES, CharacteristicTemperature
 from .derive import derive
 from .functions_table import default_grid, functions_table
-from .pointwise import invert_debye, model_theta, pointwise_theta
+from .pointwise import model_theta, pointwise_theta
 from .propagation import propagate, standard_uncertainty
 
 __all__ = [
@@ -12,11 +12,8 @@ __all__ = [
     "default_grid",
     "derive",
     "functions_table",
-    "invert_debye",
-    "mean_theta",
     "model_theta",
     "pointwise_theta",
     "propagate",
     "standard_uncertainty",
-    "theta_debye_moment",
 ]

@@ -12,41 +12,18 @@ from math import exp
 
 import numpy as np
 
-from ..models import Model, low_temperature_theta, total_modes
+from ..models import Model, low_temperature_theta, mean_theta, theta_debye_moment
 from ..records import FloatArray
 
-__all__ = ["QUANTITIES", "CharacteristicTemperature", "mean_theta", "theta_debye_moment"]
+__all__ = ["LOW_TEMPERATURE", "QUANTITIES", "CharacteristicTemperature"]
+
+LOW_TEMPERATURE = "theta_debye_low_temperature"
+"""Key of theta_D(T->0)."""
 
 _MOMENTS = "C. Domb and L. Salter, Phil. Mag. 43, 1083 (1952); T. H. K. Barron, W. T. Berg and J. A. Morrison, " + (
     "Proc. R. Soc. Lond. A 242, 478 (1957)"
 )
 _DEBYE = "P. Debye, Ann. Phys. 39, 789 (1912)"
-
-
-def mean_theta(model: Model, values: FloatArray, m: int) -> float:
-    """Mean of theta^m over all modes, K^m; for m = 0 the mean of ln(theta/K)."""
-    total = total_modes(model, values)
-    mean = 0.0
-    for each in model.placed:
-        if each.term.theta_mean is not None:
-            own = values[each.slice]
-            share = sum(values[i] for i in model.modes if each.slice.start <= i < each.slice.stop) / total
-            if share != 0:
-                mean += share * each.term.theta_mean(m, *own)
-    return mean
-
-
-def theta_debye_moment(m: int, model: Model, values: FloatArray, atoms: float | None) -> float | None:
-    """theta_D[m] = ((m+3)/3 <theta^m>)^(1/m), K; for m = 0, exp(1/3 + <ln theta>).
-
-    The Debye temperature that has the m-th moment of the model's spectrum (Domb and Salter 1952; Barron, Berg and
-    Morrison 1957).
-    """
-    mean = mean_theta(model, values, m)
-    if m == 0:
-        return exp(1 / 3 + mean)
-    power = (m + 3) / 3 * mean
-    return float(power ** (1 / m)) if power > 0 else None
 
 
 def _low_temperature(model: Model, values: FloatArray, atoms: float | None) -> float | None:
@@ -92,7 +69,7 @@ def _moment(m: int, key: str, meaning: str) -> CharacteristicTemperature:
 
 QUANTITIES: tuple[CharacteristicTemperature, ...] = (
     CharacteristicTemperature(
-        "theta_debye_low_temperature",
+        LOW_TEMPERATURE,
         "theta_D(T->0)",
         "(12 pi^4 n R/(5 beta))^(1/3), beta the T^3 coefficient of the lattice, n atoms per formula unit",
         _DEBYE,

@@ -7,8 +7,8 @@ from typing import Literal
 import numpy as np
 
 from ..constants import STANDARD_TEMPERATURE
-from ..diagnosing import REACH_STOP, REACH_WARN
-from ..models import Model, build_model, low_temperature_theta, total_modes, zero_point_energy
+from ..diagnosing import TOP_STOP, high_temperature_ratio, low_temperature_reach
+from ..models import Model, build_model, zero_point_energy
 from ..records import (
     Derived,
     DerivedValue,
@@ -18,10 +18,11 @@ from ..records import (
     PreparedData,
     ThermodynamicTable,
 )
-from .characteristic import QUANTITIES, CharacteristicTemperature
+from .characteristic import LOW_TEMPERATURE, QUANTITIES, CharacteristicTemperature
 from .functions_table import default_grid, functions_table
 from .pointwise import model_theta, pointwise_theta
 from .propagation import propagate, standard_uncertainty
+from .support import lost_in_law, lost_in_spectrum
 
 __all__ = ["derive"]
 
@@ -29,16 +30,19 @@ Status = Literal["determined", "interval", "undetermined", "undefined"]
 
 _SHARE_BELOW = 0.005
 _CURVE_POINTS = 400
-_NEGLIGIBLE = 1e-4  # a term with less than this share of the modes moves no moment
 
 
-def derive(prepared: PreparedData, fit: FitRecord, grid: tuple[float, ...] | None = None) -> Derived:
+def derive(
+    prepared: PreparedData, fit: FitRecord, describes: bool = True, grid: tuple[float, ...] | None = None
+) -> Derived:
     """Compute characteristic temperatures, zero-point energy, thermodynamic functions and pointwise theta_D(T).
 
     Parameters
     ----------
     prepared : PreparedData
     fit : FitRecord
+    describes : bool
+        Whether the model describes the data, as the diagnosis says.
     grid : tuple of float, or None
         Temperatures of the table, K; None for round temperatures over the measured range and below it. 298.15 K is
         always a row.
@@ -47,13 +51,16 @@ def derive(prepared: PreparedData, fit: FitRecord, grid: tuple[float, ...] | Non
     lowest, highest = float(prepared.temperature[0]), float(prepared.temperature[-1])
     quantity = prepared.measurement.quantity
     wanted = default_grid(lowest, highest) if grid is None else np.array(grid, dtype=float)
-    table = functions_table(fit, np.union1d(wanted, [STANDARD_TEMPERATURE]), lowest, highest, quantity)
+    table = functions_table(fit, np.union1d(wanted, [STANDARD_TEMPERATURE]), lowest, highest, quantity, describes)
     dense = np.geomspace(lowest / 5, max(highest * 1.05, lowest * 2), _CURVE_POINTS)
+    law, spectrum = _reach(fit, model, lowest, describes), _spectrum(fit, model, highest)
     return Derived(
-        characteristic_temperatures=tuple(_characteristic(each, fit, model, lowest) for each in QUANTITIES),
-        zero_point_energy=_zero_point(fit, model),
+        characteristic_temperatures=tuple(
+            _characteristic(each, fit, model, law if each.key == LOW_TEMPERATURE else spectrum) for each in QUANTITIES
+        ),
+        zero_point_energy=_zero_point(fit, model, spectrum),
         table=table,
-        curve=functions_table(fit, dense, lowest, highest, quantity),
+        curve=functions_table(fit, dense, lowest, highest, quantity, describes),
         pointwise_theta=pointwise_theta(prepared, fit, model),
         model_theta=model_theta(fit, model, dense),
         warnings=_entropy_below_data(table),
@@ -64,37 +71,39 @@ def _u(fit: FitRecord, u_fit: float) -> float:
     return float(standard_uncertainty(np.array(u_fit), fit.scale_factor, fit.covariance_kind))
 
 
-def _reach(fit: FitRecord, model: Model, lowest: float) -> tuple[Status, str | None]:
-    """Whether the data reach low enough for theta_D(T->0), and the remark that goes with it."""
-    theta = low_temperature_theta(model, np.asarray(fit.values), fit.atoms)
-    if theta is None:
+def _reach(fit: FitRecord, model: Model, lowest: float, describes: bool) -> tuple[Status, str | None]:
+    """Whether theta_D(T->0) is determined, and the remark that goes with it."""
+    reach = low_temperature_reach(model, fit, lowest)
+    if reach is None:
         return "undefined", "the model has no Debye term, so its heat capacity does not go as T^3"
-    if theta / lowest < REACH_STOP:
-        return "undetermined", (
-            f"too little data: the lowest fitted point, {lowest:.3g} K, is above theta/{REACH_STOP:.0f}; "
-            "theta_D(T->0) would come from the choice of model alone"
-        )
-    remark = "a mixed model's theta_D(T->0) can be 1-2 % off beyond its u: that is the model, not the scatter"
-    if theta / lowest < REACH_WARN:
-        remark = f"the lowest fitted point, {lowest:.3g} K, is above theta/{REACH_WARN:.0f}; {remark}"
+    if reach.status == "withheld":
+        return "undetermined", f"too little data: {reach.reason}, and the value would come from the choice of model"
+    lost = lost_in_law(model, fit)
+    if lost:
+        return "undetermined", f"too little data: {lost[0]} is not determined, and the T^3 law rests on it"
+    remark = "the model's theta_D(T->0) can be 1-2 % off beyond its u: that is the model, not the scatter"
+    if reach.status == "doubtful":
+        remark = f"{reach.reason}, where a good fit can still be wrong by percents; {remark}"
+    if not describes:
+        remark = f"the model does not describe the data: this is the value of the best wrong model; {remark}"
     return "determined", remark
 
 
-def _spectrum(fit: FitRecord, model: Model) -> tuple[Status, str | None]:
-    """Whether the temperatures of all terms that carry modes are determined: moments rest on every one of them."""
-    total = total_modes(model, np.asarray(fit.values))
-    for i in model.modes:
-        own = next(each for each in model.placed if each.slice.start <= i < each.slice.stop)
-        parameters = fit.parameters[own.slice]
-        lost = [p.name for p in parameters if p.name != fit.names[i] and p.status in ("at_bound", "undetermined")]
-        if lost and fit.values[i] > _NEGLIGIBLE * total:
-            return "undetermined", f"{lost[0]} is not determined by the data, and every moment rests on it"
+def _spectrum(fit: FitRecord, model: Model, highest: float) -> tuple[Status, str | None]:
+    """Whether the moments of the spectrum are determined: they rest on every term, and on modes that are excited."""
+    lost = lost_in_spectrum(model, fit)
+    if lost:
+        return "undetermined", f"{lost[0]} is not determined by the data, and every moment rests on it"
+    ratio = high_temperature_ratio(model, fit, highest)
+    if ratio is not None and ratio > TOP_STOP:
+        return "undetermined", f"the data end at theta_D[m=2]/{ratio:.2g}: the modes that carry it are not excited"
     return "determined", None
 
 
-def _characteristic(each: CharacteristicTemperature, fit: FitRecord, model: Model, lowest: float) -> DerivedValue:
-    low_temperature = each.key == "theta_debye_low_temperature"
-    status, reason = _reach(fit, model, lowest) if low_temperature else _spectrum(fit, model)
+def _characteristic(
+    each: CharacteristicTemperature, fit: FitRecord, model: Model, judged: tuple[Status, str | None]
+) -> DerivedValue:
+    status, reason = judged
     values = np.array(fit.values)
     value = each.function(model, values, fit.atoms)
     if value is None and status == "determined":
@@ -137,24 +146,28 @@ def _derived_value(
     )
 
 
-def _zero_point(fit: FitRecord, model: Model) -> DerivedValue:
+def _zero_point(fit: FitRecord, model: Model, judged: tuple[Status, str | None]) -> DerivedValue:
     values = np.array(fit.values)
-    value = zero_point_energy(model, values)
-    u_fit = float(propagate(lambda v: np.array(zero_point_energy(model, v)), values, np.array(fit.covariance)))
-    u = _u(fit, u_fit)
+    status, reason = judged
+    value = u_fit = u = None
+    if status == "determined":
+        value = zero_point_energy(model, values)
+        u_fit = float(propagate(lambda v: np.array(zero_point_energy(model, v)), values, np.array(fit.covariance)))
+        u = _u(fit, u_fit)
+    low, high = (None, None) if value is None or u is None else (value - 2 * u, value + 2 * u)
     return DerivedValue(
         key="zero_point_energy",
         symbol="U(0)",
         value=value,
         u=u,
         u_fit=u_fit,
-        low=value - 2 * u,
-        high=value + 2 * u,
+        low=low,
+        high=high,
         unit="J/mol",
         definition="half a quantum for every mode of the harmonic lattice: (9/8) n R theta_D[1]",
         source="C. Domb and L. Salter, Phil. Mag. 43, 1083 (1952)",
-        status="determined",
-        reason=None,
+        status=status,
+        reason=reason,
     )
 
 

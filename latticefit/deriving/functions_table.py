@@ -6,6 +6,7 @@ from typing import Literal
 
 import numpy as np
 
+from ..diagnosing.reach import low_temperature_reach
 from ..models import (
     Model,
     build_model,
@@ -15,10 +16,10 @@ from ..models import (
     entropy,
     harmonic_heat_capacity,
     heat_capacity,
-    low_temperature_theta,
 )
 from ..records import FitRecord, FloatArray, Quantity, ThermodynamicTable
 from .propagation import propagate, standard_uncertainty
+from .support import lost_in_spectrum, stuck
 
 __all__ = ["default_grid", "functions_table"]
 
@@ -30,8 +31,13 @@ there is 10 % off in S(Tmin) at theta/20 and 1 % at theta/50 for plain sine disp
 
 _ABOVE = 1.25  # beyond this times the highest fitted point u is withheld: nothing tests Cp - Cv there
 
+_HEAVY_BELOW = 0.1  # share of S below the data above which u of S and H is withheld, unless the data reach low
+
 BELOW_REASON = "below the lowest fitted point: the covariance of one model is no measure of what it does not see"
 ABOVE_REASON = "more than a quarter above the highest fitted point: the covariance of one model is no measure there"
+
+MISFIT_REASON = "the model does not describe the data: the covariance is no measure of how wrong it is"
+HEAVY_REASON = "more than a tenth of S lies below the lowest fitted point: no u of S and H"
 
 
 def default_grid(lowest: float, highest: float) -> FloatArray:
@@ -65,14 +71,33 @@ def _allowance_below(fit: FitRecord, model: Model, values: FloatArray, T: FloatA
 
     A model without a T^3 law (Einstein terms alone) has no reach to judge by and gets the larger allowance.
     """
-    theta = low_temperature_theta(model, values, fit.atoms) or 0.0
-    share = next((each for ratio, each in _BELOW_ALLOWANCE if theta / lowest < ratio), 0.0)
+    reach = low_temperature_reach(model, fit, lowest)
+    ratio = 0.0 if reach is None else reach.ratio
+    share = next((each for limit, each in _BELOW_ALLOWANCE if ratio < limit), 0.0)
     H, S = (float(each(model, np.array([lowest]), values)[0]) for each in (energy, entropy))
     return share * np.stack([np.zeros_like(T), np.full_like(T, H), np.full_like(T, S), np.abs(S - H / T)])
 
 
+def _reasons(
+    model: Model, fit: FitRecord, T: FloatArray, lowest: float, highest: float, describes: bool
+) -> list[str | None]:
+    """Why u of a whole row is withheld; None where it is given."""
+    held = stuck(model, fit)
+    everywhere = None
+    if not describes:
+        everywhere = MISFIT_REASON
+    elif held:
+        everywhere = f"{held[0]} is at a bound: the covariance does not know what it would do without"
+    return [BELOW_REASON if t < lowest else ABOVE_REASON if t > _ABOVE * highest else everywhere for t in T.tolist()]
+
+
 def functions_table(
-    fit: FitRecord, temperature: FloatArray, lowest: float, highest: float, quantity: Quantity
+    fit: FitRecord,
+    temperature: FloatArray,
+    lowest: float,
+    highest: float,
+    quantity: Quantity,
+    describes: bool = True,
 ) -> ThermodynamicTable:
     """Evaluate a fit on a grid.
 
@@ -84,26 +109,39 @@ def functions_table(
     lowest, highest : float
         Range of the fitted points, K: rows outside are marked as extrapolated.
     quantity : {"Cp", "Cv"}
+    describes : bool
+        Whether the model describes the data; no u is given where it does not.
 
     Returns
     -------
     ThermodynamicTable
-        Closed forms of the terms; quadrature only for Cp - Cv. u is NaN, with the reason, below the lowest point and
-        far above the highest.
+        Closed forms of the terms; quadrature only for Cp - Cv. u is NaN, with the reason, below the lowest point, far
+        above the highest, and wherever something else makes the covariance no measure. Rows above the data that rest
+        on an undetermined parameter are NaN altogether.
     """
     T = np.asarray(temperature, dtype=float)
     model = build_model(fit.terms, fit.cp_cv)
     values, covariance = np.array(fit.values), np.array(fit.covariance)
     rows = _stack(model, T, values) * _solvable(model, T, values)
+    lost = lost_in_spectrum(model, fit)
+    if lost:
+        rows = np.where(highest < T, np.nan, rows)
     u_fit = propagate(lambda v: _stack(model, T, v), values, covariance)
     origin: tuple[Origin, ...] = tuple(
         "extrapolated_below" if t < lowest else "extrapolated_above" if t > highest else "measured" for t in T
     )
-    reasons = tuple(BELOW_REASON if t < lowest else ABOVE_REASON if t > _ABOVE * highest else None for t in T)
-    withheld = np.where([reason is None for reason in reasons], 1.0, np.nan)
-    u = standard_uncertainty(u_fit, fit.scale_factor, fit.covariance_kind) * withheld
-    u = np.hypot(u, _allowance_below(fit, model, values, T, lowest))
+    reasons = _reasons(model, fit, T, lowest, highest, describes)
+    u = standard_uncertainty(u_fit, fit.scale_factor, fit.covariance_kind)
+    u = u * np.where([reason is None for reason in reasons], 1.0, np.nan)
+    allowance = _allowance_below(fit, model, values, T, lowest)
     below = float(entropy(model, np.array([lowest]), values)[0])
+    u = np.hypot(u, allowance)
+    heavy = (allowance[2] > 0) & (below > _HEAVY_BELOW * rows[2])
+    u[1:, heavy] = np.nan
+    for k in np.flatnonzero(heavy):
+        reasons[k] = reasons[k] or HEAVY_REASON
+    for k in np.flatnonzero(np.isnan(rows[2]) & (T > highest)):
+        reasons[k] = f"{lost[0]} is not determined" if lost else "Cp - Cv has no solution at this temperature"
     return ThermodynamicTable(
         quantity=quantity,
         temperature=T,
@@ -121,6 +159,6 @@ def functions_table(
         free_energy_function_u_fit=u_fit[3],
         entropy_fraction_below_data=np.where(lowest >= T, 1.0, below / np.maximum(rows[2], 1e-300)),
         origin=origin,
-        u_reasons=reasons,
+        u_reasons=tuple(reasons),
         components=dict(components(model, T, values)),
     )

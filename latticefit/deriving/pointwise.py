@@ -5,28 +5,11 @@ from __future__ import annotations
 import numpy as np
 
 from ..constants import GAS_CONSTANT
-from ..functions import debye_heat_capacity, debye_heat_capacity_derivative
-from ..models import Model, cp_cv_coefficient, harmonic_heat_capacity, heat_capacity, total_modes
+from ..functions import debye_heat_capacity_derivative, invert_debye
+from ..models import Model, calorimetric_theta, cp_cv_coefficient, harmonic_heat_capacity, heat_capacity, total_modes
 from ..records import FitRecord, FloatArray, PointwiseTheta, PreparedData
 
-__all__ = ["invert_debye", "model_theta", "pointwise_theta"]
-
-_LOW, _HIGH, _STEPS = np.log(1e-6), np.log(1e6), 64
-
-
-def invert_debye(ratio: FloatArray) -> FloatArray:
-    """Return x = theta/T at which the Debye function C/(3 N k_B) equals `ratio`; NaN outside 0 < ratio < 1.
-
-    By bisection in ln x: the function falls from 1 to 0 without a turn (P. Debye, Ann. Phys. 39, 789 (1912)).
-    """
-    ratio = np.asarray(ratio, dtype=float)
-    inside = (ratio > 0) & (ratio < 1)
-    low, high = np.full(ratio.shape, _LOW), np.full(ratio.shape, _HIGH)
-    for _ in range(_STEPS):
-        middle = (low + high) / 2
-        above = np.asarray(debye_heat_capacity(np.exp(middle))) > ratio
-        low, high = np.where(above, middle, low), np.where(above, high, middle)
-    return np.where(inside, np.exp((low + high) / 2), np.nan)
+__all__ = ["model_theta", "pointwise_theta"]
 
 
 def _harmonic(model: Model, values: FloatArray, T: FloatArray, measured: FloatArray) -> tuple[FloatArray, FloatArray]:
@@ -74,4 +57,4 @@ def _blank_reason(value: float, limit: float) -> str | None:
 
 def model_theta(fit: FitRecord, model: Model, T: FloatArray) -> FloatArray:
     """theta_D(T) of the fitted harmonic lattice, K; NaN where it is not defined."""
-    return np.asarray(invert_debye(harmonic_heat_capacity(model, T, np.asarray(fit.values)) / _limit(model, fit)) * T)
+    return calorimetric_theta(model, np.asarray(fit.values), fit.atoms, T)

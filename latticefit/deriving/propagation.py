@@ -24,7 +24,9 @@ def _gradient(function: Callable[[FloatArray], FloatArray], values: FloatArray, 
         up, down = values.copy(), values.copy()
         up[i] += step
         down[i] -= step
-        columns.append((np.asarray(function(up)) - np.asarray(function(down))) / (2 * step))
+        if values[i] >= 0 > down[i]:  # the functions of a negative theta or mode count are not those of the model
+            down[i] = values[i]
+        columns.append((np.asarray(function(up)) - np.asarray(function(down))) / (up[i] - down[i]))
     return np.array(columns, dtype=float)
 
 

@@ -1,7 +1,17 @@
 """Residual statistics, validity facts, the verdict in words, and the named warnings."""
 
+from .case import Case
 from .diagnose import diagnose
-from .rules import REACH_STOP, REACH_WARN, RULES, Case, find_warnings
+from .reach import (
+    REACH_STOP,
+    REACH_WARN,
+    TOP_STOP,
+    Reach,
+    high_temperature_ratio,
+    low_temperature_reach,
+    theta_debye_two,
+)
+from .rules import RULES, find_warnings
 from .statistics import akaike, bayes, durbin_watson, lag1_correlation, residual_statistics, runs_test
 from .verdict import validity_facts, verdict
 
@@ -9,15 +19,20 @@ __all__ = [
     "REACH_STOP",
     "REACH_WARN",
     "RULES",
+    "TOP_STOP",
     "Case",
+    "Reach",
     "akaike",
     "bayes",
     "diagnose",
     "durbin_watson",
     "find_warnings",
+    "high_temperature_ratio",
     "lag1_correlation",
+    "low_temperature_reach",
     "residual_statistics",
     "runs_test",
+    "theta_debye_two",
     "validity_facts",
     "verdict",
 ]

@@ -6,7 +6,8 @@ import numpy as np
 
 from ..models import build_model, heat_capacity
 from ..records import Diagnosis, FitRecord, PreparedData
-from .rules import Case, find_warnings
+from .case import Case
+from .rules import find_warnings
 from .statistics import residual_statistics
 from .verdict import validity_facts, verdict
 
@@ -31,7 +32,7 @@ def diagnose(prepared: PreparedData, fit: FitRecord) -> Diagnosis:
     difference = prepared.heat_capacity - expected
     percent = 100 * difference / expected
     normalised = difference / prepared.sigma
-    statistics = residual_statistics(prepared, fit, percent, normalised)
+    statistics = residual_statistics(prepared, fit, difference, percent, normalised)
     describes, sentence = verdict(prepared, fit, statistics)
     return Diagnosis(
         model=expected,

@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from math import floor, inf, log, log10
+from math import floor, inf, log, log10, nan
 
 import numpy as np
 from numpy.typing import NDArray
 from scipy.stats import chi2, norm
 
+from ..preparing.scatter import repeat_sets
 from ..records import FitRecord, FloatArray, PreparedData, ResidualBand, ResidualStatistics
 
 __all__ = ["akaike", "bayes", "durbin_watson", "lag1_correlation", "residual_statistics", "runs_test"]
@@ -28,9 +29,11 @@ def bayes(chi_square: float, parameters: int, points: int) -> float:
 
 
 def _average_ties(T: FloatArray, normalised: FloatArray) -> FloatArray:
-    """Residuals with repeats at one temperature averaged: repeats are neighbours by design, not by correlation."""
-    _, inverse, counts = np.unique(T, return_inverse=True, return_counts=True)
-    return np.asarray(np.bincount(inverse, weights=normalised) / np.sqrt(counts))
+    """Residuals with repeats averaged: they are neighbours by design, not by correlation."""
+    sets = repeat_sets(T) if T.size > 1 else None
+    if sets is None:
+        sets = np.unique(T, return_inverse=True)[1].ravel()
+    return np.asarray(np.bincount(sets, weights=normalised) / np.sqrt(np.bincount(sets)))
 
 
 def _by_run(T: FloatArray, normalised: FloatArray, run: NDArray[np.intp]) -> list[FloatArray]:
@@ -97,7 +100,7 @@ def _bands(T: FloatArray, percent: FloatArray) -> tuple[ResidualBand, ...]:
 
 
 def residual_statistics(
-    prepared: PreparedData, fit: FitRecord, percent: FloatArray, normalised: FloatArray
+    prepared: PreparedData, fit: FitRecord, residual: FloatArray, percent: FloatArray, normalised: FloatArray
 ) -> ResidualStatistics:
     """Everything the report says in numbers about the residuals.
 
@@ -105,8 +108,8 @@ def residual_statistics(
     ----------
     prepared : PreparedData
     fit : FitRecord
-    percent, normalised : ndarray, shape (n,)
-        Residuals of the fitted points in percent of the model and divided by sigma.
+    residual, percent, normalised : ndarray, shape (n,)
+        Residuals of the fitted points in J/(mol K), in percent of the model, and divided by sigma.
     """
     T, run = prepared.temperature, prepared.run
     n, k, dof = T.size, fit.free_parameters, fit.degrees_of_freedom
@@ -125,4 +128,10 @@ def residual_statistics(
         runs_test_p=p_runs,
         longest_run=longest,
         bands=_bands(T, percent),
+        entropy_miss=float(np.trapezoid(residual / T, T)),
+        energy_miss=float(np.trapezoid(residual, T)),
+        run_means_percent=tuple(
+            float(percent[run == k].mean()) if (run == k).any() else nan
+            for k in range(len(prepared.measurement.readings))
+        ),
     )

@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 from ..records import FitRecord, PreparedData, ResidualBand, ResidualStatistics, ValidityFact
+from ..rounding import percent_text
 
-__all__ = ["MISFIT", "validity_facts", "verdict"]
+__all__ = ["MISFIT", "correlated", "misfit", "only_scatter", "plain", "validity_facts", "verdict"]
 
 MISFIT = 2.0
 """Reduced chi-square above which a model is said not to describe the data (common practice, no source)."""
@@ -12,6 +13,8 @@ MISFIT = 2.0
 _UNLIKELY = 1e-3  # upper-tail probability of chi-square below which chance is ruled out
 _CORRELATED = (1.2, 2.8)  # Durbin-Watson outside this range
 _RUNS_P = 0.01
+_ENOUGH = 15  # degrees of freedom below which the tests for a pattern have no power
+_MISSED = 10.0  # rms residual in percent within a decade above which a model has missed it
 _CONDITION = 1e8
 
 
@@ -19,45 +22,83 @@ def _worst(bands: tuple[ResidualBand, ...]) -> ResidualBand:
     return max(bands, key=lambda each: each.rms_percent)
 
 
-def _correlated(statistics: ResidualStatistics) -> bool:
+def correlated(statistics: ResidualStatistics) -> bool:
+    """Whether neighbouring residuals go together, by the Durbin-Watson or the runs test."""
     dw, p = statistics.durbin_watson, statistics.runs_test_p
     return (dw is not None and not _CORRELATED[0] <= dw <= _CORRELATED[1]) or (p is not None and p < _RUNS_P)
+
+
+def only_scatter(fit: FitRecord, statistics: ResidualStatistics) -> bool:
+    """Whether too large a chi-square comes from scatter without a pattern, which speaks against sigma."""
+    tested = statistics.runs_test_p is not None and fit.degrees_of_freedom >= _ENOUGH
+    return tested and not correlated(statistics) and _worst(statistics.bands).rms_percent < _MISSED
+
+
+def misfit(fit: FitRecord, statistics: ResidualStatistics) -> bool:
+    """Whether chi-square is too large and chance is ruled out."""
+    reduced, p = statistics.reduced_chi_square, statistics.chi_square_p
+    return reduced is not None and p is not None and reduced > MISFIT and p < _UNLIKELY
 
 
 def verdict(prepared: PreparedData, fit: FitRecord, statistics: ResidualStatistics) -> tuple[bool, str]:
     """Whether the model describes the data, and the sentence that says so.
 
-    A model describes the data unless its reduced chi-square exceeds 2 and chance is ruled out (p < 0.001). Where no
-    degree of freedom is left nothing can be said.
+    A model describes the data unless its reduced chi-square exceeds 2 and chance is ruled out (p < 0.001); scatter
+    without any pattern then speaks against sigma and not against the model. Where no degree of freedom is left nothing
+    can be said.
     """
     reduced, p = statistics.reduced_chi_square, statistics.chi_square_p
     stated = "the stated uncertainties" if prepared.sigma_kind == "stated" else "the scatter of the points"
-    worst = _worst(statistics.bands)
-    where = (
-        f"between {worst.temperature_low:g} and {worst.temperature_high:g} K the residuals reach "
-        f"{worst.max_abs_percent:.2g} % (rms {worst.rms_percent:.2g} %)"
-    )
     if not fit.converged:
         return False, f"The fit did not converge ({fit.message}); its numbers are not to be used."
     if reduced is None or p is None:
         return False, "As many parameters as points: the model passes through them and nothing tests it."
-    if reduced > MISFIT and p < _UNLIKELY:
-        return False, (
-            f"The model {fit.terms!r} does not describe the data: the residuals are {reduced**0.5:.2g} times larger "
-            f"than {stated} (reduced chi-square {reduced:.3g}); {where}."
+    if misfit(fit, statistics) and only_scatter(fit, statistics):
+        return True, (
+            f"The model {fit.terms!r} follows the data without a pattern in the residuals, but they are "
+            f"{plain(reduced**0.5)} times larger than {stated} (reduced chi-square {plain(reduced)}): those are too "
+            f"small, or the scatter is real (rms residual {percent_text(statistics.rms_percent)})."
         )
-    text = (
-        f"The model {fit.terms!r} describes the data within {stated} "
-        f"(reduced chi-square {reduced:.2g}, rms residual {statistics.rms_percent:.2g} %)"
+    if misfit(fit, statistics):
+        return False, (
+            f"The model {fit.terms!r} does not describe the data: the residuals are {plain(reduced**0.5)} times larger "
+            f"than {stated} (reduced chi-square {plain(reduced)}); {_where(statistics)}."
+        )
+    return True, _described(fit, statistics, stated, reduced, p)
+
+
+def _where(statistics: ResidualStatistics) -> str:
+    worst = _worst(statistics.bands)
+    return (
+        f"between {worst.temperature_low:g} and {worst.temperature_high:g} K the residuals reach "
+        f"{percent_text(worst.max_abs_percent)} (rms {percent_text(worst.rms_percent)})"
     )
+
+
+def _described(fit: FitRecord, statistics: ResidualStatistics, stated: str, reduced: float, p: float) -> str:
     if reduced > 1 and p < _UNLIKELY:
         text = (
             f"The model {fit.terms!r} comes close to the data but misses them by more than chance allows "
-            f"(reduced chi-square {reduced:.2g}, p = {p:.1g}; {where})"
+            f"(reduced chi-square {plain(reduced)}, p = {p:.1g}; {_where(statistics)})"
         )
-    if _correlated(statistics):
+    elif _worst(statistics.bands).rms_percent > _MISSED:
+        text = (
+            f"The model {fit.terms!r} stays within {stated} (reduced chi-square {plain(reduced)}), but those are wide: "
+            f"{_where(statistics)}, so the fit hardly judges the model there"
+        )
+    else:
+        text = (
+            f"The model {fit.terms!r} describes the data within {stated} (reduced chi-square {plain(reduced)}, "
+            f"rms residual {percent_text(statistics.rms_percent)})"
+        )
+    if correlated(statistics):
         text += "; neighbouring residuals go together, so something systematic remains in them"
-    return True, text + "."
+    return text + "."
+
+
+def plain(value: float) -> str:
+    """A number to two figures, never as a power of ten."""
+    return percent_text(value).removesuffix(" %") if abs(value) <= 1000 else f"{value:.0f}"
 
 
 def validity_facts(fit: FitRecord, statistics: ResidualStatistics) -> tuple[ValidityFact, ...]:
@@ -86,13 +127,13 @@ def validity_facts(fit: FitRecord, statistics: ResidualStatistics) -> tuple[Vali
             ValidityFact(
                 "chi-square within reach of chance",
                 not (reduced > 1 and p < _UNLIKELY),
-                f"{reduced:.3g} per degree of freedom ({fit.degrees_of_freedom}), upper tail p = {p:.2g}",
+                f"{plain(reduced)} per degree of freedom ({fit.degrees_of_freedom}), upper tail p = {p:.2g}",
             )
         )
     facts.append(
         ValidityFact(
             "residuals independent",
-            not _correlated(statistics),
+            not correlated(statistics),
             f"Durbin-Watson {'undefined' if dw is None else format(dw, '.2f')}, runs test p = "
             f"{'undefined' if statistics.runs_test_p is None else format(statistics.runs_test_p, '.2g')}, "
             f"longest run {statistics.longest_run}",

@@ -15,6 +15,7 @@ __all__ = ["Covariance", "at_bounds", "covariance"]
 _NULL = 1e-8  # singular values of the unit-column Jacobian below this, relative to the largest, are not determined
 _NULL_SHARE = 0.1  # a parameter with at least this share of such a direction is undetermined
 _AT_BOUND = 0.05  # closer to a bound than this many standard uncertainties is at the bound
+_AT_BOUND_SHARE = 1e-3  # but never further than this share of the range, or of the value
 _AT_BOUND_RANGE = 1e-6  # or closer than this fraction of a finite range
 
 
@@ -72,6 +73,10 @@ def at_bounds(
     u = np.sqrt(np.diag(found.matrix))
     u[found.undetermined] = 0.0
     span = par.high - par.low
-    reach = np.maximum(_AT_BOUND * u, np.where(np.isfinite(span), _AT_BOUND_RANGE * span, 0.0))
+    scale = np.where(np.isfinite(span), span, np.abs(values))
+    reach = np.where(np.isfinite(span), _AT_BOUND_RANGE * span, 0.0)
+    # gamma or a mode count that ended at zero is its own scale of nothing: there u alone decides
+    near_zero = (par.low == 0) & (values < u)
+    reach = np.maximum(reach, np.where(near_zero, _AT_BOUND * u, np.minimum(_AT_BOUND * u, _AT_BOUND_SHARE * scale)))
     near = (values - par.low <= reach) | (par.high - values <= reach)
     return np.array([i for i in par.free if near[i]], dtype=np.intp)

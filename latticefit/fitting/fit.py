@@ -8,7 +8,7 @@ from typing import Literal, cast
 import numpy as np
 from numpy.typing import NDArray
 
-from ..errors import InputError
+from ..errors import FitError, InputError
 from ..models import Model, Parametrisation, build_model
 from ..records import FitRecord, FloatArray, ModelSettings, ParameterValue, PreparedData
 from .covariance import Covariance, at_bounds, covariance
@@ -42,6 +42,8 @@ def fit_model(prepared: PreparedData, settings: ModelSettings, seed: int = 0) ->
     ------
     InputError
         For a model that cannot be fitted to these data.
+    FitError
+        When no minimum was found although the request is in order.
     """
     if settings.terms is None:
         raise InputError("no model is named; give its terms, e.g. --terms 'debye + einstein'")
@@ -61,6 +63,11 @@ def fit_model(prepared: PreparedData, settings: ModelSettings, seed: int = 0) ->
         )
     found = search(par, *data, dict(settings.start), seed)
     solution = minimise_with_lmfit(found.best.parametrisation, found.best.values, *data)
+    if not np.isfinite(solution.chi_square) or not np.isfinite(solution.values).all():
+        raise FitError(
+            f"{model.expression!r} could not be fitted to these data: {solution.message}; use fewer terms, or check "
+            "bounds and fixed values"
+        )
     return _record(prepared, settings, model, found, solution)
 
 
@@ -136,6 +143,8 @@ def _parameter(
 ) -> ParameterValue:
     spec = model.specs[i]
     u_fit = None if status in ("undetermined", "at_bound") else float(np.sqrt(matrix[i, i]))
+    if status == "tied" and u_fit == 0 and any(k in par.free for k in par.others):
+        u_fit = None  # every mode count that it follows from is at a bound
     return ParameterValue(
         name=model.names[i],
         value=float(values[i]),

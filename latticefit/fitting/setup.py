@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
+from math import isfinite
 
 import numpy as np
 
@@ -14,6 +15,7 @@ from ..records import FloatArray, ModelSettings, Sample
 __all__ = ["default_mode_sum", "parametrise"]
 
 _MODES_PER_ATOM = 3
+_EXCESS = 2.0  # times the measured heat capacity that a held term alone may give
 _COLDEST_THETA = 0.3  # below this times the lowest point a term is a constant and its theta without meaning
 _LARGEST_DILATION = 0.24  # 4 A T C stays below 0.96 up to the highest point, so that Cp - Cv has a solution
 
@@ -118,25 +120,57 @@ def parametrise(
         for name, value in given.items():
             i = model.index(name)
             if not low[i] <= value <= high[i]:
+                if name not in settings.fix and kind == "fixed":
+                    raise InputError(
+                        f"the melting point {sample.melting_point:g} K would hold {name} at {value:.3g} "
+                        f"{model.specs[i].unit}, beyond what Cp-Cv can be for these data ({high[i]:.3g}); check it"
+                    )
                 raise InputError(
                     f"{kind} value of {name}: {value:g} {model.specs[i].unit} lies outside "
                     f"{low[i]:.4g} to {high[i]:.4g}"
                 )
+    if all(held.get(model.names[i]) == 0 for i in model.modes):
+        raise InputError("every mode count is fixed at 0, so there is no lattice left; free one of them")
     total = _MODES_PER_ATOM * sample.atoms if fixed_sum and sample.atoms is not None else 0.0
     tied = _tied(model, settings, held, total) if fixed_sum else None
     for name, value in held.items():
         base[model.index(name)] = value
+    _check_level(model, {**{n: b[0] for n, b in settings.bounds.items()}, **held}, T, measured)
     if tied is not None:
-        _check_room(model, held, total)
+        _check_room(model, held, low, high, total)
         for i in model.modes:
             high[i] = min(high[i], total)
     free = [i for i, name in enumerate(model.names) if name not in held and i != tied]
     return Parametrisation(model, base, np.array(free, dtype=np.intp), tied, total, low, high)
 
 
-def _check_room(model: Model, held: dict[str, float], total: float) -> None:
+def _check_level(model: Model, least: dict[str, float], T: FloatArray, measured: FloatArray) -> None:
+    """Refuse a held value that alone gives more than was measured: most often milli for one."""
+    for each in model.placed:
+        names = model.names[each.slice]
+        if each.term.lattice or not all(name in least and isfinite(least[name]) for name in names):
+            continue
+        ratio = each.term.heat_capacity(T, *(least[name] for name in names)) / measured
+        if ratio.max() > _EXCESS:
+            worst = int(ratio.argmax())
+            listed = ", ".join(f"{name} = {least[name]:g} {model.specs[model.index(name)].unit}" for name in names)
+            raise InputError(
+                f"{listed} alone gives {ratio[worst]:.3g} times the heat capacity measured at {T[worst]:.4g} K; values "
+                "are in SI units, so 4.1 mJ/(mol K^2) is 0.0041"
+            )
+
+
+def _check_room(model: Model, held: dict[str, float], low: FloatArray, high: FloatArray, total: float) -> None:
+    """Refuse mode counts that cannot add up to the sum."""
+    least = sum(held.get(model.names[i], low[i]) for i in model.modes)
+    most = sum(held.get(model.names[i], high[i]) for i in model.modes)
     taken = sum(held.get(model.names[i], 0.0) for i in model.modes)
     if taken >= total:
         raise InputError(
             f"the fixed mode counts take {taken:g} of the {total:g} modes (3 per atom) and leave none for the others"
+        )
+    if not least <= total <= most:
+        raise InputError(
+            f"the bounds let the mode counts add up to {least:g} to {most:g}, but the mode sum is fixed at {total:g} "
+            "(3 per atom); widen them or use the free mode sum"
         )

@@ -342,6 +342,8 @@ def _rescanned(
             for vector in _scan(par, best.values, position, data):
                 fresh.append(minimise(par, vector, *data, tolerance=_ROUGH, most=_ROUGH_MOST))
         found += fresh
+        if not fresh:
+            break
         better = min(fresh, key=_chi_square)
         if better.chi_square > best.chi_square - _GAIN:
             break
@@ -356,6 +358,8 @@ def _scan(
     positions = tuple(i for i, spec in enumerate(par.model.specs) if spec.role == "scale")
     grid = _grid(par, position, data[0], _SCAN_POINTS, 0.0)
     grid = grid[np.abs(np.log(grid / values[position])) > _APART]
+    if grid.size == 0:
+        return []
     rows = np.tile(values[list(positions)], (grid.size, 1))
     rows[:, positions.index(position)] = grid
     scales = _Scales(positions, rows)

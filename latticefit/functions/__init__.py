@@ -22,6 +22,7 @@ from latticefit.functions.einstein import (
     einstein_heat_capacity_derivative,
     einstein_helmholtz,
 )
+from latticefit.functions.inversion import invert_debye
 
 __all__ = [
     "PublishedCheck",
@@ -39,5 +40,6 @@ __all__ = [
     "einstein_heat_capacity",
     "einstein_heat_capacity_derivative",
     "einstein_helmholtz",
+    "invert_debye",
     "published_check",
 ]

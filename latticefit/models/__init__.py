@@ -14,11 +14,13 @@ from .model import (
     cp_cv_coefficient,
     harmonic_heat_capacity,
     heat_capacity,
+    heat_capacity_and_partials,
     low_temperature_theta,
     partials,
     total_modes,
 )
-from .parametrisation import Parametrisation, jacobian, residual
+from .parametrisation import Parametrisation, jacobian, residual, residual_and_jacobian
+from .spectrum import calorimetric_theta, mean_theta, theta_debye_moment
 from .thermodynamics import energy, entropy, zero_point_energy
 
 __all__ = [
@@ -28,6 +30,7 @@ __all__ = [
     "Parametrisation",
     "PlacedTerm",
     "build_model",
+    "calorimetric_theta",
     "components",
     "cp_cv_coefficient",
     "cp_cv_form",
@@ -36,11 +39,15 @@ __all__ = [
     "format_expression",
     "harmonic_heat_capacity",
     "heat_capacity",
+    "heat_capacity_and_partials",
     "jacobian",
     "low_temperature_theta",
+    "mean_theta",
     "parse_expression",
     "partials",
     "residual",
+    "residual_and_jacobian",
+    "theta_debye_moment",
     "total_modes",
     "zero_point_energy",
 ]

@@ -21,6 +21,7 @@ __all__ = [
     "cp_cv_coefficient",
     "harmonic_heat_capacity",
     "heat_capacity",
+    "heat_capacity_and_partials",
     "low_temperature_theta",
     "partials",
     "total_modes",
@@ -126,17 +127,32 @@ def heat_capacity(model: Model, T: FloatArray, values: FloatArray) -> FloatArray
     return model.cp_cv.apply(T, lattice, cp_cv_coefficient(model, values)) + _sum(model, T, values, lattice=False)
 
 
+def heat_capacity_and_partials(model: Model, T: FloatArray, values: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """`heat_capacity` and `partials` for little more than the price of the latter, T (K) of shape (n,).
+
+    Every term is homogeneous in its amplitudes, so that their partials hold its heat capacity too.
+    """
+    columns = np.empty((len(model.names), T.size))
+    lattice, other = np.zeros_like(T), np.zeros_like(T)
+    for each in model.placed:
+        columns[each.slice] = each.term.partials(T, *values[each.slice])
+        for i, spec in enumerate(each.term.parameters, start=each.slice.start):
+            if spec.role == "amplitude":
+                total = lattice if each.term.lattice else other
+                total += values[i] * columns[i]
+    if model.cp_cv.parameter is None:
+        return lattice + other, columns
+    coefficient = cp_cv_coefficient(model, values)
+    slope, columns[-1] = model.cp_cv.slopes(T, lattice, coefficient)
+    for each in model.placed:
+        if each.term.lattice:
+            columns[each.slice] *= slope
+    return model.cp_cv.apply(T, lattice, coefficient) + other, columns
+
+
 def partials(model: Model, T: FloatArray, values: FloatArray) -> FloatArray:
     """Derivatives of the heat capacity with respect to every parameter; shape (p, n), T (K) of shape (n,)."""
-    columns = np.empty((len(model.names), T.size))
-    slope: FloatArray | float = 1.0
-    if model.cp_cv.parameter is not None:
-        lattice = harmonic_heat_capacity(model, T, values)
-        slope, columns[-1] = model.cp_cv.slopes(T, lattice, cp_cv_coefficient(model, values))
-    for each in model.placed:
-        own = each.term.partials(T, *values[each.slice])
-        columns[each.slice] = slope * own if each.term.lattice else own
-    return columns
+    return heat_capacity_and_partials(model, T, values)[1]
 
 
 def components(model: Model, T: FloatArray, values: FloatArray) -> Mapping[str, FloatArray]:

@@ -8,9 +8,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from ..records import FloatArray, Frozen
-from .model import Model, heat_capacity, partials
+from .model import Model, heat_capacity, heat_capacity_and_partials
 
-__all__ = ["Parametrisation", "jacobian", "residual"]
+__all__ = ["Parametrisation", "jacobian", "residual", "residual_and_jacobian"]
 
 
 @dataclass(frozen=True)
@@ -82,9 +82,16 @@ def residual(
     return np.asarray((measured - heat_capacity(parametrisation.model, T, parametrisation.expand(x))) / sigma)
 
 
+def residual_and_jacobian(
+    parametrisation: Parametrisation, x: FloatArray, T: FloatArray, measured: FloatArray, sigma: FloatArray
+) -> tuple[FloatArray, FloatArray]:
+    """`residual` and `jacobian`, both from one evaluation of the model."""
+    modelled, columns = heat_capacity_and_partials(parametrisation.model, T, parametrisation.expand(x))
+    return (measured - modelled) / sigma, np.asarray(-(columns / sigma).T @ parametrisation.matrix())
+
+
 def jacobian(
     parametrisation: Parametrisation, x: FloatArray, T: FloatArray, measured: FloatArray, sigma: FloatArray
 ) -> FloatArray:
     """Derivatives of `residual` with respect to x, shape (n, k): minus the partials of the model over sigma."""
-    columns = partials(parametrisation.model, T, parametrisation.expand(x))
-    return np.asarray(-(columns / sigma).T @ parametrisation.matrix())
+    return residual_and_jacobian(parametrisation, x, T, measured, sigma)[1]

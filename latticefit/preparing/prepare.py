@@ -6,10 +6,11 @@ from collections.abc import Sequence
 from typing import Final
 
 import numpy as np
+from numpy.typing import NDArray
 
 from ..errors import InputError
 from ..records import FloatArray, Measurement, PreparedData, SigmaKind
-from .scatter import local_scatter, neighbour_span
+from .scatter import pooled_scatter
 
 __all__ = ["prepare"]
 
@@ -56,7 +57,7 @@ def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Seq
         sigma, text = measurement.sigma[index], f"stated: {measurement.sigma_text}"
     else:
         kind = "estimated"
-        sigma, text = _estimated(temperature, heat_capacity)
+        sigma, text = _estimated(temperature, heat_capacity, measurement.run[index])
     return PreparedData(
         measurement=measurement,
         temperature=temperature,
@@ -120,12 +121,14 @@ def _words(interval: Interval) -> str:
 # ------------------------------------------------------------------------------------------------------------ sigma
 
 
-def _estimated(temperature: FloatArray, heat_capacity: FloatArray) -> tuple[FloatArray, str]:
+def _estimated(temperature: FloatArray, heat_capacity: FloatArray, run: NDArray[np.intp]) -> tuple[FloatArray, str]:
+    found = pooled_scatter(temperature, heat_capacity, run, _FEWEST_POINTS, _WIDEST_SPAN)
     enough = temperature.size >= _FEWEST_POINTS
-    close = neighbour_span(temperature) <= _WIDEST_SPAN
-    scatter = local_scatter(temperature, heat_capacity) if enough and close else None
+    scatter = found.scatter
     if scatter is not None and scatter >= _LEAST_SCATTER:
-        return scatter * heat_capacity, f"estimated from local scatter: {_percent(scatter)} of the heat capacity"
+        text = f"estimated from local scatter: {_percent(scatter)} of the heat capacity"
+        text += " (between sets of repeats, each averaged)" if found.sets else ""
+        return scatter * heat_capacity, text
     why = "the local scatter is too small to be noise"
     if scatter is None:
         why = "the points are too far apart to estimate it" if enough else "too few points to estimate it from"

@@ -3,17 +3,89 @@
 from __future__ import annotations
 
 import math
+from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
+from numpy.typing import NDArray
 
 from ..records import FloatArray
 
-__all__ = ["local_scatter", "neighbour_span"]
+__all__ = ["Scatter", "local_scatter", "neighbour_span", "pooled_scatter", "repeat_sets"]
 
 _NEIGHBOURS: Final = 7
 _NORMAL_MEDIAN: Final = 1.4826  # standard deviation of a normal distribution over the median of its absolute values
 _LEAST_FREEDOM: Final = 1e-6
+
+
+_REPEAT: Final = 1.003  # points closer than this factor in T may be repeats of one set
+_APART: Final = 4.0  # sets lie at least this many times further apart than the points within them
+
+
+@dataclass(frozen=True)
+class Scatter:
+    """Relative scatter (None where it cannot be estimated) and whether repeats were averaged for it."""
+
+    scatter: float | None
+    sets: bool
+
+
+def repeat_sets(temperature: FloatArray) -> NDArray[np.intp] | None:
+    """Number the sets of repeats of a run measured in duplicates, triplicates ...; None where it was not.
+
+    Repeats share what disturbs a set, so their spread says nothing about the scatter between sets. Ascending
+    temperatures belong to one set while neighbours differ by less than 0.3 %; it is a run of repeats when most
+    points stand in sets and the sets lie much further apart than the points within them.
+    """
+    steps = np.diff(np.log(temperature))
+    inside = steps < math.log(_REPEAT)
+    if inside.sum() < 0.4 * steps.size or inside.all():
+        return None
+    if np.median(steps[~inside]) < _APART * max(float(np.median(steps[inside])), 1e-12):
+        return None
+    return np.concatenate([[0], np.cumsum(~inside)])
+
+
+def _averaged(temperature: FloatArray, heat_capacity: FloatArray) -> tuple[FloatArray, FloatArray, bool]:
+    sets = repeat_sets(temperature)
+    if sets is None:
+        return temperature, heat_capacity, False
+    count = np.bincount(sets)
+    mean_t = np.exp(np.bincount(sets, weights=np.log(temperature)) / count)
+    mean_c = np.exp(np.bincount(sets, weights=np.log(heat_capacity)) / count)
+    return mean_t, mean_c, True
+
+
+def pooled_scatter(
+    temperature: FloatArray, heat_capacity: FloatArray, run: NDArray[np.intp], fewest: int, widest: float
+) -> Scatter:
+    """Estimate the relative scatter within each run and pool it, weighted by points.
+
+    Parameters
+    ----------
+    temperature, heat_capacity : ndarray, shape (n,)
+        Ascending temperature in K; heat capacity in any unit, above 0.
+    run : ndarray of int, shape (n,)
+        A step between runs is no scatter, so each is looked at alone.
+    fewest : int
+        Points (or sets of repeats) below which a run says nothing.
+    widest : float
+        Factor in T that seven neighbours may span.
+    """
+    found: list[tuple[int, float]] = []
+    any_sets = False
+    for each in np.unique(run):
+        T, C, sets = _averaged(temperature[run == each], heat_capacity[run == each])
+        if T.size < fewest or neighbour_span(T) > widest:
+            continue
+        scatter = local_scatter(T, C)
+        if scatter is not None:
+            found.append((T.size, scatter))
+            any_sets = any_sets or sets
+    if not found:
+        return Scatter(None, False)
+    weights = sum(count for count, _ in found)
+    return Scatter(math.sqrt(sum(count * each**2 for count, each in found) / weights), any_sets)
 
 
 def neighbour_span(temperature: FloatArray) -> float:

@@ -124,7 +124,9 @@ def parse_assignment(text: str) -> tuple[str, float]:
     name, equals, value = (part.strip() for part in text.partition("="))
     number = _number(value)
     if not (name and equals) or number is None or not math.isfinite(number):
-        raise InputError(f"{quoted(text)} must be NAME=VALUE, as in 'debye_theta=300'")
+        raise InputError(
+            f"{quoted(text)} must be NAME=VALUE, as in 'debye_theta=300', the value a plain number in SI units"
+        )
     return name, number
 
 

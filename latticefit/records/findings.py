@@ -100,7 +100,12 @@ class ResidualBand:
 
 @dataclass(frozen=True)
 class ResidualStatistics:
-    """Numbers on the residuals of the fitted points; None where they are not defined."""
+    """Numbers on the residuals of the fitted points; None where they are not defined.
+
+    `entropy_miss` is the integral of residual/T over the fitted points, J/(mol K), and `energy_miss` that of the
+    residual, J/mol: what S and H of the model lack over the measured range. `run_means_percent` has one mean residual
+    for each run, NaN where none of its points is fitted.
+    """
 
     reduced_chi_square: float | None
     chi_square_p: float | None
@@ -114,6 +119,9 @@ class ResidualStatistics:
     runs_test_p: float | None
     longest_run: int
     bands: tuple[ResidualBand, ...]
+    entropy_miss: float
+    energy_miss: float
+    run_means_percent: tuple[float, ...]
 
 
 @dataclass(frozen=True)

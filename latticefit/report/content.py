@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 from ..constants import STANDARD_TEMPERATURE
 from ..records import Analysis, DerivedValue, ParameterValue, ThermodynamicTable
+from ..rounding import percent_text
 from .wording import concise, harmless, plain_number, plus_minus, shown_unit, significant
 
 __all__ = [
@@ -89,15 +90,22 @@ def measured_rows(analysis: Analysis) -> tuple[Row, ...]:
     kind = "constant volume (Cv)" if measurement.quantity == "Cv" else "constant pressure (Cp)"
     reasons = Counter(each for each in prepared.reasons if each is not None)
     points = f"{prepared.temperature.size} fitted of {measurement.temperature.size} read"
+    how = [
+        f"T from {harmless(each.temperature_column)!r} in {each.temperature_unit}, heat capacity from "
+        f"{harmless(each.heat_capacity_column)!r} in {each.heat_capacity_unit}"
+        for each in measurement.readings
+    ]
+    about += [] if sample.mass is None else [f"mass {plain_number(1e6 * sample.mass, 6)} mg"]
+    about += [] if sample.melting_point is None else [f"melting point {plain_number(sample.melting_point, 6)} K"]
     left_out = [f"{count} not fitted ({reason})" for reason, count in reasons.items()]
     left_out += [f"{len(measurement.excluded)} rows left out at reading"] if measurement.excluded else []
     return (
         Row("sample", headline(analysis), ", ".join(about)),
-        Row("files", ", ".join(files)),
+        Row("files", ", ".join(files), "; ".join(dict.fromkeys(how))),
         Row("quantity", f"heat capacity at {kind}, per mole of formula unit"),
         Row("points", points, "; ".join(left_out)),
         Row("range fitted", _range(prepared.temperature[0], prepared.temperature[-1])),
-        Row("sigma", prepared.sigma_text, f"{prepared.sigma_kind}; the covariance is {analysis.fit.covariance_kind}"),
+        Row("sigma", prepared.sigma_text, f"the covariance is {analysis.fit.covariance_kind}"),
     )
 
 
@@ -146,6 +154,12 @@ def temperature_rows(analysis: Analysis) -> tuple[Row, ...]:
     return tuple(_derived_row(each) for each in analysis.derived.characteristic_temperatures)
 
 
+def _beyond(analysis: Analysis) -> str:
+    low, high = analysis.prepared.temperature[0], analysis.prepared.temperature[-1]
+    above = high < STANDARD_TEMPERATURE
+    return f"extrapolated: the data {'end' if above else 'begin'} at {plain_number(high if above else low)} K"
+
+
 def standard_rows(analysis: Analysis) -> tuple[Row, ...]:
     """Give the thermodynamic functions at 298.15 K and the zero-point energy."""
     table = analysis.derived.table
@@ -158,9 +172,11 @@ def standard_rows(analysis: Analysis) -> tuple[Row, ...]:
     rows = []
     for symbol, name, unit, word in zip(symbols, names, units, words, strict=True):
         value = plus_minus(getattr(table, name)[i], getattr(table, f"{name}_u")[i], unit)
+        value += "" if table.u_reasons[i] is None else " (u withheld)"
+        value += "" if table.origin[i] == "measured" else f" ({_beyond(analysis)})"
         rows.append(Row(symbol, value, word))
     reason = table.u_reasons[i]
-    share = f"{significant(100 * table.entropy_fraction_below_data[i], 2)} % of S"
+    share = f"{percent_text(100 * table.entropy_fraction_below_data[i])} of S"
     rows.append(Row("below the data", share, "comes from the model below the lowest point fitted"))
     if reason is not None:
         rows.append(Row("u withheld", reason))
@@ -213,8 +229,8 @@ def band_grid(analysis: Analysis) -> Grid:
         (
             _range(each.temperature_low, each.temperature_high),
             str(each.points),
-            f"{significant(each.rms_percent, 2)} %",
-            f"{significant(each.max_abs_percent, 2)} %",
+            percent_text(each.rms_percent),
+            percent_text(each.max_abs_percent),
         )
         for each in analysis.diagnosis.statistics.bands
     )
@@ -224,16 +240,14 @@ def band_grid(analysis: Analysis) -> Grid:
 def fit_rows(analysis: Analysis) -> tuple[Row, ...]:
     """Give the numbers that say how well the model fits."""
     fit, statistics = analysis.fit, analysis.diagnosis.statistics
-    largest = (
-        f"{significant(statistics.max_abs_percent, 2)} % at {plain_number(statistics.max_abs_percent_temperature)} K"
-    )
+    largest = f"{percent_text(statistics.max_abs_percent)} at {plain_number(statistics.max_abs_percent_temperature)} K"
     return (
         Row(
             "reduced chi-square",
             significant(statistics.reduced_chi_square, 3),
             f"{fit.degrees_of_freedom} degrees of freedom, p = {plain_number(statistics.chi_square_p, 2)}",
         ),
-        Row("residuals", f"rms {significant(statistics.rms_percent, 2)} %", f"largest {largest}"),
+        Row("residuals", f"rms {percent_text(statistics.rms_percent)}", f"largest {largest}"),
         Row("Durbin-Watson", significant(statistics.durbin_watson, 3), "2 for independent residuals"),
         Row(
             "runs test",

@@ -13,8 +13,9 @@ from matplotlib.patches import Polygon, Rectangle
 
 from ...constants import GAS_CONSTANT
 from ...records import Analysis, FloatArray, ThermodynamicTable
+from ...rounding import percent_text
 from ..points import measured_points
-from ..wording import harmless, plain_number, significant
+from ..wording import harmless, plain_number
 from .drawing import PointArtists, draw_fit, draw_points, largest, mark_beyond, masked_regions
 from .report_figure import ReportFigure
 from .residuals import ResidualArtists, plot_residuals
@@ -106,7 +107,7 @@ def alt(analysis: Analysis) -> str:
         f"{symbol} against temperature: {prepared.temperature.size} points fitted from "
         f"{plain_number(prepared.temperature[0])} to {plain_number(prepared.temperature[-1])} K with "
         f"{analysis.fit.terms}; the residuals in the panel below have an rms of "
-        f"{significant(statistics.rms_percent, 2)} %. {harmless(analysis.diagnosis.verdict)}"
+        f"{percent_text(statistics.rms_percent)}. {harmless(analysis.diagnosis.verdict)}"
     )
 
 

@@ -11,8 +11,9 @@ from matplotlib.figure import Figure
 from matplotlib.lines import Line2D
 
 from ...records import Analysis
+from ...rounding import percent_text
 from ..points import measured_points
-from ..wording import plain_number, significant
+from ..wording import plain_number
 from .drawing import PointArtists, draw_points, largest, mark_beyond
 from .report_figure import ReportFigure
 from .style import FIT_COLOUR, legend_above, logarithmic_temperature, temperature_label
@@ -74,8 +75,8 @@ def alt(analysis: Analysis) -> str:
         waves = f" The longest run of one sign is {statistics.longest_run} points"
         waves += f" (runs test p = {plain_number(statistics.runs_test_p, 2)})."
     return (
-        f"Percent residuals against temperature on a logarithmic axis: rms {significant(statistics.rms_percent, 2)} %, "
-        f"largest {significant(statistics.max_abs_percent, 2)} % at "
+        f"Percent residuals against temperature on a logarithmic axis: rms {percent_text(statistics.rms_percent)}, "
+        f"largest {percent_text(statistics.max_abs_percent)} at "
         f"{plain_number(statistics.max_abs_percent_temperature)} K.{waves}"
     )
 

@@ -1,0 +1,163 @@
+"""Named warnings: how far the data reach, and whether their level is possible."""
+
+from __future__ import annotations
+
+from ..constants import GAS_CONSTANT
+from ..models import total_modes
+from ..records import NamedWarning
+from .case import Case
+from .reach import REACH_STOP, REACH_WARN, TOP_STOP, high_temperature_ratio, low_temperature_reach, theta_debye_two
+
+__all__ = [
+    "above_classical_limit",
+    "cp_cv_from_melting_point",
+    "cp_cv_missing",
+    "implausible_level",
+    "mode_sum",
+    "reach_down",
+    "reach_up",
+]
+
+_LEVEL = 1.3  # times 3nR that no lattice reaches (common practice, no source)
+_CLASSICAL = 1.02  # times 3nR that a harmonic lattice does not pass
+_HALF = 0.5
+_MODE_SUM = 0.02
+
+
+def implausible_level(case: Case) -> NamedWarning | None:
+    """The highest point is far above 3nR."""
+    if case.fit.atoms is None:
+        return None
+    top = float(case.prepared.heat_capacity[-1]) / (3 * case.fit.atoms * GAS_CONSTANT)
+    if top <= _LEVEL:
+        return None
+    return NamedWarning(
+        code="implausible-level",
+        level="stop",
+        concerns="data",
+        message=f"the heat capacity at the highest point is {top:.3g} times 3nR, which no lattice reaches",
+        found=top,
+        threshold=_LEVEL,
+        advice="check unit, mass, molar mass and formula before anything else",
+    )
+
+
+def reach_down(case: Case) -> NamedWarning | None:
+    """The lowest point is too high for theta_D(T->0)."""
+    reach = low_temperature_reach(case.model, case.fit, float(case.prepared.temperature[0]))
+    if reach is None or reach.status == "reached":
+        return None
+    stop = reach.status == "withheld"
+    return NamedWarning(
+        code="low-temperature-reach",
+        level="stop" if stop else "warn",
+        concerns="theta_debye_low_temperature",
+        message=(
+            f"{reach.reason}; theta_D(T->0) follows from the choice of model, not from the data: "
+            f"{'it is withheld' if stop else 'quote it only with that remark'}"
+        ),
+        found=reach.ratio,
+        threshold=REACH_STOP if stop else REACH_WARN,
+        advice=f"measure a few points between {reach.theta / 100:.2g} and {reach.theta / REACH_WARN:.2g} K",
+    )
+
+
+def reach_up(case: Case) -> NamedWarning | None:
+    """The highest point is too low for the moments of the spectrum."""
+    ratio = high_temperature_ratio(case.model, case.fit, float(case.prepared.temperature[-1]))
+    if ratio is None or ratio <= TOP_STOP:
+        return None
+    return NamedWarning(
+        code="high-temperature-reach",
+        level="stop",
+        concerns="theta_debye_moment, zero_point_energy",
+        message=(
+            f"the data end at {case.prepared.temperature[-1]:.4g} K, theta_D[m=2]/{ratio:.2g}: most modes are not "
+            "excited yet, so moments and zero-point energy follow from the choice of model and are withheld"
+        ),
+        found=ratio,
+        threshold=TOP_STOP,
+        advice="measure to higher temperatures; values above the data are extrapolated and carry no u",
+    )
+
+
+def above_classical_limit(case: Case) -> NamedWarning | None:
+    """The lattice passes 3nR where it cannot (mass, formula, an extra contribution)."""
+    if case.fit.atoms is None:
+        return None
+    limit = 3 * case.fit.atoms * GAS_CONSTANT
+    theta = theta_debye_two(case.model, case.fit)
+    cold = case.prepared.temperature < theta
+    harmonic = case.prepared.heat_capacity - case.outside_lattice
+    ratio = float(harmonic[cold].max() / limit) if cold.any() else 0.0
+    if ratio <= _CLASSICAL or float(case.prepared.heat_capacity[-1]) > _LEVEL * limit:
+        return None
+    return NamedWarning(
+        code="above-classical-limit",
+        level="warn",
+        concerns="data",
+        message=f"the lattice heat capacity reaches {ratio:.3g} times 3nR below theta_D[m=2] = {theta:.4g} K",
+        found=ratio,
+        threshold=_CLASSICAL,
+        advice="check mass, molar mass, formula and addenda; an extra contribution or Cp-Cv is the other explanation",
+    )
+
+
+def cp_cv_missing(case: Case) -> NamedWarning | None:
+    """Cp data reach high enough to need a form of Cp - Cv, and the model has none."""
+    if case.prepared.measurement.quantity != "Cp" or case.model.cp_cv.parameter is not None:
+        return None
+    theta = theta_debye_two(case.model, case.fit)
+    ratio = float(case.prepared.temperature[-1]) / theta
+    if ratio <= _HALF:
+        return None
+    return NamedWarning(
+        code="cp-cv-missing",
+        level="warn",
+        concerns="theta_debye_moment, modes",
+        message=(
+            f"the data are Cp up to {ratio:.2g} times theta_D[m=2] = {theta:.4g} K, where Cp-Cv is 1 % or more, and "
+            "the model has no form for it"
+        ),
+        found=ratio,
+        threshold=_HALF,
+        advice="use --cp-cv nernst-lindemann; characteristic temperatures are biased without it, S and H hardly",
+    )
+
+
+def cp_cv_from_melting_point(case: Case) -> NamedWarning | None:
+    """The Cp - Cv coefficient comes from the melting point."""
+    melting_point = case.prepared.measurement.sample.melting_point
+    last = case.fit.parameters[-1]
+    if melting_point is None or last.name != "nernst_lindemann_coefficient" or last.status != "fixed":
+        return None
+    return NamedWarning(
+        code="cp-cv-from-melting-point",
+        level="warn",
+        concerns=last.name,
+        message=(
+            f"the coefficient of Cp-Cv is held at {last.value:.3g} mol/J, A0/(n Tm) with Tm = {melting_point:.5g} K; "
+            "that rule is good to tens of percent and its error is in no u"
+        ),
+        found=last.value,
+        threshold=None,
+        advice="leave the melting point out and let the coefficient be fitted where the data reach above theta/2",
+    )
+
+
+def mode_sum(case: Case) -> NamedWarning | None:
+    """A free mode sum is not three per atom."""
+    if case.fit.mode_sum != "free" or case.fit.atoms is None:
+        return None
+    ratio = total_modes(case.model, case.fit.values) / (3 * case.fit.atoms)
+    if abs(ratio - 1) <= _MODE_SUM:
+        return None
+    return NamedWarning(
+        code="mode-sum",
+        level="warn",
+        concerns="modes",
+        message=f"the fitted modes add up to {ratio:.3f} times the three per atom of the formula",
+        found=ratio - 1,
+        threshold=_MODE_SUM,
+        advice="check mass, molar mass, formula, addenda and Cp-Cv; or the data end too low to show the sum",
+    )
