@@ -3,8 +3,7 @@
 from __future__ import annotations
 
 import platform
-import sys
-from collections.abc import Callable, Iterable, Mapping
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
 from datetime import UTC, datetime
 from importlib.metadata import PackageNotFoundError, version
@@ -16,9 +15,11 @@ import numpy as np
 from ._version import __version__
 from .deriving import derive, functions_table
 from .diagnosing import diagnose
+from .errors import InputError
 from .fitting import fit_model
 from .preparing import prepare
-from .reading import parse_grid, parse_interval, read_measurement
+from .reading import parse_grid, read_measurement
+from .reading.settings import MODEL, REPORT, RUN, SAMPLE, checked, temperatures, wrong
 from .records import (
     Analysis,
     FloatArray,
@@ -41,6 +42,10 @@ __all__ = ["Fit", "analyse", "fit", "read"]
 
 _PACKAGES = ("numpy", "scipy", "lmfit", "matplotlib", "pandas", "pint", "periodictable")
 _GRAVITY = {"stop": 0, "warn": 1, "note": 2}
+_DEFAULTS = ModelSettings()
+_LONGEST_ARGUMENT = 60
+
+Interval = str | tuple[float, float]
 
 
 def analyse(
@@ -138,27 +143,39 @@ def read(
     InputError
         One sentence: what is wrong, where, and how to mend it.
     """
-    paths = [files] if isinstance(files, (str, Path)) else list(files)
-    sample = SampleSettings(name, formula, atoms, molar_mass, mass, melting_point)
-    runs = tuple(
-        RunSettings(
-            file=str(path),
-            quantity=quantity,
-            temperature=temperature,
-            heat_capacity=heat_capacity,
-            sigma=sigma,
-            coverage_factor=coverage_factor,
-            temperature_unit=temperature_unit,
-            heat_capacity_unit=heat_capacity_unit,
-        )
-        for path in paths
-    )
-    return read_measurement(sample, runs)
+    sample = {
+        "name": name,
+        "formula": formula,
+        "atoms": atoms,
+        "molar_mass": molar_mass,
+        "mass": mass,
+        "melting_point": melting_point,
+    }
+    how = {
+        "quantity": quantity,
+        "temperature": temperature,
+        "heat_capacity": heat_capacity,
+        "sigma": sigma,
+        "coverage_factor": coverage_factor,
+        "temperature_unit": temperature_unit,
+        "heat_capacity_unit": heat_capacity_unit,
+    }
+    runs = tuple(RunSettings(file=path, **checked(how, RUN)) for path in _paths(files))
+    return read_measurement(SampleSettings(**checked(sample, SAMPLE)), runs)
 
 
-def _intervals(given: str | Iterable[str]) -> tuple[tuple[float, float], ...]:
-    texts = [given] if isinstance(given, str) else list(given)
-    return tuple(parse_interval(text) for text in texts)
+def _paths(files: Any) -> list[str]:
+    several = [files] if isinstance(files, (str, Path)) else files
+    if not isinstance(several, Iterable) or isinstance(several, (bytes, Mapping)):
+        raise wrong("files", "a path or several", files)
+    paths = []
+    for each in several:
+        if not isinstance(each, (str, Path)) or not str(each).strip():
+            raise wrong("files", "a path or several", each)
+        paths.append(str(each))
+    if not paths:
+        raise InputError("files names no file; give at least one")
+    return paths
 
 
 def fit(
@@ -169,10 +186,10 @@ def fit(
     mode_sum: Literal["fixed", "free"] | None = None,
     start: Mapping[str, float] | None = None,
     fix: Mapping[str, float] | None = None,
-    bounds: Mapping[str, tuple[float, float]] | None = None,
-    window: str | Iterable[str] = (),
-    mask: str | Iterable[str] = (),
-    grid: str | None = None,
+    bounds: Mapping[str, tuple[float, float] | str] | None = None,
+    window: Interval | Sequence[Interval] = (),
+    mask: Interval | Sequence[Interval] = (),
+    grid: str | float | Iterable[float] | None = None,
     random_seed: int = 0,
 ) -> Fit:
     """Fit a lattice model to a measurement.
@@ -187,10 +204,10 @@ def fit(
     mode_sum : {"fixed", "free"}
         Whether the modes are held at 3 per atom; fixed when the atoms are known.
     start, fix, bounds : mapping by parameter name
-        SI units: K, J/(mol K^2), mol/J, 1/K.
-    window, mask : str or several
-        Closed intervals in K, e.g. ``"2:300"``.
-    grid : str
+        SI units: K, J/(mol K^2), mol/J, 1/K; bounds are (low, high), a side -inf or inf where it is open.
+    window, mask : str or (low, high), or several
+        Closed intervals in K, e.g. ``"2:300"`` or ``(2, 300)``.
+    grid : str or numbers
         Temperatures of the table in K, e.g. ``"0.5:5:0.5, 10:300:10"``.
     random_seed : int
 
@@ -203,25 +220,48 @@ def fit(
     InputError
         One sentence: what is wrong and how to mend it.
     """
-    windows, masks = _intervals(window), _intervals(mask)
-    runs = tuple(
-        replace(each.settings, window=each.settings.window + windows, mask=each.settings.mask + masks)
-        for each in measurement.readings
+    if not isinstance(measurement, Measurement):
+        raise wrong("measurement", "a Measurement from latticefit.read", measurement)
+    model = {"terms": terms, "mode_sum": mode_sum, "cp_cv": cp_cv, "start": start, "fix": fix, "bounds": bounds}
+    report = {"grid": None if grid is None else _grid(grid), "random_seed": random_seed}
+    points = checked({"window": _several(window), "mask": _several(mask)}, RUN)
+    settings = ModelSettings(**checked(model, MODEL))
+    readings = tuple(replace(each, settings=_narrowed(each.settings, points)) for each in measurement.readings)
+    sheet = Sheet(
+        measurement.sample_settings,
+        tuple(each.settings for each in readings),
+        settings,
+        ReportSettings(**checked(report, REPORT)),
     )
-    readings = tuple(replace(each, settings=run) for each, run in zip(measurement.readings, runs, strict=True))
-    model = ModelSettings(
-        terms=terms,
-        mode_sum=mode_sum,
-        cp_cv=cp_cv,
-        start=dict(start or {}),
-        fix=dict(fix or {}),
-        bounds=dict(bounds or {}),
-    )
-    sheet = Sheet(measurement.sample_settings, runs, model, ReportSettings(grid=grid, random_seed=random_seed))
-    return Fit(analyse(sheet, replace(measurement, readings=readings), command=" ".join(sys.argv[:1])))
+    return Fit(analyse(sheet, replace(measurement, readings=readings), _call(settings, points, sheet.report)))
 
 
-@dataclass(frozen=True)
+def _several(given: Any) -> Any:
+    """None for no interval at all, which is the default."""
+    return None if isinstance(given, (list, tuple)) and not given else given
+
+
+def _grid(given: Any) -> Any:
+    return given if isinstance(given, str) else temperatures(given, "grid")
+
+
+def _narrowed(run: RunSettings, points: Mapping[str, tuple[tuple[float, float], ...]]) -> RunSettings:
+    return replace(run, window=run.window + points.get("window", ()), mask=run.mask + points.get("mask", ()))
+
+
+def _call(model: ModelSettings, points: Mapping[str, tuple[tuple[float, float], ...]], report: ReportSettings) -> str:
+    """The call of `fit` in short, for the provenance: what is not at its default."""
+    words = ["measurement", repr(model.terms)]
+    named = {name: getattr(model, name) for name in ("mode_sum", "cp_cv", "start", "fix", "bounds")}
+    named |= {**points, "grid": report.grid, "random_seed": report.random_seed}
+    for name, value in named.items():
+        if value and value != getattr(_DEFAULTS, name, None):
+            text = repr(value)
+            words.append(f"{name}={text if len(text) <= _LONGEST_ARGUMENT else text[:_LONGEST_ARGUMENT] + '...'}")
+    return f"latticefit.fit({', '.join(words)})"
+
+
+@dataclass(frozen=True, eq=False, repr=False)
 class Fit:
     """A finished fit: DataFrames, figures and the report of one `Analysis`."""
 
@@ -255,13 +295,13 @@ class Fit:
 
         return warnings_frame(self.analysis)
 
-    def table(self, temperature: Iterable[float] | FloatArray | str | None = None) -> pd.DataFrame:
+    def table(self, temperature: float | Iterable[float] | FloatArray | str | None = None) -> pd.DataFrame:
         """Thermodynamic functions at temperatures in K (numbers or a grid text); the standard grid when left out."""
         from .report import functions_frame
 
         if temperature is None:
             return functions_frame(self.analysis.derived.table)
-        wanted = parse_grid(temperature) if isinstance(temperature, str) else tuple(float(t) for t in temperature)
+        wanted = temperatures(temperature, "temperature")
         fitted = self.analysis.prepared
         return functions_frame(
             functions_table(
@@ -278,13 +318,23 @@ class Fit:
         """Draw one of the report's figures, e.g. ``"residuals"``."""
         from .report import draw_figure
 
+        if not isinstance(name, str):
+            raise wrong("name", "the name of a figure", name)
         return draw_figure(name, self.analysis)
 
     def save(self, out: str | Path, *, replace: bool = False, figures: str = "svg") -> Path:
         """Write the report folder and return its path."""
         from .report import write_report
 
+        if not isinstance(out, (str, Path)) or not str(out).strip():
+            raise wrong("out", "a folder to write to", out)
+        checked({"figures": figures}, REPORT)
         return write_report(self.analysis, Path(out), replace, figures)
+
+    def __repr__(self) -> str:
+        from .report import summary_text
+
+        return summary_text(self.analysis, None).rstrip()
 
     def __str__(self) -> str:
         from .report import text_report
@@ -295,6 +345,3 @@ class Fit:
         from .report import html_summary
 
         return html_summary(self.analysis)
-
-    def _repr_pretty_(self, printer: Any, cycle: bool) -> None:
-        printer.text(str(self))

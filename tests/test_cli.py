@@ -120,7 +120,16 @@ BAD = {
     "no terms": (["fit", COPPER, "--formula", "Cu"], "--terms"),
     "unknown command": (["fti"], "did you mean 'fit'"),
     "unknown option": (["fit", COPPER, "--trems", "debye"], "did you mean '--terms'"),
-    "later option": (["fit", COPPER, "--terms", "debye", "--insulator"], "has no option '--insulator'"),
+    "later option": (
+        ["fit", COPPER, "--terms", "debye", "--scale-uncertainty", "0.5%"],
+        "--scale-uncertainty is not available in this version",
+    ),
+    "later option of inspect": (["inspect", COPPER, "--save-sheet=a"], "--save-sheet is not available in this version"),
+    "later command": (["excess", COPPER], "the command excess is not available in this version"),
+    "empty value": (["fit", COPPER, "--terms", "debye", "--temperature", ""], "--temperature must be a header"),
+    "negative coverage": (["fit", COPPER, "--terms", "debye", "--coverage-factor", "-2"], "must be above 0"),
+    "huge atoms": (["fit", COPPER, "--terms", "debye", "--atoms", "1e999"], "--atoms must be a number, not inf"),
+    "no column of that number": (["fit", COPPER, "--terms", "debye", "--temperature", "9"], "there is no column 9"),
     "shortened option": (["fit", COPPER, "--term", "debye"], "did you mean '--terms'"),
     "missing value": (["fit", COPPER, "--terms"], "--terms needs a value"),
     "unknown term": (["fit", COPPER, "--terms", "debye + einstien"], "did you mean 'einstein'"),
@@ -210,6 +219,76 @@ def test_wrong_sheets_are_refused(
     said = capsys.readouterr().err.strip()
     assert re.search(words, said), said
     assert len(said.splitlines()) == 1
+
+
+@pytest.mark.parametrize(
+    ("model", "words"),
+    [
+        ("terms = 'debey'", "did you mean 'debye'"),
+        ("terms = 'debye'\ncp_cv = 'nernst'", "did you mean 'nernst-lindemann'"),
+        ("terms = 'debye'\n[model.fix]\ndebye_thteta = 300", "did you mean 'debye_theta'"),
+        ("terms = 'debye'\n[model.bounds]\neinstein_theta = [1, 2]", "bounds names 'einstein_theta'"),
+    ],
+)
+def test_the_model_of_a_sheet_is_checked_before_its_files_are_read(
+    model: str, words: str, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """A wrong term, form or parameter name is told first: the file of the sheet need not even exist."""
+    monkeypatch.chdir(tmp_path)
+    Path("sheet.toml").write_text(f"[[run]]\nfile = 'missing.csv'\n[model]\n{model}\n")
+    assert main(["fit", "sheet.toml"]) == 2
+    assert words in capsys.readouterr().err
+
+
+@pytest.mark.parametrize(
+    ("words", "noted"),
+    [
+        (["--cp-cv", "none"], True),
+        (["--cp-cv", "anharmonic"], True),
+        (["--cp-cv", "nernst-lindemann"], False),
+        (["--cp-cv", "nernst-lindemann", "--fix", "nernst_lindemann_coefficient=1e-6"], True),
+        (["--quiet"], False),
+    ],
+)
+def test_a_melting_point_without_use_is_noted(
+    words: list[str], noted: bool, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """A melting point that the model has no place for is not dropped in silence."""
+    monkeypatch.chdir(tmp_path)
+    assert main(["fit", "missing.csv", "--terms", "debye", "--melting-point", "1358 K", *words]) == 2
+    assert ("the melting point is not used" in capsys.readouterr().err) is noted
+
+
+def test_a_header_of_digits_stands_above_the_number(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """A COLUMN that is the exact header of one column is that column, also when it reads as a number."""
+    (tmp_path / "a.csv").write_text("# invented data\nT_K,Cp_J_molK,2\n10,1,5\n20,2,6\n30,3,7\n")
+    words = ["inspect", str(tmp_path / "a.csv"), "--heat-capacity-unit", "J/(mol K)", "--json"]
+    for column, header in (("2", "2"), ("3", "2"), ("Cp_J_molK", "Cp_J_molK")):
+        assert main([*words, "--heat-capacity", column]) == 0
+        assert json.loads(capsys.readouterr().out)["files"][0]["columns"]["heat_capacity"] == header
+
+
+@pytest.mark.parametrize("encoding", ["ascii", "cp1252"])
+def test_any_encoding_of_the_terminal_will_do(encoding: str, tmp_path: Path) -> None:
+    """What a terminal cannot encode is shown as an escape, never a traceback; JSON stays JSON."""
+    name = "θ±\x81.csv"
+    (tmp_path / name).write_text("# invented data\nT_K,Cp_J_molK\n10,1\n20,2\n30,3\n")
+    for words, code in ((["inspect", name], 0), (["inspect", name, "--json"], 0), (["θ"], 2), (["verify"], 0)):
+        done = subprocess.run(
+            [sys.executable, "-m", "latticefit", *words],
+            capture_output=True,
+            cwd=tmp_path,
+            env={**os.environ, "PYTHONIOENCODING": encoding, "PYTHONWARNINGS": "error"},
+            check=False,
+        )
+        assert done.returncode == code, done.stderr
+        assert b"Traceback" not in done.stderr
+        if "--json" in words:
+            assert json.loads(done.stdout.decode(encoding))["files"][0]["file"] == name
+        elif "inspect" in words:
+            assert done.stdout.startswith(b"\\u03b8")
+        elif code:
+            assert b"\\u03b8" in done.stderr
 
 
 def test_options_beside_a_sheet_are_refused_not_ignored(capsys: pytest.CaptureFixture[str]) -> None:

@@ -2,6 +2,11 @@
 
 from __future__ import annotations
 
+import pickle
+import subprocess
+import sys
+from dataclasses import replace
+
 import lmfit
 import numpy as np
 import pytest
@@ -10,7 +15,7 @@ from numpy.testing import assert_allclose
 import latticefit as lf
 from latticefit.errors import InputError
 from latticefit.models import build_model, heat_capacity
-from latticefit.models.lmfit_models import MODEL_CLASSES, weighted_jacobian
+from latticefit.models.lmfit_models import weighted_jacobian
 from latticefit.records import FloatArray
 from latticefit.terms import TERMS
 
@@ -47,12 +52,37 @@ def starts(model: lmfit.Model) -> lmfit.Parameters:
 @pytest.mark.parametrize("name", TERMS)
 def test_every_term_has_an_lmfit_model_that_evaluates_it(name: str) -> None:
     """Each registered term is an lmfit Model with its parameters, and both give one heat capacity."""
-    model = getattr(lf.models, f"{name.capitalize()}Model")(prefix="one_")
-    values = {"theta": 200.0, "modes": 3.0, "gamma": 1e-3}
-    parameters = model.make_params(**{s.quantity: values[s.quantity] for s in TERMS[name].parameters})
-    own = TERMS[name].heat_capacity(T, *(values[s.quantity] for s in TERMS[name].parameters))
-    assert_allclose(model.eval(parameters, T=T), own, rtol=1e-15)
-    assert MODEL_CLASSES[f"{name.capitalize()}Model"] is type(model)
+    term = TERMS[name]
+    model = getattr(lf.models, term.model_class_name)(prefix="one_")
+    own = term.heat_capacity(T, *(spec.example for spec in term.parameters))
+    assert_allclose(model.eval(model.make_params(), T=T), own, rtol=1e-15)
+    assert type(model) is getattr(lf.models, term.model_class_name)
+    assert term.name in (type(model).__doc__ or "")
+    for spec in term.parameters:
+        start = model.make_params()[f"one_{spec.quantity}"]
+        assert (start.min, start.max) == (spec.low, spec.high)
+        assert start.min < start.value < start.max, "lmfit never leaves a bound that it starts on"
+
+
+@pytest.mark.parametrize("name", TERMS)
+def test_models_can_be_pickled(name: str) -> None:
+    """A model goes to another process and back: class, prefix and heat capacity stay."""
+    model = getattr(lf.models, TERMS[name].model_class_name)(prefix="one_")
+    again = pickle.loads(pickle.dumps(model))
+    assert type(again) is type(model)
+    parameters = model.make_params()
+    assert_allclose(again.eval(parameters, T=T), model.eval(parameters, T=T), rtol=0)
+
+
+def test_model_classes_are_listed_without_importing_lmfit() -> None:
+    """dir() of the models names every class and the Jacobian, at no price; an unknown name is an AttributeError."""
+    code = (
+        "import sys, latticefit; names = dir(latticefit.models);"
+        "wrong = hasattr(latticefit.models, 'DebeyModel') or 'lmfit' in sys.modules; print(*names); sys.exit(wrong)"
+    )
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=False)
+    assert done.returncode == 0, done.stderr
+    assert {"weighted_jacobian", "build_model", *(t.model_class_name for t in TERMS.values())} <= {*done.stdout.split()}
 
 
 def test_models_add_and_fit_as_latticefit_does() -> None:
@@ -140,11 +170,20 @@ def test_expressions_and_foreign_models_are_refused() -> None:
         weighted_jacobian(foreign)(foreign.make_params(slope=1.0), C, None, T=T)
 
 
-@pytest.mark.parametrize("name", ["DebyeModel", "EinsteinModel"])
-def test_guess_leads_to_the_truth(name: str) -> None:
-    """`guess` needs nothing but the data, and a fit from it recovers one term."""
-    model = getattr(lf.models, name)(prefix="one_")
-    exact = model.eval(model.make_params(theta=240.0, modes=6.0), T=T)
+@pytest.mark.parametrize("name", TERMS)
+@pytest.mark.parametrize("own", [True, False])
+def test_guess_leads_to_the_truth(name: str, own: bool) -> None:
+    """`guess` needs nothing but the data, and a fit from it recovers one term; so does the default from the examples.
+
+    The truth has other values than the examples: 0.8 of the scales, twice the amplitudes.
+    """
+    term = TERMS[name]
+    kind = getattr(lf.models, term.model_class_name)
+    if not own:
+        kind = type("Plain", (kind,), {"term": replace(term, guess=None)})
+    model = kind(prefix="one_")
+    truth = {spec.quantity: spec.example * (0.8 if spec.role == "scale" else 2.0) for spec in term.parameters}
+    exact = model.eval(model.make_params(**truth), T=T)
     found = model.fit(exact, model.guess(exact, T=T), T=T, weights=1 / exact)
-    assert found.params["one_theta"].value == pytest.approx(240.0, rel=1e-6)
-    assert found.params["one_modes"].value == pytest.approx(6.0, rel=1e-6)
+    for quantity, value in truth.items():
+        assert found.params[f"one_{quantity}"].value == pytest.approx(value, rel=1e-6)

@@ -29,8 +29,13 @@ from latticefit.models import (
 from latticefit.records import FloatArray, ModelSettings, Sample
 
 T = np.geomspace(2.0, 320.0, 40)
-COEFFICIENT = {"none": [], "nernst-lindemann": [4e-6], "anharmonic": [-3e-5]}
 MIXED = [310.0, 4.1, 120.0, 0.7, 520.0, 1.2, 2.2e-3]
+
+
+def coefficient(form: str) -> list[float]:
+    """The example of the coefficient of a form of Cp-Cv, or nothing."""
+    parameter = CP_CV_FORMS[form].parameter
+    return [] if parameter is None else [parameter.example]
 
 
 @pytest.mark.parametrize(
@@ -86,7 +91,7 @@ def test_parameter_names_are_numbered_when_a_kind_repeats() -> None:
 def test_components_add_up(form: str) -> None:
     """The heat capacities of the terms and of Cp-Cv add up to the model."""
     model = build_model("debye + 2 einstein + electronic", form)
-    values = np.array(MIXED + COEFFICIENT[form])
+    values = np.array(MIXED + coefficient(form))
     assert_allclose(sum(components(model, T, values).values()), heat_capacity(model, T, values), rtol=1e-13)
 
 
@@ -103,15 +108,41 @@ def test_nernst_lindemann_solves_its_equation_for_the_lattice_part() -> None:
 def test_cp_cv_inverts_and_its_slopes_are_right(form) -> None:  # type: ignore[no-untyped-def]
     """The harmonic heat capacity comes back from the measured one; slopes agree with central differences."""
     C = 50 * T**2 / (T**2 + 60**2)
-    a = COEFFICIENT[form.name][0]
+    a = coefficient(form.name)[0]
     measured = form.apply(T, C, a)
     assert_allclose(form.invert(T, measured, a), C, rtol=1e-12)
     by_c, by_a = form.slopes(T, C, a)
     assert_allclose(by_c, (form.apply(T, C * 1.0001, a) - form.apply(T, C * 0.9999, a)) / (2e-4 * C), rtol=1e-7)
     h = 1e-3 * abs(a)
     assert_allclose(by_a, (form.apply(T, C, a + h) - form.apply(T, C, a - h)) / (2 * h), rtol=1e-6)
-    first_order = form.apply(T, C, 1e-12) - C
-    assert_allclose(first_order / 1e-12, form.start_basis(T, C), rtol=0.02, atol=0.1)
+    tiny = 1e-6 * a
+    assert_allclose(
+        (form.apply(T, C, tiny) - C) / tiny, form.start_basis(T, C), rtol=1e-4, atol=1e-13 * C.max() / abs(tiny)
+    )
+    if form.largest_coefficient is not None:
+        largest = form.largest_coefficient(float(T.max()), float(C.max()))
+        assert form.parameter.low < a < largest <= form.parameter.high
+        if form.solvable is not None:
+            assert form.solvable(T, C, largest).all()
+
+
+@pytest.mark.parametrize("form", CP_CV_FORMS.values(), ids=lambda e: e.name)
+def test_forms_state_what_they_are(form) -> None:  # type: ignore[no-untyped-def]
+    """A form stands under its own name, says what it means, and where it was published unless it does nothing."""
+    assert CP_CV_FORMS[form.name] is form
+    assert form.name.replace("-", "_").isidentifier()
+    assert form.meaning
+    if form.parameter is not None:
+        assert any(character.isdigit() for character in form.source)
+        assert form.parameter.low < form.parameter.example < form.parameter.high
+
+
+def test_only_nernst_lindemann_ends_where_it_has_no_solution() -> None:
+    """Cp = C (1 + A Cp T) has a solution while 4 A T C < 1; the table says so by NaN beyond."""
+    form = CP_CV_FORMS["nernst-lindemann"]
+    assert form.solvable is not None
+    assert form.solvable(np.array([499.0, 501.0]), np.array([50.0, 50.0]), 1e-5).tolist() == [True, False]
+    assert CP_CV_FORMS["anharmonic"].solvable is None
 
 
 CASES = {
@@ -137,9 +168,9 @@ def test_jacobian_agrees_with_central_differences_of_the_weighted_residual(case:
     sigma = 0.01 * measured
     par = parametrise(model, settings, Sample("x", atoms=2), T, measured)
     wanted = dict(
-        zip(model.names, MIXED + COEFFICIENT[form], strict=True)
+        zip(model.names, MIXED + coefficient(form), strict=True)
         if "2 einstein" in (settings.terms or "")
-        else zip(model.names, [310.0, 4.0, 420.0, 2.0, *COEFFICIENT[form]], strict=True)
+        else zip(model.names, [310.0, 4.0, 420.0, 2.0, *coefficient(form)], strict=True)
     )
     x = np.array([wanted[model.names[i]] for i in par.free])
     found = jacobian(par, x, T, measured, sigma)
@@ -201,7 +232,7 @@ def test_wrong_holds_are_refused_in_words(settings: ModelSettings, atoms: float 
 def test_energy_and_entropy_are_integrals_to_1e_8(form: str, upper: float) -> None:
     """H and S of the whole model, Cp-Cv included, are the integrals of C and C/T to 1e-8."""
     model = build_model("debye + 2 einstein + electronic", form)
-    values = np.array(MIXED + ([1e-6] if form == "nernst-lindemann" else COEFFICIENT[form]))
+    values = np.array(MIXED + coefficient(form))
 
     def capacity(t: float) -> float:
         return float(heat_capacity(model, np.array([t]), values)[0])

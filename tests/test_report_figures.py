@@ -17,6 +17,7 @@ from latticefit.constants import GAS_CONSTANT
 from latticefit.errors import InputError
 from latticefit.records import Analysis
 from latticefit.report import FIGURES, draw_figure, render
+from latticefit.report.figures.style import component_looks
 
 
 @pytest.fixture(scope="module")
@@ -55,12 +56,29 @@ def test_every_figure_draws_good_and_poor_cases(name: str, case: str, tmp_path: 
 
 @pytest.mark.parametrize("name", FIGURES)
 def test_axes_are_labelled_in_quantity_calculus(name: str, metal: Analysis) -> None:
-    """Every outer axis says quantity / unit; temperature is in K."""
+    """Every figure labels both directions, each label with quantity / unit unless the figure calls it a number."""
     axes = draw_figure(name, metal).axes
-    assert any(each.get_xlabel() == "$T$ / K" for each in axes)
-    labels = [each.get_ylabel() for each in axes if each.get_ylabel()]
-    assert labels
-    assert all(" / " in label for label in labels)
+    across = [label for each in axes if (label := each.get_xlabel())]
+    upwards = [label for each in axes if (label := each.get_ylabel())]
+    assert across
+    assert upwards
+    assert set(FIGURES[name].numbers) <= {*across, *upwards}
+    assert all(" / " in label for label in {*across, *upwards} - set(FIGURES[name].numbers))
+
+
+@pytest.mark.parametrize("name", ["heat_capacity", "residuals", "heat_capacity_over_cubed_temperature", "theta_debye"])
+def test_views_against_temperature_are_in_kelvin(name: str, metal: Analysis) -> None:
+    """Heat capacity, residuals, C/T^3 and theta_D stand over T / K."""
+    assert any(each.get_xlabel() == "$T$ / K" for each in draw_figure(name, metal).axes)
+
+
+def test_components_differ_in_their_lines() -> None:
+    """Known terms keep their look; any others of one model, numbered or new, differ from them and from each other."""
+    names = ("debye", "einstein1", "einstein2", "einstein3", "electronic", "two_level", "cp_minus_cv")
+    looks = component_looks(names)
+    assert looks["einstein1"] == component_looks(("einstein",))["einstein"]
+    assert len({str(dashes) for _, dashes in looks.values()}) == len(names)
+    assert len({colour for colour, _ in looks.values()}) == len(names)
 
 
 def test_heat_capacity_shows_data_fit_components_and_limit(metal: Analysis) -> None:
@@ -224,11 +242,12 @@ def test_legend_covers_no_axes_and_stays_in_the_figure(metal: Analysis) -> None:
     for name in FIGURES:
         picture = draw_figure(name, metal)
         render(picture, "png")
-        box = picture.legends[0].get_window_extent()
-        assert all(box.y0 >= axes.bbox.y1 - 1 for axes in picture.axes)
-        assert picture.bbox.x0 - 1 <= box.x0
-        assert box.x1 <= picture.bbox.x1 + 1
-        assert box.y1 <= picture.bbox.y1 + 1
+        for legend in picture.legends:
+            box = legend.get_window_extent()
+            assert all(box.y0 >= axes.bbox.y1 - 1 for axes in picture.axes)
+            assert picture.bbox.x0 - 1 <= box.x0
+            assert box.x1 <= picture.bbox.x1 + 1
+            assert box.y1 <= picture.bbox.y1 + 1
 
 
 def test_unknown_figure_is_refused_with_the_nearest() -> None:

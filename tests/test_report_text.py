@@ -13,7 +13,8 @@ from analysis_factory import CASES, build, renamed, undetermined
 
 from latticefit.records import Analysis
 from latticefit.report import CAUTIONS, summary_text, text_report
-from latticefit.report.wording import concise, harmless, plain_number, plus_minus, significant
+from latticefit.report.wording import concise, plain_number, plus_minus, significant
+from latticefit.wording import harmless
 
 NASTY = "wide 試料の名前 \x1b[31mred\x07 \u202egnp.exe\n  new line " + "x" * 120
 

@@ -164,16 +164,16 @@ WRONG = [
     (RUN + "[sample]\nfromula = 'Cu'\n", "[sample] has no key 'fromula'; did you mean 'formula'?"),
     (RUN + "heat_capacty = 2\n", "[[run]] has no key 'heat_capacty'; did you mean 'heat_capacity'?"),
     (RUN + "[sample]\natoms = '5'\n", "[sample] atoms must be a number without quotes, not '5'"),
-    (RUN + "[sample]\natoms = true\n", "[sample] atoms must be a number without quotes, not true or false"),
+    (RUN + "[sample]\natoms = true\n", "[sample] atoms must be a number, not true or false"),
     (RUN + "[sample]\natoms = 0\n", "[sample] atoms must be above 0, not 0"),
-    (RUN + "[sample]\nmass = 12\n", "[sample] mass must be a text in quotes, not 12"),
-    (RUN + "[sample]\nname = ' '\n", "[sample] name must be a text in quotes, not ' '"),
+    (RUN + "[sample]\nmass = 12\n", '[sample] mass must be a text with its unit, such as "12.3 mg", not 12'),
+    (RUN + "[sample]\nname = ' '\n", "[sample] name is empty; leave it out or fill it in"),
     ("sample = 3\n" + RUN, "[sample] must be a table, not 3"),
     (RUN + "temperature = 0\n", "[[run]] temperature must be a header in quotes or a column number from 1 on, not 0"),
     (RUN + "sigma = 0.5\n", '[[run]] sigma must be a column or a text such as "0.5%", not 0.5'),
     (RUN + "quantity = 'cp'\n", "[[run]] quantity cannot be 'cp': known are Cp and Cv"),
     (RUN + "coverage_factor = -1\n", "[[run]] coverage_factor must be above 0, not -1"),
-    (RUN + "coverage_factor = nan\n", "[[run]] coverage_factor must be a number without quotes, not nan"),
+    (RUN + "coverage_factor = nan\n", "[[run]] coverage_factor must be a number, not nan"),
     (RUN + "window = [2, 300]\n", '[[run]] window must be a text such as "2:300" or a list of them, not a list'),
     (RUN + "mask = '45:20'\n", "[[run]] mask: interval '45:20' ends below its start; write it low:high"),
     (RUN + "[model]\nmode_sum = 'fix'\n", "[model] mode_sum cannot be 'fix': did you mean 'fixed'?"),
@@ -430,13 +430,13 @@ def test_wrong_bounds(text: str) -> None:
 
 def test_settings_records_have_a_key_each() -> None:
     """Every field of the settings can be written and read, so none is lost from a sheet."""
-    from latticefit.reading import sheets
+    from latticefit.reading import settings as keys_of
 
     for record, keys in (
-        (SampleSettings, sheets._SAMPLE),
-        (RunSettings, sheets._RUN),
-        (ModelSettings, sheets._MODEL),
-        (ReportSettings, sheets._REPORT),
+        (SampleSettings, keys_of.SAMPLE),
+        (RunSettings, keys_of.RUN),
+        (ModelSettings, keys_of.MODEL),
+        (ReportSettings, keys_of.REPORT),
     ):
         assert set(record.__dataclass_fields__) == set(keys)
     assert replace(RunSettings("a"), label="b").label == "b"

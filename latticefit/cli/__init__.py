@@ -4,12 +4,16 @@ from __future__ import annotations
 
 import os
 import sys
+from argparse import Namespace
 from importlib import import_module
 from typing import Protocol
 
 from .._version import __version__
 from ..errors import FitError, InputError, nearest
-from .parsing import CommandParser, harmless
+from ..later import LATER_COMMANDS
+from ..wording import harmless
+from .parsing import CommandParser
+from .streams import tolerate_any_encoding
 
 __all__ = ["COMMANDS", "main"]
 
@@ -36,7 +40,7 @@ _TAIL = """
 
 class _Command(Protocol):
     def parser(self) -> CommandParser: ...
-    def run(self, arguments: object) -> int: ...
+    def run(self, arguments: Namespace) -> int: ...
 
 
 def _overview() -> str:
@@ -50,6 +54,8 @@ def _run(words: list[str]) -> int:
     if words[0] == "--version":
         print(f"latticefit {__version__}")
         return 0
+    if words[0] in LATER_COMMANDS:
+        raise InputError(f"the command {words[0]} is not available in this version (see latticefit --help)")
     if words[0] not in COMMANDS:
         kind = "option" if words[0].startswith("-") else "command"
         raise InputError(f"there is no {kind} {words[0]!r}; {nearest(words[0], COMMANDS)} (see latticefit --help)")
@@ -70,6 +76,7 @@ def main(words: list[str] | None = None) -> int:
     int
         0 a result was written; 2 the input or the options are wrong; 3 nothing trustworthy came out; 130 interrupted.
     """
+    tolerate_any_encoding()
     try:
         return _run(sys.argv[1:] if words is None else words)
     except InputError as error:

@@ -5,15 +5,17 @@ from __future__ import annotations
 import argparse
 import shlex
 import sys
+from collections.abc import Callable
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 from ..errors import InputError
 from . import options
 from .parsing import CommandParser
+from .streams import print_json
 
 if TYPE_CHECKING:
-    from ..records import Analysis, Measurement, Sheet
+    from ..records import Analysis, Measurement, ModelSettings, Sheet
 
 __all__ = ["parser", "run"]
 
@@ -76,14 +78,14 @@ def _out_folder(arguments: argparse.Namespace, sheet: Sheet, from_sheet: Path | 
 
 def run(arguments: argparse.Namespace) -> int:
     """Fit, write the report, print the summary or the JSON record."""
-    from ..models import build_model
+    from ..fitting import requested_model
     from ..reading import read_measurement
 
     any_sheet = any(options.is_sheet(file) for file in arguments.files)
     sheet, base, from_sheet = (_from_sheet if any_sheet else _from_options)(arguments)
     if sheet.model.terms is None:
         raise InputError("this version fits a model that you name; give --terms, e.g. --terms 'debye + einstein'")
-    build_model(sheet.model.terms, sheet.model.cp_cv)  # a misspelt term is told before anything is read
+    model = requested_model(sheet.model)  # a misspelt term or parameter is told before anything is read
     out = _out_folder(arguments, sheet, from_sheet)
     if out is not None:
         from ..report import check_out_folder
@@ -94,31 +96,43 @@ def run(arguments: argparse.Namespace) -> int:
         if not arguments.quiet:
             print(f"latticefit: {words}", file=sys.stderr, flush=True)
 
+    if sheet.sample.melting_point is not None and not _holds_coefficient(sheet.model, model.names[-1]):
+        tell(
+            "the melting point is not used: it only holds the coefficient of --cp-cv nernst-lindemann, where that is "
+            "not named itself"
+        )
     measurement = read_measurement(sheet.sample, sheet.runs, base)
     _tell_repairs(measurement, tell)
     return _finish(arguments, sheet, measurement, out, tell)
 
 
-def _tell_repairs(measurement: Measurement, tell: object) -> None:
-    assert callable(tell)
+def _holds_coefficient(settings: ModelSettings, name: str) -> bool:
+    """Whether a melting point has something to hold: the coefficient of this name, unless the user names it."""
+    named = {*settings.start, *settings.fix, *settings.bounds}
+    return settings.cp_cv == "nernst-lindemann" and name not in named
+
+
+def _tell_repairs(measurement: Measurement, tell: Callable[[str], None]) -> None:
     for repair in measurement.repairs:
         where = repair.file if repair.line is None else f"{repair.file}, line {repair.line}"
         tell(f"{where}: {repair.message}")
 
 
 def _finish(
-    arguments: argparse.Namespace, sheet: Sheet, measurement: Measurement, out: Path | None, tell: object
+    arguments: argparse.Namespace, sheet: Sheet, measurement: Measurement, out: Path | None, tell: Callable[[str], None]
 ) -> int:
     from ..analysis import analyse
     from ..report import json_text, result_record, summary_text, write_report
 
-    assert callable(tell)
     command = shlex.join(["latticefit", *sys.argv[1:]])
     analysis = analyse(sheet, measurement, command=command, progress=tell)
     if out is not None:
         tell("writing the report")
         write_report(analysis, out, arguments.replace, sheet.report.figures)
-    print(json_text(result_record(analysis)) if arguments.json else summary_text(analysis, out), end="")
+    if arguments.json:
+        print_json(json_text(result_record(analysis)))
+    else:
+        print(summary_text(analysis, out), end="")
     return 0 if _trustworthy(analysis) else 3
 
 

@@ -7,6 +7,7 @@ import argparse
 from ..errors import InputError
 from . import options
 from .parsing import CommandParser
+from .streams import print_json
 
 __all__ = ["parser", "run"]
 
@@ -36,7 +37,7 @@ def run(arguments: argparse.Namespace) -> int:
     sample = options.sample_settings(arguments)
     measurements = [read_measurement(sample, (options.run_settings(arguments, file),)) for file in arguments.files]
     if arguments.json:
-        print(json_text({"files": [inspection_record(each) for each in measurements]}), end="")
+        print_json(json_text({"files": [inspection_record(each) for each in measurements]}))
     else:
         print("\n".join(inspection_text(each) for each in measurements), end="")
     return 0

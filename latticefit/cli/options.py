@@ -7,7 +7,7 @@ from collections.abc import Callable
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
-from ..errors import InputError, nearest
+from ..errors import InputError
 from .parsing import CommandParser
 
 if TYPE_CHECKING:
@@ -107,60 +107,45 @@ def add_report_options(parser: CommandParser) -> None:
     group.add_argument("--quiet", action="store_true", help="no notes and no progress")
 
 
-def _choice(value: str | None, option: str, choices: tuple[str, ...]) -> Any:
-    if value is not None and value not in choices:
-        raise InputError(f"{option} cannot be {value!r}; {nearest(value, choices)}")
-    return value
+def _option(key: str) -> str:
+    return f"--{key.replace('_', '-')}"
 
 
-def _number(value: str | None, option: str, positive: bool = True) -> float | None:
-    if value is None:
-        return None
+def _number(text: str | None, key: str) -> float | None:
+    """The number in a text, to be checked as a setting."""
     try:
-        number = float(value)
+        return None if text is None else float(text)
     except ValueError:
-        number = float("nan")
-    if not number < float("inf") or (positive and number <= 0):
-        raise InputError(f"{option} needs a number{' above 0' if positive else ''}, not {value!r}")
-    return number
+        raise InputError(f"{_option(key)} needs a number, not {text!r}") from None
 
 
-def _column(value: str | None) -> str | int | None:
-    """A header as text; digits alone are a column number, counted from 1."""
-    return int(value) if value is not None and value.isascii() and value.isdigit() and int(value) > 0 else value
+def _whole(text: str | None) -> int | str | None:
+    """The whole number in a text, or the text itself, which the check of the setting refuses."""
+    try:
+        return int(text) if text is not None and text.isascii() and text.isdigit() else text
+    except ValueError:  # thousands of digits
+        return text
 
 
 def sample_settings(arguments: argparse.Namespace) -> SampleSettings:
     """Return the `[sample]` table of the options."""
+    from ..reading.settings import SAMPLE, checked
     from ..records import SampleSettings
 
-    return SampleSettings(
-        name=arguments.name,
-        formula=arguments.formula,
-        atoms=_number(arguments.atoms, "--atoms"),
-        molar_mass=arguments.molar_mass,
-        mass=arguments.mass,
-        melting_point=arguments.melting_point,
-    )
+    given = {key: getattr(arguments, key) for key in SAMPLE}
+    given["atoms"] = _number(arguments.atoms, "atoms")
+    return SampleSettings(**checked(given, SAMPLE, _option))
 
 
 def run_settings(arguments: argparse.Namespace, file: str) -> RunSettings:
     """Return the `[[run]]` table of the options for one file."""
-    from ..reading import parse_interval
+    from ..reading.settings import RUN, checked
     from ..records import RunSettings
 
-    return RunSettings(
-        file=file,
-        quantity=_choice(arguments.quantity, "--quantity", ("Cp", "Cv")),
-        temperature=_column(arguments.temperature),
-        heat_capacity=_column(arguments.heat_capacity),
-        sigma=_column(arguments.sigma),
-        coverage_factor=_number(arguments.coverage_factor, "--coverage-factor"),
-        temperature_unit=arguments.temperature_unit,
-        heat_capacity_unit=arguments.heat_capacity_unit,
-        window=tuple(parse_interval(text) for text in getattr(arguments, "window", [])),
-        mask=tuple(parse_interval(text) for text in getattr(arguments, "mask", [])),
-    )
+    given = {key: getattr(arguments, key, None) for key in RUN}
+    given = {key: None if value == [] else value for key, value in given.items()}
+    given["coverage_factor"] = _number(arguments.coverage_factor, "coverage_factor")
+    return RunSettings(file=file, **checked(given, RUN, _option))
 
 
 def _by_name(texts: list[str], option: str, parse: Callable[[str], tuple[str, Any]]) -> dict[str, Any]:
@@ -175,38 +160,34 @@ def _by_name(texts: list[str], option: str, parse: Callable[[str], tuple[str, An
 
 def model_settings(arguments: argparse.Namespace) -> ModelSettings:
     """Return the `[model]` table of the options."""
-    from ..models import cp_cv_form
     from ..reading import parse_assignment, parse_bounds
+    from ..reading.settings import MODEL, checked
     from ..records import ModelSettings
 
-    return ModelSettings(
-        terms=arguments.terms,
-        mode_sum=_choice(arguments.mode_sum, "--mode-sum", ("fixed", "free")),
-        cp_cv=cp_cv_form(arguments.cp_cv).name,
-        start=_by_name(arguments.start, "--start", parse_assignment),
-        fix=_by_name(arguments.fix, "--fix", parse_assignment),
-        bounds=_by_name(arguments.bounds, "--bounds", parse_bounds),
-    )
+    given = {
+        "terms": arguments.terms,
+        "mode_sum": arguments.mode_sum,
+        "cp_cv": arguments.cp_cv,
+        "start": _by_name(arguments.start, "--start", parse_assignment),
+        "fix": _by_name(arguments.fix, "--fix", parse_assignment),
+        "bounds": _by_name(arguments.bounds, "--bounds", parse_bounds),
+    }
+    return ModelSettings(**checked(given, MODEL, _option))
 
 
 def report_settings(arguments: argparse.Namespace, before: ReportSettings | None = None) -> ReportSettings:
     """Return the `[report]` table: the options, over what a sheet says."""
     from dataclasses import replace
 
-    from ..reading import parse_grid
+    from ..reading.settings import REPORT, checked
     from ..records import ReportSettings
 
-    settings = before or ReportSettings()
-    if arguments.grid is not None:
-        parse_grid(arguments.grid)
-        settings = replace(settings, grid=arguments.grid)
-    if arguments.figures is not None:
-        settings = replace(settings, figures=_choice(arguments.figures, "--figures", ("none", "svg", "png", "all")))
-    if arguments.random_seed is not None:
-        if not (arguments.random_seed.isascii() and arguments.random_seed.isdigit()):
-            raise InputError(f"--random-seed needs a whole number from 0 on, not {arguments.random_seed!r}")
-        settings = replace(settings, random_seed=int(arguments.random_seed))
-    return settings
+    given = {
+        "grid": arguments.grid,
+        "figures": arguments.figures,
+        "random_seed": _whole(arguments.random_seed),
+    }
+    return replace(before or ReportSettings(), **checked(given, REPORT, _option))
 
 
 _WITH_A_SHEET = {"files", "grid", "out", "replace", "figures", "random_seed", "json", "quiet", "allow_outside"}

@@ -4,20 +4,12 @@ from __future__ import annotations
 
 import argparse
 import re
-import unicodedata
 from typing import NoReturn
 
 from ..errors import InputError, nearest
+from ..later import LATER_OPTIONS
 
-__all__ = ["CommandParser", "harmless"]
-
-
-def harmless(text: str) -> str:
-    """Return the text with control characters made visible: names from files must not steer a terminal."""
-    return "".join(
-        character.encode("unicode_escape").decode() if unicodedata.category(character) in ("Cc", "Cf") else character
-        for character in text
-    )
+__all__ = ["CommandParser"]
 
 
 class CommandParser(argparse.ArgumentParser):
@@ -55,6 +47,8 @@ class CommandParser(argparse.ArgumentParser):
         for word in rest:
             if word.startswith("-"):
                 option = word.split("=")[0]
+                if option in LATER_OPTIONS:
+                    raise InputError(f"{option} is not available in this version; leave it out")
                 options = [each for action in self._actions for each in action.option_strings if each.startswith("--")]
                 raise InputError(f"{self.prog} has no option {option!r}; {nearest(option, options)}")
         if rest:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import argparse
 
 from .parsing import CommandParser
+from .streams import print_json
 
 __all__ = ["parser", "run"]
 
@@ -24,5 +25,8 @@ def run(arguments: argparse.Namespace) -> int:
     from ..report.verification import agrees, verification_record, verification_text
 
     check = published_check()
-    print(json.dumps(verification_record(check), indent=2) if arguments.json else verification_text(check))
+    if arguments.json:
+        print_json(json.dumps(verification_record(check), indent=2))
+    else:
+        print(verification_text(check))
     return 0 if agrees(check) else 3

@@ -59,11 +59,10 @@ def _stack(model: Model, T: FloatArray, values: FloatArray) -> FloatArray:
 
 def _solvable(model: Model, T: FloatArray, values: FloatArray) -> FloatArray:
     """1 where Cp - Cv has a solution, NaN where the temperature is too high for its form."""
-    if model.cp_cv.name != "nernst-lindemann":
+    if model.cp_cv.solvable is None:
         return np.ones_like(T)
-    return np.where(
-        4 * cp_cv_coefficient(model, values) * T * harmonic_heat_capacity(model, T, values) < 1, 1.0, np.nan
-    )
+    lattice = harmonic_heat_capacity(model, T, values)
+    return np.where(model.cp_cv.solvable(T, lattice, cp_cv_coefficient(model, values)), 1.0, np.nan)
 
 
 def _allowance_below(fit: FitRecord, model: Model, values: FloatArray, T: FloatArray, lowest: float) -> FloatArray:
@@ -89,6 +88,10 @@ def _reasons(
     elif held:
         everywhere = f"{held[0]} is at a bound: the covariance does not know what it would do without"
     return [BELOW_REASON if t < lowest else ABOVE_REASON if t > _ABOVE * highest else everywhere for t in T.tolist()]
+
+
+def _origins(T: FloatArray, lowest: float, highest: float) -> tuple[Origin, ...]:
+    return tuple("extrapolated_below" if t < lowest else "extrapolated_above" if t > highest else "measured" for t in T)
 
 
 def functions_table(
@@ -127,9 +130,6 @@ def functions_table(
     if lost:
         rows = np.where(highest < T, np.nan, rows)
     u_fit = propagate(lambda v: _stack(model, T, v), values, covariance)
-    origin: tuple[Origin, ...] = tuple(
-        "extrapolated_below" if t < lowest else "extrapolated_above" if t > highest else "measured" for t in T
-    )
     reasons = _reasons(model, fit, T, lowest, highest, describes)
     u = standard_uncertainty(u_fit, fit.scale_factor, fit.covariance_kind)
     u = u * np.where([reason is None for reason in reasons], 1.0, np.nan)
@@ -158,7 +158,7 @@ def functions_table(
         free_energy_function_u=u[3],
         free_energy_function_u_fit=u_fit[3],
         entropy_fraction_below_data=np.where(lowest >= T, 1.0, below / np.maximum(rows[2], 1e-300)),
-        origin=origin,
+        origin=_origins(T, lowest, highest),
         u_reasons=tuple(reasons),
         components=dict(components(model, T, values)),
     )

@@ -127,17 +127,20 @@ def cp_cv_missing(case: Case) -> NamedWarning | None:
 
 def cp_cv_from_melting_point(case: Case) -> NamedWarning | None:
     """The Cp - Cv coefficient comes from the melting point."""
-    melting_point = case.prepared.measurement.sample.melting_point
-    last = case.fit.parameters[-1]
-    if melting_point is None or last.name != "nernst_lindemann_coefficient" or last.status != "fixed":
+    melting_point, atoms = case.prepared.measurement.sample.melting_point, case.fit.atoms
+    rule, last = case.model.cp_cv.from_melting_point, case.fit.parameters[-1]
+    if rule is None or melting_point is None or atoms is None or last.status != "fixed":
+        return None
+    if last.value != rule(atoms, melting_point):  # held by the user at a value of their own
         return None
     return NamedWarning(
         code="cp-cv-from-melting-point",
         level="warn",
         concerns=last.name,
         message=(
-            f"the coefficient of Cp-Cv is held at {last.value:.3g} mol/J, A0/(n Tm) with Tm = {melting_point:.5g} K; "
-            "that rule is good to tens of percent and its error is in no u"
+            f"the coefficient of Cp-Cv is held at {last.value:.3g} {last.unit}, what the melting point, "
+            f"{melting_point:.5g} K, gives for {case.fit.cp_cv}; that rule is good to tens of percent and its error is "
+            "in no u"
         ),
         found=last.value,
         threshold=None,

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from math import floor, inf, log, log10, nan
+from math import floor, log, log10, nan
 
 import numpy as np
 from numpy.typing import NDArray
@@ -117,7 +117,7 @@ def residual_statistics(
     worst = int(np.argmax(np.abs(percent)))
     return ResidualStatistics(
         reduced_chi_square=fit.chi_square / dof if dof > 0 else None,
-        chi_square_p=float(chi2.sf(min(fit.chi_square, inf), dof)) if dof > 0 else None,
+        chi_square_p=float(chi2.sf(fit.chi_square, dof)) if dof > 0 else None,
         aicc=akaike(fit.chi_square, k, n),
         bic=bayes(fit.chi_square, k, n),
         rms_percent=float(np.sqrt(np.mean(percent**2))),

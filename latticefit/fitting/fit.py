@@ -8,17 +8,36 @@ from typing import Literal, cast
 import numpy as np
 from numpy.typing import NDArray
 
-from ..errors import FitError, InputError
+from ..errors import FitError, InputError, nearest
 from ..models import Model, Parametrisation, build_model
-from ..records import FitRecord, FloatArray, ModelSettings, ParameterValue, PreparedData
+from ..records import FitRecord, FloatArray, ModelSettings, ParameterStatus, ParameterValue, PreparedData
 from .covariance import Covariance, at_bounds, covariance
 from .setup import default_mode_sum, parametrise
 from .solve import Solution, minimise_with_lmfit
 from .start import SearchResult, search
 
-__all__ = ["fit_model"]
+__all__ = ["fit_model", "requested_model"]
 
-Status = Literal["fitted", "fixed", "tied", "at_bound", "undetermined"]
+
+def requested_model(settings: ModelSettings) -> Model:
+    """Return the model that is asked for: all that can be checked of a request before there are data.
+
+    Raises
+    ------
+    InputError
+        Without terms, for an unknown term or form of Cp-Cv, and for names that the model does not have.
+    """
+    if settings.terms is None:
+        raise InputError("no model is named; give its terms, e.g. 'debye + einstein'")
+    model = build_model(settings.terms, settings.cp_cv)
+    for what, given in (("start", settings.start), ("fix", settings.fix), ("bounds", settings.bounds)):
+        for name in given:
+            if name not in model.names:
+                raise InputError(
+                    f"{what} names {name!r}, which the model {model.expression!r} does not have; "
+                    f"{nearest(name, model.names)}"
+                )
+    return model
 
 
 def fit_model(prepared: PreparedData, settings: ModelSettings, seed: int = 0) -> FitRecord:
@@ -45,11 +64,9 @@ def fit_model(prepared: PreparedData, settings: ModelSettings, seed: int = 0) ->
     FitError
         When no minimum was found although the request is in order.
     """
-    if settings.terms is None:
-        raise InputError("no model is named; give its terms, e.g. --terms 'debye + einstein'")
+    model = requested_model(settings)
     sample = prepared.measurement.sample
     data = (prepared.temperature, prepared.heat_capacity, prepared.sigma)
-    model = build_model(settings.terms, settings.cp_cv)
     if prepared.measurement.quantity == "Cv" and settings.cp_cv != "none":
         raise InputError(
             f"the data are Cv, so there is no Cp-Cv to describe; leave --cp-cv {settings.cp_cv} out "
@@ -115,8 +132,8 @@ def _record(
 
 def _statuses(
     par: Parametrisation, bound: NDArray[np.intp], cov: Covariance, values: FloatArray, u: FloatArray
-) -> list[Status]:
-    status: list[Status] = []
+) -> list[ParameterStatus]:
+    status: list[ParameterStatus] = []
     for i, spec in enumerate(par.model.specs):
         if i == par.tied:
             status.append("tied")
@@ -137,7 +154,7 @@ def _parameter(
     par: Parametrisation,
     values: FloatArray,
     matrix: FloatArray,
-    status: Status,
+    status: ParameterStatus,
     u_scale: float,
     start: float,
 ) -> ParameterValue:

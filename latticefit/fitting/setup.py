@@ -7,7 +7,6 @@ from math import isfinite
 
 import numpy as np
 
-from ..constants import NERNST_LINDEMANN_A0
 from ..errors import InputError, nearest
 from ..models import Model, Parametrisation
 from ..records import FloatArray, ModelSettings, Sample
@@ -17,7 +16,6 @@ __all__ = ["default_mode_sum", "parametrise"]
 _MODES_PER_ATOM = 3
 _EXCESS = 2.0  # times the measured heat capacity that a held term alone may give
 _COLDEST_THETA = 0.3  # below this times the lowest point a term is a constant and its theta without meaning
-_LARGEST_DILATION = 0.24  # 4 A T C stays below 0.96 up to the highest point, so that Cp - Cv has a solution
 
 
 def default_mode_sum(settings: ModelSettings, sample: Sample) -> str:
@@ -40,9 +38,9 @@ def _bounds(
     lowest = _COLDEST_THETA * coldest
     low = np.array([max(spec.low, lowest) if spec.role == "scale" else spec.low for spec in model.specs])
     high = np.array([spec.high for spec in model.specs])
-    if model.cp_cv.name == "nernst-lindemann":
+    if model.cp_cv.largest_coefficient is not None:
         limit = largest if atoms is None else max(largest, _MODES_PER_ATOM * atoms * 8.5)
-        high[-1] = _LARGEST_DILATION / (hottest * limit)
+        high[-1] = model.cp_cv.largest_coefficient(hottest, limit)
     for name, (lower, upper) in settings.bounds.items():
         i = model.index(name)
         if not lower < upper:
@@ -60,13 +58,14 @@ def _held(model: Model, settings: ModelSettings, sample: Sample) -> dict[str, fl
     held = dict(settings.fix)
     name = model.names[-1]
     named = {*settings.start, *settings.fix, *settings.bounds}
-    if model.cp_cv.name == "nernst-lindemann" and sample.melting_point is not None and name not in named:
+    rule = model.cp_cv.from_melting_point
+    if rule is not None and sample.melting_point is not None and name not in named:
         if sample.atoms is None:
             raise InputError(
-                "a melting point fixes the Nernst-Lindemann coefficient only when the atoms per formula unit are "
-                "known; give the formula or the number of atoms"
+                f"a melting point fixes {name} only when the atoms per formula unit are known; give the formula or the "
+                "number of atoms"
             )
-        held[name] = NERNST_LINDEMANN_A0 / (sample.atoms * sample.melting_point)
+        held[name] = rule(sample.atoms, sample.melting_point)
     return held
 
 
@@ -96,7 +95,7 @@ def parametrise(
     settings : ModelSettings
         `mode_sum`, `fix`, `bounds` and the names in `start`.
     sample : Sample
-        Atoms per formula unit for the mode sum; a melting point holds the Nernst-Lindemann coefficient at A0/(n Tm).
+        Atoms per formula unit for the mode sum; a melting point holds the coefficient of Cp - Cv.
     T, measured : ndarray, shape (n,)
         K and J/(mol K): the highest point limits Cp - Cv.
 

@@ -41,7 +41,7 @@ _MINPACK_WORDS = {1: _WORDS[2], 2: _WORDS[3], 3: _WORDS[4], 4: _WORDS[1]}
 _INSIDE = 1e-6  # how far inside its bounds, as a fraction of the range or of the value, a start is kept
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Solution(Frozen):
     """A minimum: all parameters (p,), their parametrisation, and how it was reached."""
 

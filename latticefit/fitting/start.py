@@ -135,7 +135,7 @@ def _linear(par: Parametrisation, scales: _Scales, T: FloatArray, measured: Floa
         unique, inverse = np.unique(scales.values[:, own], axis=0, return_inverse=True)
         numbers = []
         for row in unique:
-            key = (owner.term.name if owner else "cp_cv", position if owner is None else "", *row)
+            key = ("cp_cv",) if owner is None else (owner.term.name, position - owner.slice.start, *row)
             if key not in known:
                 known[key] = len(columns)
                 if owner is None:

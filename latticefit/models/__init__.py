@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import Any
 
+from ..terms import TERMS
 from .cp_cv import CP_CV_FORMS, CpCvForm, cp_cv_form
 from .expression import format_expression, parse_expression
 from .model import (
@@ -53,11 +54,19 @@ __all__ = [
 ]
 
 
+def _lmfit_names() -> set[str]:
+    return {"TermModel", "weighted_jacobian", *(each.model_class_name for each in TERMS.values())}
+
+
 def __getattr__(name: str) -> Any:
     """Give the lmfit Model classes (DebyeModel, EinsteinModel ...) on first use: lmfit takes a second to import."""
-    if name.endswith("Model") or name == "weighted_jacobian":
+    if name in _lmfit_names():
         from . import lmfit_models
 
-        if hasattr(lmfit_models, name):
-            return getattr(lmfit_models, name)
+        return getattr(lmfit_models, name)
     raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
+
+
+def __dir__() -> list[str]:
+    """List the lmfit Model classes too, without importing lmfit."""
+    return sorted({*globals(), *_lmfit_names()})

@@ -9,7 +9,7 @@ from ..terms import term
 
 __all__ = ["format_expression", "parse_expression"]
 
-_PART = re.compile(r"^(?:(\d+)\s*)?([A-Za-z][A-Za-z0-9_-]*)$")
+_PART = re.compile(r"^(?:(\d+)\s*)?([A-Za-z][A-Za-z0-9_]*)$")
 _MOST = 9
 
 
@@ -38,7 +38,7 @@ def parse_expression(text: str) -> tuple[tuple[str, int], ...]:
         counts[name] = counts.get(name, 0) + int(found[1] or 1)
         if not 1 <= counts[name] <= _MOST:
             raise InputError(f"model expression {text!r}: the number of {name} terms must be 1 to {_MOST}")
-        if not term(name).lattice and counts[name] > 1:
+        if counts[name] > 1 and all(spec.role == "amplitude" for spec in term(name).parameters):
             raise InputError(f"model expression {text!r}: one {name} term is enough; a second is the same function")
     if not any(term(name).lattice for name in counts):
         raise InputError(f"model expression {text!r} has no lattice term; add 'debye' or 'einstein'")

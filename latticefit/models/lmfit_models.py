@@ -1,7 +1,7 @@
 """Every registered term as an lmfit Model: usable alone, added with ``+``, with `guess` and an analytic Jacobian.
 
-``DebyeModel``, ``EinsteinModel``, ``ElectronicModel`` ... are made from the registry of terms; the independent
-variable is T (K), heat capacities are in J/(mol K).
+``DebyeModel``, ``EinsteinModel``, ``ElectronicModel`` ... follow from the registry of terms when they are first asked
+for; the independent variable is T (K), heat capacities are in J/(mol K).
 """
 
 from __future__ import annotations
@@ -12,26 +12,26 @@ from typing import Any
 import lmfit
 import numpy as np
 
-from ..constants import GAS_CONSTANT
 from ..errors import InputError
 from ..records import FloatArray
 from ..terms import TERMS, Term
 
-__all__ = ["MODEL_CLASSES", "TermModel", "weighted_jacobian"]
+__all__ = ["TermModel", "weighted_jacobian"]
 
 
-def _function(term: Term) -> Callable[..., FloatArray]:
-    """A plain function f(T, theta, modes) with named arguments, as lmfit wants to see them."""
-    names = [spec.quantity for spec in term.parameters]
+class _HeatCapacity:
+    """The heat capacity of a term as lmfit wants to see it: f(T, theta, modes) with named arguments."""
 
-    def heat_capacity(T: FloatArray, *values: float, **named: float) -> FloatArray:
-        return term.heat_capacity(np.asarray(T, dtype=float), *values, *(named[name] for name in names[len(values) :]))
+    def __init__(self, term: Term) -> None:
+        self.term = term
+        self.__name__ = term.name
+        # lmfit reads argument names from these when they are given
+        self.argnames = ["T", *(spec.quantity for spec in term.parameters)]
+        self.kwargs: list[tuple[str, Any]] = []
 
-    heat_capacity.__name__ = term.name
-    # lmfit reads argument names from these when they are given
-    heat_capacity.argnames = ["T", *names]  # type: ignore[attr-defined]
-    heat_capacity.kwargs = []  # type: ignore[attr-defined]
-    return heat_capacity
+    def __call__(self, T: FloatArray, *values: float, **named: float) -> FloatArray:
+        rest = self.argnames[1 + len(values) :]
+        return self.term.heat_capacity(np.asarray(T, dtype=float), *values, *(named[name] for name in rest))
 
 
 class TermModel(lmfit.Model):  # type: ignore[misc]
@@ -48,30 +48,25 @@ class TermModel(lmfit.Model):  # type: ignore[misc]
     def __init__(self, prefix: str = "", **kws: Any) -> None:
         kws.setdefault("nan_policy", "raise")
         kws.setdefault("independent_vars", ["T"])
-        super().__init__(_function(self.term), prefix=prefix, **kws)
+        super().__init__(_HeatCapacity(self.term), prefix=prefix, **kws)
         for spec in self.term.parameters:
-            start = {"theta": 300.0, "modes": 3.0}.get(spec.quantity, 1e-3)
-            self.set_param_hint(spec.quantity, value=start, min=spec.low, max=spec.high)
+            self.set_param_hint(spec.quantity, value=spec.example, min=spec.low, max=spec.high)
 
     def guess(self, data: FloatArray, T: FloatArray, **kws: Any) -> lmfit.Parameters:
-        """Start values from heat capacities `data` (J/(mol K)) at T (K).
+        """Start values from heat capacities `data` (J/(mol K)) at T (K) that this term alone describes.
 
-        Modes from the largest heat capacity (Dulong and Petit), theta from the temperature of half of it, linear
-        coefficients from the ratio to T at the lowest point.
+        By the term's own `guess`; for a term without one, the examples of its parameters with the amplitudes scaled
+        by one factor that fits the data best.
         """
         data, T = np.asarray(data, dtype=float), np.asarray(T, dtype=float)
-        values: dict[str, float] = {}
-        largest = float(data.max())
-        for spec in self.term.parameters:
-            if spec.quantity == "modes":
-                values["modes"] = largest / GAS_CONSTANT
-            elif spec.quantity == "theta":
-                half = float(T[np.argmin(np.abs(data - largest / 2))])
-                values["theta"] = (4.0 if self.term.name == "debye" else 3.0) * half
-            else:
-                lowest = int(np.argmin(T))
-                values[spec.quantity] = float(data[lowest] / T[lowest])
-        return lmfit.models.update_param_vals(self.make_params(**values), self.prefix, **kws)
+        values = (self.term.guess or self._scaled_examples)(T, data)
+        named = {spec.quantity: value for spec, value in zip(self.term.parameters, values, strict=True)}
+        return lmfit.models.update_param_vals(self.make_params(**named), self.prefix, **kws)
+
+    def _scaled_examples(self, T: FloatArray, data: FloatArray) -> tuple[float, ...]:
+        expected = self.term.heat_capacity(T, *(spec.example for spec in self.term.parameters))
+        factor = float(data @ expected) / float(expected @ expected)
+        return tuple(spec.example * (factor if spec.role == "amplitude" else 1.0) for spec in self.term.parameters)
 
     def partials(self, parameters: lmfit.Parameters, T: FloatArray) -> dict[str, FloatArray]:
         """Derivatives of the term with respect to each of its parameters, by full name, each of shape (n,)."""
@@ -117,14 +112,15 @@ def weighted_jacobian(model: lmfit.Model) -> Callable[..., FloatArray]:
     return dfun
 
 
-MODEL_CLASSES: dict[str, type[TermModel]] = {
-    f"{term.name.capitalize()}Model": type(
-        f"{term.name.capitalize()}Model",
-        (TermModel,),
-        {"term": term, "__doc__": f"lmfit Model of the {term.name} term. {term.source}.", "__module__": __name__},
-    )
-    for term in TERMS.values()
-}
-"""The lmfit Model classes by name, one for each registered term."""
+_CLASSES: dict[str, type[TermModel]] = {}
 
-globals().update(MODEL_CLASSES)
+
+def __getattr__(name: str) -> type[TermModel]:
+    """Return the lmfit Model class of a registered term, made on first use and the same one ever after."""
+    for term in TERMS.values():
+        if term.model_class_name == name:
+            if name not in _CLASSES or _CLASSES[name].term is not term:
+                doc = f"lmfit Model of the {term.name} term. {term.source}."
+                _CLASSES[name] = type(name, (TermModel,), {"term": term, "__doc__": doc, "__module__": __name__})
+            return _CLASSES[name]
+    raise AttributeError(f"module {__name__!r} has no attribute {name!r}")

@@ -74,7 +74,7 @@ def build_model(terms: str, cp_cv: str = "none") -> Model:
     terms : str
         Model expression, e.g. ``"debye + 2 einstein"``.
     cp_cv : str
-        ``"none"``, ``"nernst-lindemann"`` or ``"anharmonic"``.
+        A form of Cp - Cv, one of `CP_CV_FORMS`.
 
     Raises
     ------

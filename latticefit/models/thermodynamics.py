@@ -1,4 +1,4 @@
-"""Energy, entropy and zero-point energy of a whole model: closed forms, quadrature only for Cp - Cv."""
+"""Energy, entropy and zero-point energy of a whole model: closed forms, quadrature only where Cp - Cv has none."""
 
 from __future__ import annotations
 
@@ -9,7 +9,9 @@ from .model import Model, cp_cv_coefficient, harmonic_heat_capacity
 
 __all__ = ["energy", "entropy", "zero_point_energy"]
 
-_EDGES = np.array([0.0, 1 / 64, 1 / 16, 1 / 4, 1.0])  # panels as fractions of T: the integrand rises as T^7 or faster
+_EDGES = np.array(
+    [0.0, 1 / 64, 1 / 16, 1 / 4, 1.0]
+)  # panels as fractions of T: Cp - Cv vanishes at least as T^4 as T -> 0
 _NODES = 24
 
 
@@ -40,9 +42,14 @@ def energy(model: Model, T: FloatArray, values: FloatArray) -> FloatArray:
 def entropy(model: Model, T: FloatArray, values: FloatArray) -> FloatArray:
     """Entropy, J/(mol K); shape of T (K)."""
     T = np.asarray(T, dtype=float)
-    total = np.zeros_like(T)
+    total, lattice_energy = np.zeros_like(T), np.zeros_like(T)
+    closed = model.cp_cv.excess_entropy
     for each in model.placed:
         total = total + each.term.entropy(T, *values[each.slice])
+        if closed is not None and each.term.lattice:
+            lattice_energy = lattice_energy + each.term.energy(T, *values[each.slice])
+    if closed is not None:
+        return total + closed(T, lattice_energy, cp_cv_coefficient(model, values))
     return total if model.cp_cv.parameter is None else total + _excess_integral(model, T, values, True)
 
 

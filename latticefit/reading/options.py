@@ -10,10 +10,19 @@ from typing import Final
 from ..errors import InputError
 from .wording import quoted
 
-__all__ = ["interval_text", "parse_assignment", "parse_bounds", "parse_grid", "parse_interval"]
+__all__ = [
+    "HIGHEST_TEMPERATURE",
+    "MAX_GRID_POINTS",
+    "interval_text",
+    "ordered_interval",
+    "parse_assignment",
+    "parse_bounds",
+    "parse_grid",
+    "parse_interval",
+]
 
 MAX_GRID_POINTS: Final = 100_000
-_HIGHEST_TEMPERATURE: Final = 1e6
+HIGHEST_TEMPERATURE: Final = 1e6
 _NUMBER: Final = re.compile(r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d{1,4})?", re.ASCII)
 
 
@@ -54,7 +63,7 @@ def _range(part: str, text: str) -> list[float]:
             "'0.5:5:0.5, 10:300:10, 298.15'"
         )
     low, high, step = pieces if len(pieces) == 3 else (pieces[0], pieces[0], 1.0)
-    if not all(0 < value <= _HIGHEST_TEMPERATURE for value in (low, high, step) if value is not None):
+    if not all(0 < value <= HIGHEST_TEMPERATURE for value in (low, high, step) if value is not None):
         raise InputError(f"grid {quoted(text)}: temperatures and step in {quoted(part)} must be above 0 K and finite")
     if len(pieces) == 1:
         return [float(part)]
@@ -85,6 +94,19 @@ def parse_interval(text: str) -> tuple[float, float]:
         If it cannot be read, or its ends are not 0 <= low <= high.
     """
     low, high = _sides(text, 0.0, f"interval {quoted(text)} must be low:high in K, as in '2:300', '2:' or ':300'")
+    return ordered_interval(low, high, text)
+
+
+def ordered_interval(low: float, high: float, text: str) -> tuple[float, float]:
+    """Return the ends of an interval in K, written as `text`.
+
+    Raises
+    ------
+    InputError
+        If they are not 0 <= low <= high.
+    """
+    if math.isnan(low) or math.isnan(high) or math.isinf(low):
+        raise InputError(f"interval {quoted(text)} must be low:high in K, as in '2:300', '2:' or ':300'")
     if low < 0:
         raise InputError(f"interval {quoted(text)} starts below 0 K")
     if low > high:

@@ -2,177 +2,24 @@
 
 from __future__ import annotations
 
-import math
 import tomllib
-from collections.abc import Callable, Mapping
+from collections.abc import Mapping
 from dataclasses import fields
 from pathlib import Path
 from typing import Any, Final
 
 from ..errors import InputError, nearest
+from ..later import LATER_KEYS
 from ..records import ModelSettings, ReportSettings, RunSettings, SampleSettings, Sheet
-from .options import interval_text, parse_bounds, parse_grid, parse_interval
+from .options import interval_text
+from .settings import MODEL, REPORT, RUN, SAMPLE, Converter, checked, wrong
 from .wording import quoted, shown_name
 
 __all__ = ["read_sheet", "write_sheet"]
 
 _MAX_BYTES: Final = 1_000_000
 
-Converter = Callable[[Any, str], Any]
-
-
-# --------------------------------------------------------------------------------------------- one value of a sheet
-
-
-def _kind(value: Any) -> str:
-    if isinstance(value, str):
-        return quoted(value)
-    names = {bool: "true or false", dict: "a table", list: "a list"}
-    return names.get(type(value), str(value))
-
-
-def _wrong(where: str, wanted: str, value: Any) -> InputError:
-    return InputError(f"{where} must be {wanted}, not {_kind(value)}")
-
-
-def _text(value: Any, where: str) -> str:
-    if not isinstance(value, str) or not value.strip():
-        raise _wrong(where, "a text in quotes", value)
-    return value
-
-
-def _number(value: Any, where: str) -> float:
-    if isinstance(value, bool) or not isinstance(value, (int, float)) or not math.isfinite(value):
-        raise _wrong(where, "a number without quotes", value)
-    return float(value)
-
-
-def _positive(value: Any, where: str) -> float:
-    number = _number(value, where)
-    if number <= 0:
-        raise _wrong(where, "above 0", value)
-    return number
-
-
-def _column(value: Any, where: str) -> str | int:
-    if isinstance(value, int) and not isinstance(value, bool) and value >= 1:
-        return value
-    if isinstance(value, str) and value.strip():
-        return value
-    raise _wrong(where, "a header in quotes or a column number from 1 on", value)
-
-
-def _sigma(value: Any, where: str) -> str | int:
-    if isinstance(value, float):
-        raise _wrong(where, 'a column or a text such as "0.5%"', value)
-    return _column(value, where)
-
-
-def _seed(value: Any, where: str) -> int:
-    if isinstance(value, bool) or not isinstance(value, int) or value < 0:
-        raise _wrong(where, "a whole number from 0 on", value)
-    return value
-
-
-def _one_of(*choices: str) -> Converter:
-    def convert(value: Any, where: str) -> str:
-        if value not in choices:
-            raise InputError(f"{where} cannot be {_kind(value)}: {nearest(str(value), choices)}")
-        return str(value)
-
-    return convert
-
-
-def _intervals(value: Any, where: str) -> tuple[tuple[float, float], ...]:
-    texts = [value] if isinstance(value, str) else value
-    if not isinstance(texts, list) or not texts or not all(isinstance(text, str) for text in texts):
-        raise _wrong(where, 'a text such as "2:300" or a list of them', value)
-    try:
-        return tuple(parse_interval(text) for text in texts)
-    except InputError as error:
-        raise InputError(f"{where}: {error}") from None
-
-
-def _grid(value: Any, where: str) -> str:
-    text = _text(value, where)
-    try:
-        parse_grid(text)
-    except InputError as error:
-        raise InputError(f"{where}: {error}") from None
-    return text
-
-
-def _bounds(value: Any, where: str) -> tuple[float, float]:
-    if isinstance(value, str):
-        try:
-            return parse_bounds(f"parameter={value}")[1]
-        except InputError:
-            raise _wrong(where, "[low, high]", value) from None
-    sides = value if isinstance(value, list) else []
-    numbers = all(isinstance(side, (int, float)) and not isinstance(side, bool) for side in sides)
-    if len(sides) != 2 or not numbers or any(math.isnan(side) for side in sides):
-        raise _wrong(where, "[low, high], where a side may be -inf or inf", value)
-    low, high = float(sides[0]), float(sides[1])
-    if low >= high:
-        raise InputError(f"{where}: the lower bound must be below the upper one, not [{low:g}, {high:g}]")
-    return low, high
-
-
-def _by_name(convert: Converter) -> Converter:
-    def table(value: Any, where: str) -> dict[str, Any]:
-        if not isinstance(value, dict):
-            raise _wrong(where, "a table of parameter names", value)
-        return {name: convert(entry, f"{where} {shown_name(name)}") for name, entry in value.items()}
-
-    return table
-
-
-# -------------------------------------------------------------------------------------------------- the whole sheet
-
-_SAMPLE: Final[dict[str, Converter]] = {
-    "name": _text,
-    "formula": _text,
-    "atoms": _positive,
-    "molar_mass": _text,
-    "mass": _text,
-    "melting_point": _text,
-}
-_RUN: Final[dict[str, Converter]] = {
-    "file": _text,
-    "label": _text,
-    "quantity": _one_of("Cp", "Cv"),
-    "temperature": _column,
-    "heat_capacity": _column,
-    "sigma": _sigma,
-    "coverage_factor": _positive,
-    "temperature_unit": _text,
-    "heat_capacity_unit": _text,
-    "window": _intervals,
-    "mask": _intervals,
-}
-_MODEL: Final[dict[str, Converter]] = {
-    "terms": _text,
-    "mode_sum": _one_of("fixed", "free"),
-    "cp_cv": _text,
-    "start": _by_name(_number),
-    "fix": _by_name(_number),
-    "bounds": _by_name(_bounds),
-}
-_REPORT: Final[dict[str, Converter]] = {
-    "grid": _grid,
-    "figures": _one_of("none", "svg", "png", "all"),
-    "out": _text,
-    "random_seed": _seed,
-}
 _TABLES: Final = ("sample", "run", "model", "report")
-_LATER: Final = {
-    "": {"addenda"},
-    "sample": {"density", "insulator", "scale_uncertainty"},
-    "run": {"split_by"},
-    "model": set[str](),
-    "report": set[str](),
-}
-"""Keys of the agreed sheet that this version cannot act on: refused, never ignored."""
 
 
 def read_sheet(path: Path, allow_outside: bool = False) -> Sheet:
@@ -198,15 +45,15 @@ def read_sheet(path: Path, allow_outside: bool = False) -> Sheet:
     shown = shown_name(str(path))
     content = _load(path, shown)
     for key in content:
-        if key in _LATER[""]:
+        if key in LATER_KEYS[""]:
             raise InputError(f"{shown}: [{key}] is not available in this version; remove it")
         if key not in _TABLES:
             raise InputError(f"{shown}: unknown table [{shown_name(key)}]; {nearest(key, _TABLES)}")
     sheet = Sheet(
-        sample=SampleSettings(**_table(content.get("sample", {}), "sample", _SAMPLE, f"{shown}: [sample]")),
+        sample=SampleSettings(**_table(content.get("sample", {}), "sample", SAMPLE, f"{shown}: [sample]")),
         runs=_runs(content.get("run"), shown),
-        model=ModelSettings(**_table(content.get("model", {}), "model", _MODEL, f"{shown}: [model]")),
-        report=ReportSettings(**_table(content.get("report", {}), "report", _REPORT, f"{shown}: [report]")),
+        model=ModelSettings(**_table(content.get("model", {}), "model", MODEL, f"{shown}: [model]")),
+        report=ReportSettings(**_table(content.get("report", {}), "report", REPORT, f"{shown}: [report]")),
     )
     if not allow_outside:
         _refuse_outside(sheet, path.parent, shown)
@@ -235,13 +82,13 @@ def _load(path: Path, shown: str) -> dict[str, Any]:
 
 def _table(content: Any, name: str, keys: Mapping[str, Converter], where: str) -> dict[str, Any]:
     if not isinstance(content, dict):
-        raise _wrong(where, "a table", content)
+        raise wrong(where, "a table", content)
     for key in content:
-        if key in _LATER[name]:
+        if key in LATER_KEYS[name]:
             raise InputError(f"{where} {key} is not available in this version; remove it")
         if key not in keys:
             raise InputError(f"{where} has no key {quoted(key)}; {nearest(key, keys)}")
-    return {key: keys[key](value, f"{where} {key}") for key, value in content.items()}
+    return checked(content, keys, lambda key: f"{where} {key}")
 
 
 def _runs(content: Any, shown: str) -> tuple[RunSettings, ...]:
@@ -250,11 +97,11 @@ def _runs(content: Any, shown: str) -> tuple[RunSettings, ...]:
     if isinstance(content, dict):
         raise InputError(f"{shown}: [run] must be written [[run]], since a sheet may hold several")
     if not isinstance(content, list) or not content:
-        raise _wrong(f"{shown}: run", "one or more tables [[run]]", content)
+        raise wrong(f"{shown}: run", "one or more tables [[run]]", content)
     runs = []
     for number, entry in enumerate(content, start=1):
         where = f"{shown}: [[run]]" + (f" {number}" if len(content) > 1 else "")
-        settings = _table(entry, "run", _RUN, where)
+        settings = _table(entry, "run", RUN, where)
         if "file" not in settings:
             raise InputError(f'{where} has no file; add file = "..."')
         runs.append(RunSettings(**settings))

@@ -1,12 +1,13 @@
 """Frozen records handed from stage to stage: what was asked, read, prepared, fitted, found and derived.
 
 A record holds facts and no logic. Temperatures are in K; heat capacity and entropy in J/(mol K), energy in
-J/mol, per mole of formula unit; everything else in SI. Arrays inside a record are read-only.
+J/mol, per mole of formula unit; everything else in SI. Arrays inside a record are read-only, also in a copy or an
+unpickled one; a record that holds arrays is equal to itself alone.
 """
 
 from __future__ import annotations
 
-from .base import Basis, FloatArray, Frozen, Level, Quantity, SigmaKind
+from .base import Basis, FloatArray, Frozen, Level, ParameterStatus, Quantity, ReadOnly, SigmaKind
 from .data import ExcludedRow, Measurement, PreparedData, Reading, Repair, Sample
 from .derived import Analysis, Derived, DerivedValue, PointwiseTheta, Provenance, ThermodynamicTable
 from .findings import Diagnosis, FitRecord, NamedWarning, ParameterValue, ResidualBand, ResidualStatistics, ValidityFact
@@ -26,11 +27,13 @@ __all__ = [
     "Measurement",
     "ModelSettings",
     "NamedWarning",
+    "ParameterStatus",
     "ParameterValue",
     "PointwiseTheta",
     "PreparedData",
     "Provenance",
     "Quantity",
+    "ReadOnly",
     "Reading",
     "Repair",
     "ReportSettings",

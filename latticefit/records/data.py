@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
+from html import escape
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,6 +13,9 @@ from .base import Basis, FloatArray, Frozen, Quantity, SigmaKind
 from .request import RunSettings, SampleSettings
 
 __all__ = ["ExcludedRow", "Measurement", "PreparedData", "Reading", "Repair", "Sample"]
+
+
+_UNITS: Mapping[Basis, str] = {"mol": "J/(mol K)", "gram": "J/(g K)", "sample": "J/K"}
 
 
 @dataclass(frozen=True)
@@ -66,7 +71,7 @@ class Reading:
     settings: RunSettings
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False, repr=False)
 class Measurement(Frozen):
     """Measured heat capacity of one sample, in file order, unusable rows omitted.
 
@@ -98,8 +103,30 @@ class Measurement(Frozen):
     excluded: tuple[ExcludedRow, ...]
     sample_settings: SampleSettings
 
+    def _facts(self) -> dict[str, str]:
+        """What a notebook shows of it; names stand in quotes, with whatever does not print escaped."""
+        sample = self.sample
+        T = self.temperature
+        formula = "" if sample.formula is None else f" ({sample.formula!r})"
+        return {
+            "sample": f"{sample.name!r}{'' if sample.formula == sample.name else formula}",
+            "files": ", ".join(repr(each.file) for each in self.readings),
+            "points": str(T.size),
+            "range": f"{T.min():.4g} to {T.max():.4g} K" if T.size else "none",
+            "quantity": f"{self.quantity} in {_UNITS[self.basis]}",
+            "sigma": repr(self.sigma_text) if self.sigma_text else "none stated",
+        }
 
-@dataclass(frozen=True)
+    def __repr__(self) -> str:
+        facts = self._facts()
+        return f"<Measurement {facts['sample']}: {facts['points']} points, {facts['range']}, {facts['quantity']}>"
+
+    def _repr_html_(self) -> str:
+        rows = "".join(f"<tr><th>{name}</th><td>{escape(text)}</td></tr>" for name, text in self._facts().items())
+        return f"<table>{rows}</table>"
+
+
+@dataclass(frozen=True, eq=False)
 class PreparedData(Frozen):
     """The points that are fitted, by ascending temperature, each with its standard uncertainty.
 

@@ -36,7 +36,7 @@ class DerivedValue:
     reason: str | None
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class ThermodynamicTable(Frozen):
     """Thermodynamic functions on a grid, per mole of formula unit, shape (m,) each; NaN where not given.
 
@@ -66,7 +66,7 @@ class ThermodynamicTable(Frozen):
     components: Mapping[str, FloatArray]
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class PointwiseTheta(Frozen):
     """Calorimetric theta_D(T) of every measured point (order of the measurement), K; NaN with a reason where blank."""
 
@@ -75,7 +75,7 @@ class PointwiseTheta(Frozen):
     reasons: tuple[str | None, ...]
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Derived(Frozen):
     """Everything derived from a fit.
 
@@ -103,7 +103,7 @@ class Provenance(Frozen):
     command: str
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Analysis:
     """All records of one run, from the request to the derived quantities: what reports are rendered from.
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Literal
 
-from .base import FloatArray, Frozen, Level
+from .base import FloatArray, Frozen, Level, ParameterStatus
 
 __all__ = [
     "Diagnosis",
@@ -31,14 +31,14 @@ class ParameterValue:
     u: float | None
     u_fit: float | None
     unit: str
-    status: Literal["fitted", "fixed", "tied", "at_bound", "undetermined"]
+    status: ParameterStatus
     low: float
     high: float
     start: float
     meaning: str
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class FitRecord(Frozen):
     """Result of one fit: enough to evaluate the model again without the data.
 
@@ -146,7 +146,7 @@ class NamedWarning:
     advice: str
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Diagnosis(Frozen):
     """Residuals of the fitted points and what they say.
 

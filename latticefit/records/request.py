@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 from typing import Literal
 
-from .base import Frozen, Quantity, empty
+from .base import Frozen, Quantity, ReadOnly, empty
 
 __all__ = ["ModelSettings", "ReportSettings", "RunSettings", "SampleSettings", "Sheet"]
 
@@ -53,7 +53,7 @@ class ModelSettings(Frozen):
     cp_cv: str = "none"
     start: Mapping[str, float] = field(default_factory=empty)
     fix: Mapping[str, float] = field(default_factory=empty)
-    bounds: Mapping[str, tuple[float, float]] = field(default_factory=dict)
+    bounds: Mapping[str, tuple[float, float]] = field(default_factory=lambda: ReadOnly({}))
 
 
 @dataclass(frozen=True)

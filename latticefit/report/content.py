@@ -10,9 +10,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from ..constants import STANDARD_TEMPERATURE
+from ..models import build_model
 from ..records import Analysis, DerivedValue, ParameterValue, ThermodynamicTable
 from ..rounding import percent_text
-from .wording import concise, harmless, plain_number, plus_minus, shown_unit, significant
+from ..wording import harmless
+from .wording import concise, plain_number, plus_minus, shown_unit, significant
 
 __all__ = [
     "Grid",
@@ -264,9 +266,10 @@ def key_rows(analysis: Analysis) -> tuple[Row, ...]:
     chi_square, residuals = fit_rows(analysis)[:2]
     wanted = ("theta_debye_low_temperature", "theta_debye_moment_0")
     temperatures = [_derived_row(each) for each in analysis.derived.characteristic_temperatures if each.key in wanted]
-    electronic = [_parameter_row(each) for each in analysis.fit.parameters if each.name.startswith("electronic_")]
+    placed = build_model(analysis.fit.terms, analysis.fit.cp_cv).placed
+    outside = [each for term in placed if not term.term.lattice for each in analysis.fit.parameters[term.slice]]
     at_standard = [Row(f"{each.label} at 298.15 K", each.value) for each in (heat_capacity, energy, entropy)]
-    found = (*temperatures, *electronic, *at_standard, chi_square, residuals)
+    found = (*temperatures, *map(_parameter_row, outside), *at_standard, chi_square, residuals)
     return tuple(Row(each.label, each.value) for each in found)
 
 

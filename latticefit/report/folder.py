@@ -16,16 +16,15 @@ from typing import Literal
 from ..errors import InputError, nearest
 from ..reading.sheets import write_sheet
 from ..records import Analysis, Sheet
+from ..wording import harmless
 from .figures import FIGURES, draw_figure, render
 from .html import html_report
 from .result import SCHEMA, json_text, result_record
 from .tables import residuals_csv, table_csv
 from .text import text_report
-from .wording import harmless
 
 __all__ = ["check_out_folder", "write_report"]
 
-FigureFiles = Literal["none", "svg", "png", "all"]
 _FIGURE_FORMATS: Mapping[str, tuple[Literal["svg", "png"], ...]] = {
     "none": (),
     "svg": ("svg",),

@@ -12,10 +12,10 @@ from jinja2 import Environment, PackageLoader, StrictUndefined
 from markupsafe import Markup, escape
 
 from ..records import Analysis
+from ..wording import harmless
 from . import content
 from .cautions import CAUTIONS
 from .figures import FIGURES
-from .wording import harmless
 
 __all__ = ["html_report", "html_summary"]
 

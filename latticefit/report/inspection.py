@@ -9,7 +9,8 @@ import numpy as np
 
 from ..constants import GAS_CONSTANT
 from ..records import Measurement
-from .wording import harmless, significant
+from ..wording import harmless
+from .wording import significant
 
 __all__ = ["inspection_record", "inspection_text"]
 

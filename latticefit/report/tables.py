@@ -8,9 +8,9 @@ from collections.abc import Sequence
 from typing import Any
 
 from ..records import Analysis
+from ..wording import harmless
 from .points import measured_points
 from .result import thermodynamic_rows
-from .wording import harmless
 
 __all__ = ["residual_rows", "residuals_csv", "table_csv"]
 

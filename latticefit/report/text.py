@@ -12,10 +12,10 @@ from rich.table import Table
 from rich.text import Text
 
 from ..records import Analysis
+from ..wording import harmless
 from . import content
 from .cautions import CAUTIONS
 from .content import Grid, Row
-from .wording import harmless
 
 __all__ = ["WIDTH", "summary_text", "text_report"]
 

@@ -1,30 +1,16 @@
-"""Numbers, units and names as a person reads them: rounded to the uncertainty, harmless in any output."""
+"""Numbers and units as a person reads them: rounded to the uncertainty."""
 
 from __future__ import annotations
 
-import unicodedata
 from math import isfinite
 
 from ..rounding import format_value, round_to_uncertainty
 
-__all__ = ["concise", "harmless", "plain_number", "plus_minus", "shown_scale", "shown_unit", "significant"]
+__all__ = ["concise", "plain_number", "plus_minus", "shown_scale", "shown_unit", "significant"]
 
 # Units that people read in another power of ten than the SI unit of the records.
 _SHOWN = {"J/(mol K^2)": (1e3, "mJ/(mol K^2)"), "J/(mol K^4)": (1e3, "mJ/(mol K^4)")}
 _SUPERSCRIPTS = {"^2": "²", "^3": "³", "^4": "⁴"}
-# Control and format characters (among them those that turn the direction of text), lone surrogates, line separators.
-_HARMFUL = {"Cc", "Cf", "Cs", "Zl", "Zp"}
-
-
-def harmless(text: str) -> str:
-    r"""Return `text` with control, format and surrogate characters written as escapes, e.g. ``\x1b``.
-
-    A sample name or a file label may come from anywhere; on a terminal or in a file it must not act.
-    """
-    return "".join(
-        each.encode("unicode_escape").decode("ascii") if unicodedata.category(each) in _HARMFUL else each
-        for each in text
-    )
 
 
 def shown_scale(unit: str) -> float:

@@ -42,10 +42,16 @@ def no_cubic_coefficient(gamma: float) -> float:
     return 0.0
 
 
+def guess(T: FloatArray, measured: FloatArray) -> tuple[float]:
+    """C/T at the lowest point, where a lattice beside it counts least."""
+    lowest = int(np.argmin(T))
+    return (float(measured[lowest] / T[lowest]),)
+
+
 TERM = Term(
     name="electronic",
     parameters=(
-        ParameterSpec("gamma", "J/(mol K^2)", 0.0, inf, "amplitude", "electronic (Sommerfeld) coefficient gamma"),
+        ParameterSpec("gamma", "J/(mol K^2)", 0.0, inf, "amplitude", "electronic (Sommerfeld) coefficient gamma", 1e-3),
     ),
     lattice=False,
     heat_capacity=heat_capacity,
@@ -58,4 +64,5 @@ TERM = Term(
     low_limit="gamma T",
     high_limit="gamma T (a straight line at every temperature)",
     source="A. Sommerfeld, Z. Phys. 47, 1 (1928)",
+    guess=guess,
 )

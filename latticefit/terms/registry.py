@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from types import MappingProxyType
 
 from ..errors import InputError, nearest
@@ -10,17 +11,17 @@ from .term import Term
 
 __all__ = ["TERMS", "term"]
 
-TERMS = MappingProxyType(
-    {
-        each.name: each
-        for each in (
-            debye.TERM,
-            einstein.TERM,
-            electronic.TERM,
-        )
-    }
-)
-"""Every term a model expression can name."""
+_TERMS: dict[str, Term] = {
+    each.name: each
+    for each in (
+        debye.TERM,
+        einstein.TERM,
+        electronic.TERM,
+    )
+}
+
+TERMS: Mapping[str, Term] = MappingProxyType(_TERMS)
+"""Every term a model expression can name: a view, so that whoever imports it sees what is registered."""
 
 
 def term(name: str) -> Term:

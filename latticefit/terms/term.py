@@ -27,6 +27,8 @@ class ParameterSpec:
         An amplitude enters the heat capacity linearly; a scale does not and is searched for.
     meaning : str
         One line for reports and help.
+    example : float
+        A typical value, strictly inside the range: the start of the lmfit Model, and what the tests evaluate.
     """
 
     quantity: str
@@ -35,6 +37,7 @@ class ParameterSpec:
     high: float
     role: Literal["scale", "amplitude"]
     meaning: str
+    example: float
 
 
 @dataclass(frozen=True)
@@ -44,7 +47,9 @@ class Term:
     Attributes
     ----------
     name : str
-        Name in model expressions.
+        Name in model expressions: lower case, an identifier, without a digit at its end (repeated terms are numbered).
+    parameters : tuple of ParameterSpec
+        At least one of them an amplitude, and the heat capacity homogeneous of first degree in the amplitudes.
     lattice : bool
         True for lattice vibrations: Cp-Cv acts on them and their `modes` count towards the mode sum.
     heat_capacity : callable ``(T, *parameters) -> ndarray``
@@ -66,6 +71,9 @@ class Term:
         The heat capacity as T -> 0 and T -> infinity, in words.
     source : str
         Where the formula was published.
+    guess : callable ``(T, heat capacity) -> parameters``, or None
+        Start values from data that this term alone describes, for the lmfit Model; None for the examples with the
+        amplitudes scaled to the data.
     """
 
     name: str
@@ -81,3 +89,9 @@ class Term:
     low_limit: str
     high_limit: str
     source: str
+    guess: Callable[[FloatArray, FloatArray], tuple[float, ...]] | None = None
+
+    @property
+    def model_class_name(self) -> str:
+        """Name of the lmfit Model class of this term: ``two_level`` gives ``TwoLevelModel``."""
+        return "".join(word.capitalize() for word in self.name.split("_")) + "Model"

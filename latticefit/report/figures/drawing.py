@@ -12,8 +12,8 @@ from matplotlib.lines import Line2D
 from numpy.typing import NDArray
 
 from ...records import Analysis, FloatArray, ThermodynamicTable
+from ...wording import harmless
 from ..points import MeasuredPoints
-from ..wording import harmless
 from .style import FIT_COLOUR, run_look
 
 __all__ = ["PointArtists", "draw_fit", "draw_points", "finite", "largest", "mark_beyond", "masked_regions"]

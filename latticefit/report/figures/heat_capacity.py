@@ -14,14 +14,15 @@ from matplotlib.patches import Polygon, Rectangle
 from ...constants import GAS_CONSTANT
 from ...records import Analysis, FloatArray, ThermodynamicTable
 from ...rounding import percent_text
+from ...wording import harmless
 from ..points import measured_points
-from ..wording import harmless, plain_number
+from ..wording import plain_number
 from .drawing import PointArtists, draw_fit, draw_points, largest, mark_beyond, masked_regions
 from .report_figure import ReportFigure
 from .residuals import ResidualArtists, plot_residuals
 from .style import (
     component_label,
-    component_look,
+    component_looks,
     heat_capacity_label,
     legend_above,
     shade_outside,
@@ -56,9 +57,9 @@ def draw_curves(axes: Axes, curve: ThermodynamicTable, scale: FloatArray) -> Cur
     """Draw the heat capacity of a model and of its components, each multiplied by `scale` (shape of the curve)."""
     T = curve.temperature
     fit, extrapolated = draw_fit(axes, curve, curve.heat_capacity * scale)
-    components = {}
+    components, looks = {}, component_looks(curve.components)
     for name, values in curve.components.items():
-        colour, dashes = component_look(name)
+        colour, dashes = looks[name]
         (components[name],) = axes.plot(
             T, values * scale, color=colour, linestyle=dashes, linewidth=1.0, zorder=3.5, label=component_label(name)
         )

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from types import MappingProxyType
 
 from ...errors import InputError, nearest
@@ -10,18 +11,18 @@ from .report_figure import ReportFigure
 
 __all__ = ["FIGURES", "ReportFigure", "figure"]
 
-FIGURES = MappingProxyType(
-    {
-        each.name: each
-        for each in (
-            heat_capacity.FIGURE,
-            residuals.FIGURE,
-            heat_capacity_over_cubed_temperature.FIGURE,
-            theta_debye.FIGURE,
-        )
-    }
-)
-"""Every figure of a report, in the order in which it is shown."""
+_FIGURES: dict[str, ReportFigure] = {
+    each.name: each
+    for each in (
+        heat_capacity.FIGURE,
+        residuals.FIGURE,
+        heat_capacity_over_cubed_temperature.FIGURE,
+        theta_debye.FIGURE,
+    )
+}
+
+FIGURES: Mapping[str, ReportFigure] = MappingProxyType(_FIGURES)
+"""Every figure of a report, in the order in which it is shown: a view, so that whoever imports it sees all of them."""
 
 
 def figure(name: str) -> ReportFigure:

@@ -29,6 +29,8 @@ class ReportFigure:
         Draws on an empty matplotlib Figure and returns a frozen dataclass of the artists.
     alt : callable ``(analysis) -> str``
         The finding in words, for those who do not see the picture.
+    numbers : tuple of str
+        Labels of axes that show a pure number; every other label reads quantity / unit.
     """
 
     name: str
@@ -36,3 +38,4 @@ class ReportFigure:
     height: float
     draw: Callable[[Figure, Analysis], Any]
     alt: Callable[[Analysis], str]
+    numbers: tuple[str, ...] = ()

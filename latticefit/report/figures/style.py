@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from contextlib import contextmanager
+from itertools import cycle
 from math import ceil
 from typing import Any, Final
 
@@ -21,7 +22,7 @@ __all__ = [
     "FIT_COLOUR",
     "WIDTH_MM",
     "component_label",
-    "component_look",
+    "component_looks",
     "figure_style",
     "heat_capacity_label",
     "legend_above",
@@ -101,12 +102,14 @@ def figure_style() -> Iterator[None]:
         yield
 
 
-def component_look(name: str) -> tuple[str, Any]:
-    """Return colour and dash pattern of a component of the model, e.g. ``einstein2``."""
-    kind, number = name.rstrip("0123456789"), name[len(name.rstrip("0123456789")) :]
-    if number in ("", "1") and kind in _COMPONENT_LOOKS:
-        return _COMPONENT_LOOKS[kind]
-    return _OTHER_LOOKS[(int(number or 1) + len(kind)) % len(_OTHER_LOOKS)]
+def component_looks(names: Iterable[str]) -> dict[str, tuple[str, Any]]:
+    """Return colour and dash pattern of each component of a model, e.g. ``debye`` and ``einstein2``.
+
+    Whatever has no look of its own takes the next of the others, so that no two components look alike while there are
+    enough of these.
+    """
+    others = cycle(_OTHER_LOOKS)
+    return {name: _COMPONENT_LOOKS.get(name.removesuffix("1")) or next(others) for name in names}
 
 
 def component_label(name: str) -> str:

@@ -29,6 +29,7 @@ _LABELS = {
     "theta_debye_moment_1": "",
     "theta_debye_moment_2": r"$2$",
 }
+_MOMENT = r"moment $m$"
 # Points whose bar is a longer part of theta do not stretch the frame: at T = theta 1 % of C is 10 % of theta.
 _LARGEST_BAR = 0.04
 _ENOUGH = 5  # sharp points; with fewer the frame holds the middle eighty percent of all
@@ -112,7 +113,7 @@ def _draw_margin(axes: Axes, values: list[DerivedValue]) -> tuple[tuple[Errorbar
     axes.set_xticks(places, [_LABELS[each.key] for each in values])
     axes.tick_params(axis="x", labelsize=6.5, top=False, length=2)
     axes.tick_params(axis="y", labelleft=False)
-    axes.set_xlabel(r"moment $m$")
+    axes.set_xlabel(_MOMENT)
     return tuple(drawn), tuple(withheld)
 
 
@@ -149,4 +150,4 @@ def alt(analysis: Analysis) -> str:
     return f"Calorimetric Debye temperature of each point against temperature: {limit}{span}."
 
 
-FIGURE = ReportFigure("theta_debye", "Debye temperature against temperature", 72.0, draw, alt)
+FIGURE = ReportFigure("theta_debye", "Debye temperature against temperature", 72.0, draw, alt, numbers=(_MOMENT,))
