@@ -13,7 +13,7 @@ __all__ = ["LATER_COMMANDS", "LATER_KEYS", "LATER_OPTIONS"]
 LATER_KEYS: Mapping[str, frozenset[str]] = MappingProxyType(
     {
         "": frozenset(("addenda",)),
-        "sample": frozenset(("density", "insulator", "scale_uncertainty")),
+        "sample": frozenset(("density", "scale_uncertainty")),
         "run": frozenset(("split_by",)),
         "model": frozenset[str](),
         "report": frozenset[str](),

@@ -131,6 +131,7 @@ def build_sample(settings: SampleSettings, fallback_name: str) -> Sample:
         molar_mass=molar_mass,
         mass=_positive(settings.mass, "kg", "mass"),
         melting_point=_positive(settings.melting_point, "K", "melting point"),
+        insulator=settings.insulator,
     )
 
 

@@ -7,10 +7,10 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from ..models import Parametrisation, jacobian
-from ..records import FloatArray, Frozen
+from ..models import Parametrisation, jacobian, partials
+from ..records import FloatArray, Frozen, HeldParameters
 
-__all__ = ["Covariance", "at_bounds", "covariance"]
+__all__ = ["Covariance", "at_bounds", "carried_covariance", "covariance"]
 
 _NULL = 1e-8  # singular values of the unit-column Jacobian below this, relative to the largest, are not determined
 _NULL_SHARE = 0.1  # a parameter with at least this share of such a direction is undetermined
@@ -63,6 +63,45 @@ def covariance(
     condition = float(np.linalg.cond(correlation)) if kept.all() else float("inf")
     matrix = par.matrix()
     return Covariance(matrix @ inverse @ matrix.T, condition, par.free[lost])
+
+
+def carried_covariance(
+    par: Parametrisation,
+    values: FloatArray,
+    T: FloatArray,
+    measured: FloatArray,
+    sigma: FloatArray,
+    held: HeldParameters,
+) -> FloatArray:
+    """What the uncertainty of held parameters adds to the covariance of all parameters, shape (p, p).
+
+    A held parameter that was a little off would have moved the free ones by dx = -(J'J)^-1 J' J_held d(held) (implicit
+    differentiation of the normal equations; law of propagation of uncertainty, JCGM 100:2008, section 5.2).
+
+    Parameters
+    ----------
+    par : Parametrisation
+    values : ndarray, shape (p,)
+    T, measured, sigma : ndarray, shape (n,)
+        K, J/(mol K), J/(mol K).
+    held : HeldParameters
+        Those of its names that `par` holds are taken.
+    """
+    names = par.model.names
+    kept = [k for k, name in enumerate(held.names) if name in names and names.index(name) not in par.free]
+    positions = [names.index(held.names[k]) for k in kept]
+    own = np.zeros((len(names), len(positions)))
+    own[positions, np.arange(len(positions))] = 1.0
+    if par.tied is not None:
+        own[par.tied] = [-1.0 if i in par.others else 0.0 for i in positions]
+    sensitivity = own
+    if par.free.size:
+        J = jacobian(par, values[par.free], T, measured, sigma)
+        moved = -(partials(par.model, T, values) / sigma).T @ own
+        scale = np.where((norms := np.linalg.norm(J, axis=0)) > 0, norms, 1.0)
+        shift = -np.linalg.lstsq(J / scale, moved, rcond=_NULL)[0] / scale[:, None]
+        sensitivity = own + par.matrix() @ shift
+    return np.asarray(sensitivity @ held.covariance[np.ix_(kept, kept)] @ sensitivity.T)
 
 
 def at_bounds(

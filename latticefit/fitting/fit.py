@@ -10,8 +10,16 @@ from numpy.typing import NDArray
 
 from ..errors import FitError, InputError, nearest
 from ..models import Model, Parametrisation, build_model
-from ..records import FitRecord, FloatArray, ModelSettings, ParameterStatus, ParameterValue, PreparedData
-from .covariance import Covariance, at_bounds, covariance
+from ..records import (
+    FitRecord,
+    FloatArray,
+    HeldParameters,
+    ModelSettings,
+    ParameterStatus,
+    ParameterValue,
+    PreparedData,
+)
+from .covariance import Covariance, at_bounds, carried_covariance, covariance
 from .setup import default_mode_sum, parametrise
 from .solve import Solution, minimise_with_lmfit
 from .start import SearchResult, search
@@ -29,7 +37,7 @@ def requested_model(settings: ModelSettings) -> Model:
     """
     if settings.terms is None:
         raise InputError("no model is named; give its terms, e.g. 'debye + einstein'")
-    model = build_model(settings.terms, settings.cp_cv)
+    model = build_model(settings.terms, settings.cp_cv or "none")
     for what, given in (("start", settings.start), ("fix", settings.fix), ("bounds", settings.bounds)):
         for name in given:
             if name not in model.names:
@@ -40,7 +48,9 @@ def requested_model(settings: ModelSettings) -> Model:
     return model
 
 
-def fit_model(prepared: PreparedData, settings: ModelSettings, seed: int = 0) -> FitRecord:
+def fit_model(
+    prepared: PreparedData, settings: ModelSettings, seed: int = 0, held: HeldParameters | None = None
+) -> FitRecord:
     """Fit one model, without a guess.
 
     Parameters
@@ -50,6 +60,8 @@ def fit_model(prepared: PreparedData, settings: ModelSettings, seed: int = 0) ->
         With `terms` named.
     seed : int
         For the few starts that are drawn at random.
+    held : HeldParameters, optional
+        Uncertainty of fixed parameters, carried on to everything; without it they are taken as exact.
 
     Returns
     -------
@@ -67,10 +79,15 @@ def fit_model(prepared: PreparedData, settings: ModelSettings, seed: int = 0) ->
     model = requested_model(settings)
     sample = prepared.measurement.sample
     data = (prepared.temperature, prepared.heat_capacity, prepared.sigma)
-    if prepared.measurement.quantity == "Cv" and settings.cp_cv != "none":
+    if prepared.measurement.quantity == "Cv" and model.cp_cv.parameter is not None:
         raise InputError(
             f"the data are Cv, so there is no Cp-Cv to describe; leave --cp-cv {settings.cp_cv} out "
             "(or say --quantity Cp if they are heat capacities at constant pressure)"
+        )
+    if sample.insulator and any(each.term.name == "electronic" for each in model.placed):
+        raise InputError(
+            f"the sample is declared an insulator, but {model.expression!r} has an electronic term; leave one of the "
+            "two out"
         )
     par = parametrise(model, settings, sample, data[0], data[1])
     if data[0].size < par.free.size:
@@ -85,11 +102,16 @@ def fit_model(prepared: PreparedData, settings: ModelSettings, seed: int = 0) ->
             f"{model.expression!r} could not be fitted to these data: {solution.message}; use fewer terms, or check "
             "bounds and fixed values"
         )
-    return _record(prepared, settings, model, found, solution)
+    return _record(prepared, settings, model, found, solution, held)
 
 
 def _record(
-    prepared: PreparedData, settings: ModelSettings, model: Model, found: SearchResult, solution: Solution
+    prepared: PreparedData,
+    settings: ModelSettings,
+    model: Model,
+    found: SearchResult,
+    solution: Solution,
+    held: HeldParameters | None,
 ) -> FitRecord:
     data = (prepared.temperature, prepared.heat_capacity, prepared.sigma)
     par, values = solution.parametrisation, solution.values
@@ -100,6 +122,8 @@ def _record(
     reduced = solution.chi_square / dof if dof > 0 else 1.0
     scaled = prepared.sigma_kind == "estimated"
     matrix = absolute.matrix * (reduced if scaled else 1.0)
+    if held is not None:
+        matrix = matrix + carried_covariance(interior, values, *data, held)
     status = _statuses(par, bound, absolute, values, np.sqrt(np.diag(matrix)))
     order = _sorted_order(model, values, settings)
     u_scale = 1.0 if scaled else float(np.sqrt(max(1.0, reduced)))

@@ -98,6 +98,12 @@ def _real(value: Any) -> float | None:
         return math.inf
 
 
+def _flag(value: Any, where: str) -> bool:
+    if not isinstance(value, bool):
+        raise wrong(where, "true or false without quotes", value)
+    return value
+
+
 def _positive(value: Any, where: str) -> float:
     number = _number(value, where)
     if number <= 0:
@@ -240,6 +246,7 @@ SAMPLE: Final[Mapping[str, Converter]] = MappingProxyType(
         "molar_mass": _quantity_like("101.96 g/mol"),
         "mass": _quantity_like("12.3 mg"),
         "melting_point": _quantity_like("1358 K"),
+        "insulator": _flag,
     }
 )
 RUN: Final[Mapping[str, Converter]] = MappingProxyType(
@@ -264,6 +271,8 @@ MODEL: Final[Mapping[str, Converter]] = MappingProxyType(
         "cp_cv": _text,
         "start": _by_name(_number),
         "fix": _by_name(_number),
+        "fix_u": _by_name(_positive),
+        "fix_from": _text,
         "bounds": _by_name(_bounds),
     }
 )

@@ -109,7 +109,8 @@ def _runs(content: Any, shown: str) -> tuple[RunSettings, ...]:
 
 
 def _refuse_outside(sheet: Sheet, folder: Path, shown: str) -> None:
-    named = [run.file for run in sheet.runs] + ([sheet.report.out] if sheet.report.out else [])
+    named = [run.file for run in sheet.runs]
+    named += [name for name in (sheet.report.out, sheet.model.fix_from) if name]
     try:
         root = folder.resolve()
         outside = next((name for name in named if not (root / name).resolve().is_relative_to(root)), None)

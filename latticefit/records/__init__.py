@@ -9,20 +9,44 @@ from __future__ import annotations
 
 from .base import Basis, FloatArray, Frozen, Level, ParameterStatus, Quantity, ReadOnly, SigmaKind
 from .data import ExcludedRow, Measurement, PreparedData, Reading, Repair, Sample
-from .derived import Analysis, Derived, DerivedValue, PointwiseTheta, Provenance, ThermodynamicTable
-from .findings import Diagnosis, FitRecord, NamedWarning, ParameterValue, ResidualBand, ResidualStatistics, ValidityFact
+from .derived import (
+    Analysis,
+    Derived,
+    DerivedValue,
+    EnergyDifference,
+    PointwiseTheta,
+    Provenance,
+    SavedResult,
+    ThermodynamicTable,
+)
+from .findings import (
+    Candidate,
+    Comparison,
+    Diagnosis,
+    FitRecord,
+    HeldParameters,
+    NamedWarning,
+    ParameterValue,
+    ResidualBand,
+    ResidualStatistics,
+    ValidityFact,
+)
 from .request import ModelSettings, ReportSettings, RunSettings, SampleSettings, Sheet
 
 __all__ = [
     "Analysis",
     "Basis",
+    "Candidate",
+    "Comparison",
     "Derived",
     "DerivedValue",
     "Diagnosis",
+    "EnergyDifference",
     "ExcludedRow",
     "FitRecord",
     "FloatArray",
     "Frozen",
+    "HeldParameters",
     "Level",
     "Measurement",
     "ModelSettings",
@@ -42,6 +66,7 @@ __all__ = [
     "RunSettings",
     "Sample",
     "SampleSettings",
+    "SavedResult",
     "Sheet",
     "SigmaKind",
     "ThermodynamicTable",

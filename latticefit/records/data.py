@@ -20,7 +20,10 @@ _UNITS: Mapping[Basis, str] = {"mol": "J/(mol K)", "gram": "J/(g K)", "sample": 
 
 @dataclass(frozen=True)
 class Sample:
-    """The sample: atoms per formula unit, molar mass in kg/mol, mass in kg, melting point in K; None where unknown."""
+    """The sample: atoms per formula unit, molar mass in kg/mol, mass in kg, melting point in K; None where unknown.
+
+    `insulator` is True where the user declared that there are no conduction electrons.
+    """
 
     name: str
     formula: str | None = None
@@ -28,6 +31,7 @@ class Sample:
     molar_mass: float | None = None
     mass: float | None = None
     melting_point: float | None = None
+    insulator: bool = False
 
 
 @dataclass(frozen=True)

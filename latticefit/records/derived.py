@@ -7,11 +7,20 @@ from dataclasses import dataclass
 from typing import Literal
 
 from .base import FloatArray, Frozen, Quantity
-from .data import Measurement, PreparedData
-from .findings import Diagnosis, FitRecord, NamedWarning
+from .data import Measurement, PreparedData, Sample
+from .findings import Comparison, Diagnosis, FitRecord, NamedWarning
 from .request import Sheet
 
-__all__ = ["Analysis", "Derived", "DerivedValue", "PointwiseTheta", "Provenance", "ThermodynamicTable"]
+__all__ = [
+    "Analysis",
+    "Derived",
+    "DerivedValue",
+    "EnergyDifference",
+    "PointwiseTheta",
+    "Provenance",
+    "SavedResult",
+    "ThermodynamicTable",
+]
 
 
 @dataclass(frozen=True)
@@ -38,9 +47,13 @@ class DerivedValue:
 
 @dataclass(frozen=True, eq=False)
 class ThermodynamicTable(Frozen):
-    """Thermodynamic functions on a grid, per mole of formula unit, shape (m,) each; NaN where not given.
+    """Thermodynamic functions on a grid, shape (m,) each; NaN where not given.
 
-    `energy` is H(T)-H(0) with quantity Cp and U(T)-U(0) with Cv, J/mol; `free_energy_function` is -(G(T)-H(0))/T,
+    Per mole of formula unit, or per gram or kilogram where `per` says so.
+
+
+    `energy` is H(T)-H(0) with quantity Cp and U(T)-U(0) with Cv, J/mol; `energy_from_standard` is the same from
+    298.15 K on, H(T)-H(298.15 K); `free_energy_function` is -(G(T)-H(0))/T,
     respectively -(F(T)-U(0))/T, J/(mol K). `..._u` are standard uncertainties that latticefit stands behind (NaN
     where withheld, with `u_reasons`), `..._u_fit` those of the covariance. `components` holds the heat capacity of
     each term and of Cp-Cv, J/(mol K).
@@ -57,6 +70,8 @@ class ThermodynamicTable(Frozen):
     entropy: FloatArray
     entropy_u: FloatArray
     entropy_u_fit: FloatArray
+    energy_from_standard: FloatArray
+    energy_from_standard_u: FloatArray
     free_energy_function: FloatArray
     free_energy_function_u: FloatArray
     free_energy_function_u_fit: FloatArray
@@ -64,6 +79,25 @@ class ThermodynamicTable(Frozen):
     origin: tuple[Literal["measured", "extrapolated_below", "extrapolated_above"], ...]
     u_reasons: tuple[str | None, ...]
     components: Mapping[str, FloatArray]
+    per: Literal["mol", "g", "kg"] = "mol"
+
+
+@dataclass(frozen=True)
+class EnergyDifference:
+    """H(high)-H(low) between two temperatures (U with quantity Cv) and S(high)-S(low), with u; None where withheld.
+
+    Per mole of formula unit, gram or kilogram as `per` says; J or J/K per that amount.
+    """
+
+    low: float
+    high: float
+    energy: float
+    energy_u: float | None
+    entropy: float
+    entropy_u: float | None
+    reason: str | None
+    quantity: Quantity
+    per: Literal["mol", "g", "kg"]
 
 
 @dataclass(frozen=True, eq=False)
@@ -117,5 +151,17 @@ class Analysis:
     diagnosis: Diagnosis
     derived: Derived
     warnings: tuple[NamedWarning, ...]
-    chosen_because: str
+    comparison: Comparison
     provenance: Provenance
+
+
+@dataclass(frozen=True)
+class SavedResult:
+    """A result read back from its file: the fit, its sample, the range of the points (K), and the verdict."""
+
+    sample: Sample
+    quantity: Quantity
+    lowest: float
+    highest: float
+    fit: FitRecord
+    describes: bool

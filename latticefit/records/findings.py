@@ -8,8 +8,11 @@ from typing import Literal
 from .base import FloatArray, Frozen, Level, ParameterStatus
 
 __all__ = [
+    "Candidate",
+    "Comparison",
     "Diagnosis",
     "FitRecord",
+    "HeldParameters",
     "NamedWarning",
     "ParameterValue",
     "ResidualBand",
@@ -173,3 +176,42 @@ class Diagnosis(Frozen):
     describes: bool
     verdict: str
     warnings: tuple[NamedWarning, ...]
+
+
+@dataclass(frozen=True, eq=False)
+class HeldParameters(Frozen):
+    """Fixed parameters that carry an uncertainty of their own: names, and covariance in SI, shape (h, h)."""
+
+    names: tuple[str, ...]
+    covariance: FloatArray
+
+
+@dataclass(frozen=True)
+class Candidate:
+    """One candidate model on the data of a comparison.
+
+    `delta_aicc` is relative to the best plausible candidate; `weight` is the Akaike weight among the plausible ones
+    (0 for the others); `reasons` say why a candidate is not plausible.
+    """
+
+    terms: str
+    mode_sum: Literal["fixed", "free"]
+    cp_cv: str
+    free_parameters: int
+    chi_square: float
+    reduced_chi_square: float | None
+    aicc: float | None
+    bic: float
+    delta_aicc: float | None
+    weight: float
+    plausible: bool
+    reasons: tuple[str, ...]
+
+
+@dataclass(frozen=True)
+class Comparison:
+    """Candidates on the same points with the same sigmas, the position of the chosen one, and why, in one sentence."""
+
+    candidates: tuple[Candidate, ...]
+    chosen: int
+    because: str

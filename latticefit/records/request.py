@@ -21,6 +21,7 @@ class SampleSettings:
     molar_mass: str | None = None
     mass: str | None = None
     melting_point: str | None = None
+    insulator: bool = False
 
 
 @dataclass(frozen=True)
@@ -46,14 +47,21 @@ class RunSettings:
 
 @dataclass(frozen=True)
 class ModelSettings(Frozen):
-    """The `[model]` table: which terms, how the modes are summed, Cp-Cv, and what the user holds by name."""
+    """The `[model]` table: which terms, how the modes are summed, Cp-Cv, and what the user holds by name.
+
+    `terms` None compares the ladder of candidates; `cp_cv` None leaves the form to it (no form with named terms).
+    `fix_u` holds standard uncertainties of fixed parameters, `fix_from` the path of a saved result whose lattice is
+    held.
+    """
 
     terms: str | None = None
     mode_sum: Literal["fixed", "free"] | None = None
-    cp_cv: str = "none"
+    cp_cv: str | None = None
     start: Mapping[str, float] = field(default_factory=empty)
     fix: Mapping[str, float] = field(default_factory=empty)
     bounds: Mapping[str, tuple[float, float]] = field(default_factory=lambda: ReadOnly({}))
+    fix_u: Mapping[str, float] = field(default_factory=empty)
+    fix_from: str | None = None
 
 
 @dataclass(frozen=True)
