@@ -14,7 +14,7 @@ from ._version import __version__
 
 if TYPE_CHECKING:
     from . import functions, models
-    from .analysis import Fit, fit, read
+    from .analysis import Fit, Saved, fit, load, rank, read
     from .errors import FitError, InputError, LatticefitError
     from .records import Measurement
 
@@ -24,10 +24,13 @@ __all__ = [
     "InputError",
     "LatticefitError",
     "Measurement",
+    "Saved",
     "__version__",
     "fit",
     "functions",
+    "load",
     "models",
+    "rank",
     "read",
 ]
 
@@ -37,6 +40,9 @@ _HOME = {
     "InputError": "errors",
     "LatticefitError": "errors",
     "Measurement": "records",
+    "Saved": "analysis",
+    "load": "analysis",
+    "rank": "analysis",
     "fit": "analysis",
     "read": "analysis",
 }

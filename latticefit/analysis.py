@@ -4,25 +4,25 @@ from __future__ import annotations
 
 import platform
 from collections.abc import Callable, Iterable, Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from datetime import UTC, datetime
 from importlib.metadata import PackageNotFoundError, version
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, Literal
 
-import numpy as np
-
 from ._version import __version__
-from .deriving import derive, functions_table
+from .comparing import compare
+from .deriving import derive
 from .diagnosing import diagnose
 from .errors import InputError
-from .fitting import fit_model
+from .held import resolve_held
+from .notebook import Fit, Saved
 from .preparing import prepare
 from .reading import parse_grid, read_measurement
 from .reading.settings import MODEL, REPORT, RUN, SAMPLE, checked, temperatures, wrong
 from .records import (
     Analysis,
-    FloatArray,
+    Comparison,
     Measurement,
     ModelSettings,
     NamedWarning,
@@ -36,9 +36,8 @@ from .records import (
 
 if TYPE_CHECKING:
     import pandas as pd
-    from matplotlib.figure import Figure
 
-__all__ = ["Fit", "analyse", "fit", "read"]
+__all__ = ["Fit", "Saved", "analyse", "fit", "load", "rank", "ranked", "read"]
 
 _PACKAGES = ("numpy", "scipy", "lmfit", "matplotlib", "pandas", "pint", "periodictable")
 _GRAVITY = {"stop": 0, "warn": 1, "note": 2}
@@ -49,7 +48,11 @@ Interval = str | tuple[float, float]
 
 
 def analyse(
-    sheet: Sheet, measurement: Measurement, command: str = "", progress: Callable[[str], None] | None = None
+    sheet: Sheet,
+    measurement: Measurement,
+    command: str = "",
+    progress: Callable[[str], None] | None = None,
+    base: Path | None = None,
 ) -> Analysis:
     """Prepare, fit, diagnose and derive: everything between reading and the report.
 
@@ -62,27 +65,39 @@ def analyse(
         What was typed, for the provenance.
     progress : callable, optional
         Called with a few words as each stage begins.
+    base : Path, optional
+        Folder that the path of a saved result in the sheet starts from; the current one by default.
     """
     tell = progress or (lambda words: None)
+    settings, held = resolve_held(sheet.model, base or Path())
     prepared = prepare(measurement)
-    tell(f"fitting {sheet.model.terms or ''} to {prepared.temperature.size} points")
-    record = fit_model(prepared, sheet.model, sheet.report.random_seed)
-    diagnosis = diagnose(prepared, record)
+    compared = compare(prepared, settings, sheet.report.random_seed, held, tell)
+    diagnosis = diagnose(prepared, compared.fit)
     tell("deriving thermodynamic functions")
-    derived = derive(
-        prepared, record, diagnosis.describes, parse_grid(sheet.report.grid) if sheet.report.grid else None
-    )
+    grid = parse_grid(sheet.report.grid) if sheet.report.grid else None
+    derived = derive(prepared, compared.fit, diagnosis.describes, grid)
     return Analysis(
-        sheet=sheet,
+        sheet=replace(sheet, model=replace(sheet.model, fix_from=settings.fix_from)),
         measurement=measurement,
         prepared=prepared,
-        fit=record,
+        fit=compared.fit,
         diagnosis=diagnosis,
         derived=derived,
         warnings=_gravest_first((*diagnosis.warnings, *derived.warnings)),
-        chosen_because="the terms were named by the user",
+        comparison=compared.comparison,
         provenance=_provenance(sheet.report.random_seed, command),
     )
+
+
+def ranked(
+    sheet: Sheet,
+    measurement: Measurement,
+    progress: Callable[[str], None] | None = None,
+    base: Path | None = None,
+) -> Comparison:
+    """Compare the candidates of the ladder; parameters as `analyse`."""
+    settings, held = resolve_held(replace(sheet.model, terms=None), base or Path())
+    return compare(prepare(measurement), settings, sheet.report.random_seed, held, progress).comparison
 
 
 def _gravest_first(warnings: Iterable[NamedWarning]) -> tuple[NamedWarning, ...]:
@@ -109,6 +124,7 @@ def read(
     molar_mass: str | None = None,
     mass: str | None = None,
     melting_point: str | None = None,
+    insulator: bool = False,
     temperature: str | int | None = None,
     heat_capacity: str | int | None = None,
     sigma: str | int | None = None,
@@ -124,6 +140,8 @@ def read(
     files : path or several
     formula, name, atoms, molar_mass, mass, melting_point
         The sample; quantities with unit are text, e.g. ``"12.3 mg"``, ``"101.96 g/mol"``, ``"1358 K"``.
+    insulator : bool
+        True where there are no conduction electrons.
     temperature, heat_capacity : str or int
         Column: a header, or a number counted from 1; recognised when left out.
     sigma : str or int
@@ -150,6 +168,7 @@ def read(
         "molar_mass": molar_mass,
         "mass": mass,
         "melting_point": melting_point,
+        "insulator": insulator,
     }
     how = {
         "quantity": quantity,
@@ -182,29 +201,37 @@ def fit(
     measurement: Measurement,
     terms: str | None = None,
     *,
-    cp_cv: str = "none",
+    cp_cv: str | None = None,
     mode_sum: Literal["fixed", "free"] | None = None,
     start: Mapping[str, float] | None = None,
     fix: Mapping[str, float] | None = None,
+    fix_u: Mapping[str, float] | None = None,
+    fix_from: str | Path | None = None,
     bounds: Mapping[str, tuple[float, float] | str] | None = None,
     window: Interval | Sequence[Interval] = (),
     mask: Interval | Sequence[Interval] = (),
     grid: str | float | Iterable[float] | None = None,
     random_seed: int = 0,
 ) -> Fit:
-    """Fit a lattice model to a measurement.
+    """Fit a lattice model to a measurement, or choose one from the ladder of candidates.
 
     Parameters
     ----------
     measurement : Measurement
         From `read`.
     terms : str
-        Model expression, e.g. ``"debye + einstein + electronic"``.
+        Model expression, e.g. ``"debye + einstein + electronic"``; when left out, candidates are compared and the
+        reason for the choice stands in ``fit.analysis.comparison``.
     cp_cv : {"none", "nernst-lindemann", "anharmonic"}
+        None leaves it to the comparison; with named terms it means "none".
     mode_sum : {"fixed", "free"}
         Whether the modes are held at 3 per atom; fixed when the atoms are known.
     start, fix, bounds : mapping by parameter name
         SI units: K, J/(mol K^2), mol/J, 1/K; bounds are (low, high), a side -inf or inf where it is open.
+    fix_u : mapping by parameter name
+        Standard uncertainties of fixed parameters, carried on to every u.
+    fix_from : path
+        A saved result whose lattice is held, with its covariance carried on.
     window, mask : str or (low, high), or several
         Closed intervals in K, e.g. ``"2:300"`` or ``(2, 300)``.
     grid : str or numbers
@@ -220,10 +247,73 @@ def fit(
     InputError
         One sentence: what is wrong and how to mend it.
     """
+    model = {
+        "terms": terms,
+        "mode_sum": mode_sum,
+        "cp_cv": cp_cv,
+        "start": start,
+        "fix": fix,
+        "fix_u": fix_u,
+        "fix_from": str(fix_from) if isinstance(fix_from, Path) else fix_from,
+        "bounds": bounds,
+    }
+    report = {"grid": None if grid is None else _grid(grid), "random_seed": random_seed}
+    sheet, narrowed, call = _request(measurement, model, window, mask, report)
+    return Fit(analyse(sheet, narrowed, call))
+
+
+def rank(
+    measurement: Measurement,
+    *,
+    cp_cv: str | None = None,
+    mode_sum: Literal["fixed", "free"] | None = None,
+    window: Interval | Sequence[Interval] = (),
+    mask: Interval | Sequence[Interval] = (),
+    random_seed: int = 0,
+) -> pd.DataFrame:
+    """Compare candidate models on the same points with the same uncertainties.
+
+    Parameters
+    ----------
+    measurement : Measurement
+        From `read`.
+    cp_cv, mode_sum, window, mask, random_seed
+        As for `fit`.
+
+    Returns
+    -------
+    DataFrame
+        One row for each candidate, by AICc, plausible ones first; ``chosen`` marks the one that `fit` would take, and
+        ``attrs["because"]`` says why.
+    """
+    from .report import ranking_frame
+
+    model = {"mode_sum": mode_sum, "cp_cv": cp_cv}
+    sheet, narrowed, _ = _request(measurement, model, window, mask, {"random_seed": random_seed})
+    return ranking_frame(ranked(sheet, narrowed))
+
+
+def load(path: str | Path) -> Saved:
+    """Read a saved result: a result.json, or the report folder that holds it.
+
+    Raises
+    ------
+    InputError
+        When it is no latticefit result.
+    """
+    from .report import read_result
+
+    if not isinstance(path, (str, Path)):
+        raise wrong("path", "the path of a result.json or a report folder", path)
+    return Saved(read_result(Path(path)))
+
+
+def _request(
+    measurement: Measurement, model: Mapping[str, Any], window: Any, mask: Any, report: Mapping[str, Any]
+) -> tuple[Sheet, Measurement, str]:
+    """The sheet of a call from Python, the measurement with its windows, and the call in words."""
     if not isinstance(measurement, Measurement):
         raise wrong("measurement", "a Measurement from latticefit.read", measurement)
-    model = {"terms": terms, "mode_sum": mode_sum, "cp_cv": cp_cv, "start": start, "fix": fix, "bounds": bounds}
-    report = {"grid": None if grid is None else _grid(grid), "random_seed": random_seed}
     points = checked({"window": _several(window), "mask": _several(mask)}, RUN)
     settings = ModelSettings(**checked(model, MODEL))
     readings = tuple(replace(each, settings=_narrowed(each.settings, points)) for each in measurement.readings)
@@ -233,7 +323,7 @@ def fit(
         settings,
         ReportSettings(**checked(report, REPORT)),
     )
-    return Fit(analyse(sheet, replace(measurement, readings=readings), _call(settings, points, sheet.report)))
+    return sheet, replace(measurement, readings=readings), _call(settings, points, sheet.report)
 
 
 def _several(given: Any) -> Any:
@@ -252,96 +342,12 @@ def _narrowed(run: RunSettings, points: Mapping[str, tuple[tuple[float, float], 
 def _call(model: ModelSettings, points: Mapping[str, tuple[tuple[float, float], ...]], report: ReportSettings) -> str:
     """The call of `fit` in short, for the provenance: what is not at its default."""
     words = ["measurement", repr(model.terms)]
-    named = {name: getattr(model, name) for name in ("mode_sum", "cp_cv", "start", "fix", "bounds")}
+    named = {
+        name: getattr(model, name) for name in ("mode_sum", "cp_cv", "start", "fix", "fix_u", "fix_from", "bounds")
+    }
     named |= {**points, "grid": report.grid, "random_seed": report.random_seed}
     for name, value in named.items():
         if value and value != getattr(_DEFAULTS, name, None):
             text = repr(value)
             words.append(f"{name}={text if len(text) <= _LONGEST_ARGUMENT else text[:_LONGEST_ARGUMENT] + '...'}")
     return f"latticefit.fit({', '.join(words)})"
-
-
-@dataclass(frozen=True, eq=False, repr=False)
-class Fit:
-    """A finished fit: DataFrames, figures and the report of one `Analysis`."""
-
-    analysis: Analysis
-
-    @property
-    def parameters(self) -> pd.DataFrame:
-        """Value, u, u_fit, unit and status of every parameter."""
-        from .report import parameters_frame
-
-        return parameters_frame(self.analysis)
-
-    @property
-    def characteristic_temperatures(self) -> pd.DataFrame:
-        """theta_D(T->0), moments and equivalent Einstein temperatures, K."""
-        from .report import characteristic_temperatures_frame
-
-        return characteristic_temperatures_frame(self.analysis)
-
-    @property
-    def residuals(self) -> pd.DataFrame:
-        """Every point with model, residuals, and whether it was used or why not."""
-        from .report import residuals_frame
-
-        return residuals_frame(self.analysis)
-
-    @property
-    def warnings(self) -> pd.DataFrame:
-        """The named warnings, gravest first."""
-        from .report import warnings_frame
-
-        return warnings_frame(self.analysis)
-
-    def table(self, temperature: float | Iterable[float] | FloatArray | str | None = None) -> pd.DataFrame:
-        """Thermodynamic functions at temperatures in K (numbers or a grid text); the standard grid when left out."""
-        from .report import functions_frame
-
-        if temperature is None:
-            return functions_frame(self.analysis.derived.table)
-        wanted = temperatures(temperature, "temperature")
-        fitted = self.analysis.prepared
-        return functions_frame(
-            functions_table(
-                self.analysis.fit,
-                np.array(wanted),
-                float(fitted.temperature[0]),
-                float(fitted.temperature[-1]),
-                fitted.measurement.quantity,
-                self.analysis.diagnosis.describes,
-            )
-        )
-
-    def figure(self, name: str) -> Figure:
-        """Draw one of the report's figures, e.g. ``"residuals"``."""
-        from .report import draw_figure
-
-        if not isinstance(name, str):
-            raise wrong("name", "the name of a figure", name)
-        return draw_figure(name, self.analysis)
-
-    def save(self, out: str | Path, *, replace: bool = False, figures: str = "svg") -> Path:
-        """Write the report folder and return its path."""
-        from .report import write_report
-
-        if not isinstance(out, (str, Path)) or not str(out).strip():
-            raise wrong("out", "a folder to write to", out)
-        checked({"figures": figures}, REPORT)
-        return write_report(self.analysis, Path(out), replace, figures)
-
-    def __repr__(self) -> str:
-        from .report import summary_text
-
-        return summary_text(self.analysis, None).rstrip()
-
-    def __str__(self) -> str:
-        from .report import text_report
-
-        return text_report(self.analysis)
-
-    def _repr_html_(self) -> str:
-        from .report import html_summary
-
-        return html_summary(self.analysis)

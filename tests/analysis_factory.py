@@ -15,6 +15,8 @@ from invented_solid import Truth, characteristic, thermodynamic_table, theta_of
 
 from latticefit.records import (
     Analysis,
+    Candidate,
+    Comparison,
     Derived,
     DerivedValue,
     Diagnosis,
@@ -201,9 +203,13 @@ def build(case: Case, folder: Path, seed: int = 5) -> Analysis:
         f"latticefit fit halden.csv --formula {case.formula} --terms '{terms}'",
     )
     derived = _derived(case, prepared, warnings, low, high)
-    return Analysis(
-        settings, measurement, prepared, fit, diagnosis, derived, warnings, "the terms were given", provenance
-    )
+    return Analysis(settings, measurement, prepared, fit, diagnosis, derived, warnings, _one_candidate(fit), provenance)
+
+
+def _one_candidate(fit: FitRecord) -> Comparison:
+    reduced = fit.chi_square / fit.degrees_of_freedom
+    only = Candidate(fit.terms, fit.mode_sum, fit.cp_cv, 4, fit.chi_square, reduced, 90.0, 95.0, 0.0, 1.0, True, ())
+    return Comparison((only,), 0, "the terms were given")
 
 
 def _derived(

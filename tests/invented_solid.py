@@ -83,6 +83,8 @@ def thermodynamic_table(
         quantity=quantity,  # type: ignore[arg-type]
         temperature=T,
         entropy_fraction_below_data=np.minimum(1.0, np.interp(low, fine, entropy) / S),
+        energy_from_standard=H - float(np.interp(298.15, T, H)),
+        energy_from_standard_u=np.where(withheld, np.nan, 1.1e-3 * H),
         origin=tuple(str(each) for each in origin),  # type: ignore[arg-type]
         u_reasons=tuple(BELOW if each else None for each in withheld),
         components=truth.components(T),

@@ -87,7 +87,6 @@ def test_wrong_files(files: Any, sentence: str) -> None:
     ("given", "sentence"),
     [
         ({"terms": 3}, "terms must be a text in quotes, not 3"),
-        ({"terms": None}, "no model is named; give its terms, e.g. 'debye + einstein'"),
         ({"mode_sum": "fred"}, "mode_sum cannot be 'fred': did you mean 'free'?"),
         ({"cp_cv": 3}, "cp_cv must be a text in quotes, not 3"),
         ({"cp_cv": "fred"}, "'fred' is not a form of Cp-Cv; known are anharmonic, nernst-lindemann and none"),

@@ -117,7 +117,23 @@ def test_default_folder_is_named_after_the_file_and_not_overwritten(tmp_path: Pa
 BAD = {
     "no file": (["fit", "nothing.csv", "--terms", "debye"], "there is no such file"),
     "no words": (["fit"], "required"),
-    "no terms": (["fit", COPPER, "--formula", "Cu"], "--terms"),
+    "electrons in an insulator": (
+        ["fit", COPPER, "--formula", "Cu", "--insulator", "--terms", "debye + electronic"],
+        "declared an insulator",
+    ),
+    "strange parameter in the ladder": (
+        ["fit", COPPER, "--formula", "Cu", "--fix", "electronic_gama=7e-4"],
+        "did you mean 'electronic_gamma'",
+    ),
+    "u of a free parameter": (
+        ["fit", COPPER, "--formula", "Cu", "--terms", "debye", "--fix-u", "debye_theta=3"],
+        "not fixed",
+    ),
+    "no saved result": (["table", "nothing.json"], "no such file"),
+    "table of something else": (["table", COPPER], "not JSON"),
+    "bad amount": (["table", "nothing.json", "--per", "lb"], "--per cannot be 'lb'"),
+    "bad pair": (["table", "nothing.json", "--between", "77:4"], "77:4"),
+    "terms for rank": (["rank", COPPER, "--terms", "debye"], "has no option '--terms'"),
     "unknown command": (["fti"], "did you mean 'fit'"),
     "unknown option": (["fit", COPPER, "--trems", "debye"], "did you mean '--terms'"),
     "later option": (
@@ -204,7 +220,7 @@ def test_mistakes_get_one_sentence_and_exit_code_2(
         ("[[run]]\nfile = '../a.csv'\n", "--allow-outside"),
         ("[[run]]\nfile = 'a.csv'\n[model]\nterms = 3\n", "terms"),
         ("[[run]\n", "TOML"),
-        ("[[run]]\nfile = 'a.csv'\n[sample]\ninsulator = true\n", "not available in this version"),
+        ("[[run]]\nfile = 'a.csv'\n[sample]\ndensity = '3 g/cm3'\n", "not available in this version"),
     ],
 )
 def test_wrong_sheets_are_refused(

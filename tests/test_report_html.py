@@ -91,7 +91,7 @@ def test_a_name_that_is_markup_stays_text(metal: Analysis) -> None:
         hostile,
         provenance=replace(hostile.provenance, command=ATTACK),
         diagnosis=replace(hostile.diagnosis, verdict=ATTACK),
-        chosen_because=f'"{ATTACK}',
+        comparison=replace(hostile.comparison, because=f'"{ATTACK}'),
     )
     text = html_report(hostile, {}, ATTACK)
     assert "<script" not in text

@@ -157,7 +157,7 @@ WRONG = [
     (RUN + "[modle]\n", "unknown table [modle]; did you mean 'model'?"),
     (RUN + "[addenda]\nfile = 'b.csv'\n", "[addenda] is not available in this version; remove it"),
     (RUN + "split_by = 'B'\n", "[[run]] split_by is not available in this version; remove it"),
-    (RUN + "[sample]\ninsulator = true\n", "[sample] insulator is not available in this version; remove it"),
+    (RUN + "[sample]\ndensity = \"1 g/cm3\"\n", "[sample] density is not available in this version; remove it"),
     (RUN + "[sample]\ndensity = '8960 kg/m3'\n", "[sample] density is not available in this version; remove it"),
     (RUN + "[sample]\nscale_uncertainty = '1%'\n", "[sample] scale_uncertainty is not available in this version; "
      "remove it"),

@@ -19,6 +19,8 @@ __all__ = ["COMMANDS", "main"]
 
 COMMANDS = {
     "fit": "fit a lattice model to measured heat capacities and write a report folder",
+    "rank": "compare candidate models on the same data",
+    "table": "evaluate a saved result on any grid, without a refit",
     "inspect": "show what was read from files: columns, units, points, range, repairs",
     "verify": "compare the tool's Debye functions with a published table",
 }

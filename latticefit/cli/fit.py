@@ -38,7 +38,7 @@ def parser() -> CommandParser:
     return made
 
 
-def _from_sheet(arguments: argparse.Namespace) -> tuple[Sheet, Path, Path | None]:
+def _from_sheet(arguments: argparse.Namespace, made: CommandParser) -> tuple[Sheet, Path, Path | None]:
     """The request of a run sheet, the folder its paths start from, and the report folder that was asked for."""
     from dataclasses import replace
 
@@ -46,7 +46,7 @@ def _from_sheet(arguments: argparse.Namespace) -> tuple[Sheet, Path, Path | None
 
     if len(arguments.files) > 1:
         raise InputError("give one run sheet, or data files, not both; a sheet lists its files in [[run]] tables")
-    given = options.given_options(arguments, parser())
+    given = options.given_options(arguments, made)
     if given:
         raise InputError(f"{given[0]} is given beside a run sheet; write it into the sheet {arguments.files[0]!r}")
     path = Path(arguments.files[0])
@@ -67,6 +67,13 @@ def _from_options(arguments: argparse.Namespace) -> tuple[Sheet, Path, Path | No
     return sheet, Path(), None
 
 
+def request(arguments: argparse.Namespace, made: CommandParser) -> tuple[Sheet, Path, Path | None]:
+    """The request of a command, from a run sheet or from options: sheet, folder its paths start from, report folder."""
+    if any(options.is_sheet(file) for file in arguments.files):
+        return _from_sheet(arguments, made)
+    return _from_options(arguments)
+
+
 def _out_folder(arguments: argparse.Namespace, sheet: Sheet, from_sheet: Path | None) -> Path | None:
     """Where the report goes; None when only JSON is wanted."""
     if arguments.out is not None:
@@ -81,11 +88,9 @@ def run(arguments: argparse.Namespace) -> int:
     from ..fitting import requested_model
     from ..reading import read_measurement
 
-    any_sheet = any(options.is_sheet(file) for file in arguments.files)
-    sheet, base, from_sheet = (_from_sheet if any_sheet else _from_options)(arguments)
-    if sheet.model.terms is None:
-        raise InputError("this version fits a model that you name; give --terms, e.g. --terms 'debye + einstein'")
-    model = requested_model(sheet.model)  # a misspelt term or parameter is told before anything is read
+    sheet, base, from_sheet = request(arguments, parser())
+    if sheet.model.terms is not None:
+        requested_model(sheet.model)  # a misspelt term or parameter is told before anything is read
     out = _out_folder(arguments, sheet, from_sheet)
     if out is not None:
         from ..report import check_out_folder
@@ -96,20 +101,21 @@ def run(arguments: argparse.Namespace) -> int:
         if not arguments.quiet:
             print(f"latticefit: {words}", file=sys.stderr, flush=True)
 
-    if sheet.sample.melting_point is not None and not _holds_coefficient(sheet.model, model.names[-1]):
+    if sheet.sample.melting_point is not None and not _holds_coefficient(sheet.model):
         tell(
             "the melting point is not used: it only holds the coefficient of --cp-cv nernst-lindemann, where that is "
             "not named itself"
         )
     measurement = read_measurement(sheet.sample, sheet.runs, base)
     _tell_repairs(measurement, tell)
-    return _finish(arguments, sheet, measurement, out, tell)
+    return _finish(arguments, sheet, measurement, base, out, tell)
 
 
-def _holds_coefficient(settings: ModelSettings, name: str) -> bool:
-    """Whether a melting point has something to hold: the coefficient of this name, unless the user names it."""
+def _holds_coefficient(settings: ModelSettings) -> bool:
+    """Whether a melting point has something to hold: the Cp-Cv coefficient, unless the user names it."""
     named = {*settings.start, *settings.fix, *settings.bounds}
-    return settings.cp_cv == "nernst-lindemann" and name not in named
+    possible = settings.cp_cv == "nernst-lindemann" or (settings.cp_cv is None and settings.terms is None)
+    return possible and "nernst_lindemann_coefficient" not in named
 
 
 def _tell_repairs(measurement: Measurement, tell: Callable[[str], None]) -> None:
@@ -119,13 +125,18 @@ def _tell_repairs(measurement: Measurement, tell: Callable[[str], None]) -> None
 
 
 def _finish(
-    arguments: argparse.Namespace, sheet: Sheet, measurement: Measurement, out: Path | None, tell: Callable[[str], None]
+    arguments: argparse.Namespace,
+    sheet: Sheet,
+    measurement: Measurement,
+    base: Path,
+    out: Path | None,
+    tell: Callable[[str], None],
 ) -> int:
     from ..analysis import analyse
     from ..report import json_text, result_record, summary_text, write_report
 
     command = shlex.join(["latticefit", *sys.argv[1:]])
-    analysis = analyse(sheet, measurement, command=command, progress=tell)
+    analysis = analyse(sheet, measurement, command, tell, base)
     if out is not None:
         tell("writing the report")
         write_report(analysis, out, arguments.replace, sheet.report.figures)

@@ -41,6 +41,7 @@ def add_sample_options(parser: CommandParser) -> None:
     group.add_argument("--atoms", metavar="N", help="atoms per formula unit, where there is no formula")
     group.add_argument("--molar-mass", metavar="'VALUE UNIT'", help="e.g. '101.96 g/mol'")
     group.add_argument("--mass", metavar="'VALUE UNIT'", help="sample mass for data in J/K, e.g. '12.3 mg'")
+    group.add_argument("--insulator", action="store_true", help="no conduction electrons: no electronic term")
     group.add_argument(
         "--melting-point", metavar="'VALUE UNIT'", help="fixes the Nernst-Lindemann coefficient, e.g. '1358 K'"
     )
@@ -73,24 +74,31 @@ def add_point_options(parser: CommandParser) -> None:
     )
 
 
-def add_model_options(parser: CommandParser) -> None:
-    """Options that describe the model."""
+def add_model_options(parser: CommandParser, terms: bool = True) -> None:
+    """Options that describe the model; without `terms` for a command that compares candidates."""
     group = parser.add_argument_group("model")
-    group.add_argument("--terms", metavar="EXPRESSION", help="e.g. 'debye + 2 einstein + electronic'")
+    if terms:
+        group.add_argument(
+            "--terms", metavar="EXPRESSION", help="e.g. 'debye + 2 einstein + electronic'; without, models are compared"
+        )
     group.add_argument(
         "--mode-sum", metavar="fixed|free", help="modes held at 3 per atom (when atoms are known) or free"
     )
     group.add_argument(
-        "--cp-cv", metavar="FORM", default="none", help="none, nernst-lindemann or anharmonic (default: none)"
+        "--cp-cv", metavar="FORM", help="none, nernst-lindemann or anharmonic (with --terms: none, unless given)"
     )
     for name, shape, words in (
         ("start", "NAME=VALUE", "start value"),
         ("fix", "NAME=VALUE", "hold a parameter"),
+        ("fix-u", "NAME=U", "standard uncertainty of a held parameter"),
         ("bounds", "NAME=LOW:HIGH", "bounds of a parameter"),
     ):
         group.add_argument(
             f"--{name}", metavar=shape, action="append", default=[], help=f"{words}, SI units (repeatable)"
         )
+    group.add_argument(
+        "--fix-from", metavar="RESULT.json", help="hold the lattice of a saved result, with its uncertainty"
+    )
 
 
 def add_report_options(parser: CommandParser) -> None:
@@ -165,11 +173,13 @@ def model_settings(arguments: argparse.Namespace) -> ModelSettings:
     from ..records import ModelSettings
 
     given = {
-        "terms": arguments.terms,
+        "terms": getattr(arguments, "terms", None),
         "mode_sum": arguments.mode_sum,
         "cp_cv": arguments.cp_cv,
         "start": _by_name(arguments.start, "--start", parse_assignment),
         "fix": _by_name(arguments.fix, "--fix", parse_assignment),
+        "fix_u": _by_name(arguments.fix_u, "--fix-u", parse_assignment),
+        "fix_from": arguments.fix_from,
         "bounds": _by_name(arguments.bounds, "--bounds", parse_bounds),
     }
     return ModelSettings(**checked(given, MODEL, _option))
@@ -183,8 +193,8 @@ def report_settings(arguments: argparse.Namespace, before: ReportSettings | None
     from ..records import ReportSettings
 
     given = {
-        "grid": arguments.grid,
-        "figures": arguments.figures,
+        "grid": getattr(arguments, "grid", None),
+        "figures": getattr(arguments, "figures", None),
         "random_seed": _whole(arguments.random_seed),
     }
     return replace(before or ReportSettings(), **checked(given, REPORT, _option))

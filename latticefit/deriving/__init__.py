@@ -1,10 +1,17 @@
 """Characteristic temperatures, thermodynamic functions on any grid, pointwise Debye temperatures."""
 
-from .characteristic import QUANTITIES, CharacteristicTemperature
-from .derive import derive
-from .functions_table import default_grid, functions_table
-from .pointwise import model_theta, pointwise_theta
-from .propagation import propagate, standard_uncertainty
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from ..lazy import on_first_use
+
+if TYPE_CHECKING:
+    from .characteristic import QUANTITIES, CharacteristicTemperature
+    from .derivation import derive
+    from .pointwise import model_theta, pointwise_theta
+    from .propagation import propagate, standard_uncertainty
+    from .thermodynamic_table import default_grid, functions_table
 
 __all__ = [
     "QUANTITIES",
@@ -17,3 +24,26 @@ __all__ = [
     "propagate",
     "standard_uncertainty",
 ]
+
+__getattr__ = on_first_use(
+    __name__,
+    {
+        "characteristic": (
+            "QUANTITIES",
+            "CharacteristicTemperature",
+        ),
+        "derivation": ("derive",),
+        "thermodynamic_table": (
+            "default_grid",
+            "functions_table",
+        ),
+        "pointwise": (
+            "model_theta",
+            "pointwise_theta",
+        ),
+        "propagation": (
+            "propagate",
+            "standard_uncertainty",
+        ),
+    },
+)

@@ -2,22 +2,28 @@
 
 from __future__ import annotations
 
-from importlib import import_module
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
+
+from ..lazy import on_first_use
 
 if TYPE_CHECKING:
     from .cautions import CAUTIONS
+    from .evaluation import difference_rows, evaluation_csv, evaluation_record, evaluation_text
     from .figures import FIGURES, draw_figure, render
     from .folder import check_out_folder, write_report
     from .frames import (
         characteristic_temperatures_frame,
         functions_frame,
         parameters_frame,
+        parameters_of,
+        ranking_frame,
         residuals_frame,
         warnings_frame,
     )
     from .html import html_report, html_summary
+    from .ranking import comparison_record, ranking_text
     from .result import json_text, result_record
+    from .saved import evaluate, read_result
     from .tables import residuals_csv, table_csv
     from .text import summary_text, text_report
 
@@ -26,12 +32,22 @@ __all__ = [
     "FIGURES",
     "characteristic_temperatures_frame",
     "check_out_folder",
+    "comparison_record",
+    "difference_rows",
     "draw_figure",
+    "evaluate",
+    "evaluation_csv",
+    "evaluation_record",
+    "evaluation_text",
     "functions_frame",
     "html_report",
     "html_summary",
     "json_text",
     "parameters_frame",
+    "parameters_of",
+    "ranking_frame",
+    "ranking_text",
+    "read_result",
     "render",
     "residuals_csv",
     "residuals_frame",
@@ -51,9 +67,14 @@ _HOMES = {
         "characteristic_temperatures_frame",
         "functions_frame",
         "parameters_frame",
+        "parameters_of",
+        "ranking_frame",
         "residuals_frame",
         "warnings_frame",
     ),
+    "evaluation": ("difference_rows", "evaluation_csv", "evaluation_record", "evaluation_text"),
+    "ranking": ("comparison_record", "ranking_text"),
+    "saved": ("evaluate", "read_result"),
     "html": ("html_report", "html_summary"),
     "result": ("json_text", "result_record"),
     "tables": ("residuals_csv", "table_csv"),
@@ -61,9 +82,4 @@ _HOMES = {
 }
 
 
-def __getattr__(name: str) -> Any:
-    """Import on first use: matplotlib, pandas, rich and jinja2 together take a second."""
-    for home, names in _HOMES.items():
-        if name in names:
-            return getattr(import_module(f".{home}", __name__), name)
-    raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
+__getattr__ = on_first_use(__name__, _HOMES)

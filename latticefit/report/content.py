@@ -122,7 +122,7 @@ def model_rows(analysis: Analysis) -> tuple[Row, ...]:
     return (
         Row("model", fit.terms, modes),
         Row("Cp-Cv", fit.cp_cv),
-        Row("why this model", analysis.chosen_because),
+        Row("why this model", analysis.comparison.because),
     )
 
 

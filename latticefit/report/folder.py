@@ -140,7 +140,7 @@ def write_report(analysis: Analysis, out: Path, replace: bool = False, figures: 
 
 def _write_files(analysis: Analysis, folder: Path, figures: str) -> None:
     names = _copy_inputs(analysis, folder / "inputs")
-    sheet_text = write_sheet(_portable_sheet(analysis, names, figures))
+    sheet_text = write_sheet(_portable_sheet(analysis, names, _copy_held(analysis, folder / "inputs", names), figures))
     pictures = _write_figures(analysis, folder / "figures", figures)
     texts = {
         "result.json": json_text(result_record(analysis)),
@@ -205,6 +205,19 @@ def _copy_inputs(analysis: Analysis, folder: Path) -> list[str]:
     return [by_path[reading.path] for reading in analysis.measurement.readings]
 
 
+def _copy_held(analysis: Analysis, folder: Path, names: list[str]) -> str | None:
+    """Copy the saved result whose lattice was held, and return its name in the folder; None where there was none."""
+    source = analysis.sheet.model.fix_from
+    if source is None:
+        return None
+    name = _free_name("held_result.json", {each.casefold() for each in names})
+    try:
+        shutil.copyfile(source, folder / name)
+    except OSError as error:
+        raise InputError(f"{harmless(source)!r} cannot be read any more ({error.strerror}); run again") from error
+    return name
+
+
 def _free_name(name: str, taken: set[str]) -> str:
     """The name itself, or with a number; names that differ in case only are one file on some systems."""
     path, number, free = Path(name), 1, name
@@ -214,7 +227,7 @@ def _free_name(name: str, taken: set[str]) -> str:
     return free
 
 
-def _portable_sheet(analysis: Analysis, names: list[str], figures: str) -> Sheet:
+def _portable_sheet(analysis: Analysis, names: list[str], held: str | None, figures: str) -> Sheet:
     """The sheet that repeats the run from inside the report folder: copied inputs, no folder to write to."""
     readings = analysis.measurement.readings
     runs = tuple(
@@ -225,6 +238,7 @@ def _portable_sheet(analysis: Analysis, names: list[str], figures: str) -> Sheet
     return replace(
         analysis.sheet,
         runs=runs,
+        model=replace(analysis.sheet.model, fix_from=None if held is None else f"inputs/{held}"),
         report=replace(analysis.sheet.report, out=None, figures=figures),  # type: ignore[arg-type]
     )
 

@@ -6,7 +6,8 @@ from dataclasses import asdict
 
 import pandas as pd
 
-from ..records import Analysis, ThermodynamicTable
+from ..records import Analysis, Comparison, FitRecord, ThermodynamicTable
+from .ranking import comparison_record
 from .result import thermodynamic_rows
 from .tables import residual_rows
 
@@ -14,6 +15,8 @@ __all__ = [
     "characteristic_temperatures_frame",
     "functions_frame",
     "parameters_frame",
+    "parameters_of",
+    "ranking_frame",
     "residuals_frame",
     "warnings_frame",
 ]
@@ -21,8 +24,24 @@ __all__ = [
 
 def parameters_frame(analysis: Analysis) -> pd.DataFrame:
     """Return the parameters, one row each, by name; values in SI, the unit of each in column `unit`."""
+    return parameters_of(analysis.fit)
+
+
+def ranking_frame(comparison: Comparison) -> pd.DataFrame:
+    """Return the candidates, plausible ones first, by AICc; ``attrs["because"]`` says why the chosen one was."""
+    rows = [
+        {**candidate, "reasons": "; ".join(candidate["reasons"]), "chosen": k == comparison.chosen}
+        for k, candidate in enumerate(comparison_record(comparison)["candidates"])
+    ]
+    frame = pd.DataFrame(rows).sort_values(["plausible", "aicc"], ascending=[False, True], ignore_index=True)
+    frame.attrs["because"] = comparison.because
+    return frame
+
+
+def parameters_of(fit: FitRecord) -> pd.DataFrame:
+    """Return the parameters of a fit, as `parameters_frame`."""
     columns = ["name", "value", "u", "u_fit", "unit", "status", "low", "high", "start", "meaning"]
-    rows = [{key: getattr(each, key) for key in columns} for each in analysis.fit.parameters]
+    rows = [{key: getattr(each, key) for key in columns} for each in fit.parameters]
     return _numeric(pd.DataFrame(rows, columns=columns).set_index("name"), ["value", "u", "u_fit"])
 
 

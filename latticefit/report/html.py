@@ -16,6 +16,7 @@ from ..wording import harmless
 from . import content
 from .cautions import CAUTIONS
 from .figures import FIGURES
+from .ranking import candidate_grid
 
 __all__ = ["html_report", "html_summary"]
 
@@ -73,6 +74,8 @@ def html_report(analysis: Analysis, pictures: Mapping[str, bytes], sheet_text: s
             standard=content.standard_rows(analysis),
             functions=content.function_grid(analysis.derived.table),
             bands=content.band_grid(analysis),
+            chosen_because=harmless(analysis.comparison.because),
+            candidates=candidate_grid(analysis.comparison) if len(analysis.comparison.candidates) > 1 else None,
             validity=content.validity_rows(analysis),
             warnings=_warnings(analysis),
             repairs=content.repair_rows(analysis),

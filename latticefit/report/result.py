@@ -16,6 +16,7 @@ from ..records import (
     ResidualStatistics,
     ThermodynamicTable,
 )
+from .ranking import comparison_record
 
 __all__ = ["SCHEMA", "json_text", "result_record", "thermodynamic_rows"]
 
@@ -64,8 +65,9 @@ def result_record(analysis: Analysis) -> dict[str, Any]:
             "terms": analysis.fit.terms,
             "mode_sum": analysis.fit.mode_sum,
             "cp_cv": analysis.fit.cp_cv,
-            "chosen_because": analysis.chosen_because,
+            "chosen_because": analysis.comparison.because,
         },
+        "comparison": comparison_record(analysis.comparison),
         "parameters": {each.name: _parameter(each) for each in analysis.fit.parameters},
         "covariance": _covariance(analysis),
         "fit": _fit(analysis),
@@ -226,6 +228,11 @@ def _warning(warning: NamedWarning) -> dict[str, Any]:
     }
 
 
+def _per(name: str, table: ThermodynamicTable) -> str:
+    """Name of a column with the amount that the table is for."""
+    return name.replace("_J_mol", f"_J_{table.per}")
+
+
 def thermodynamic_rows(table: ThermodynamicTable) -> list[dict[str, Any]]:
     """Return the rows of a table of thermodynamic functions, keys as in result.json and table.csv.
 
@@ -242,11 +249,14 @@ def thermodynamic_rows(table: ThermodynamicTable) -> list[dict[str, Any]]:
     )
     for attribute, name in named:
         for mark in ("", "_u", "_u_fit"):
-            columns[name.format(mark)] = _numbers(getattr(table, attribute + mark))
+            columns[_per(name.format(mark), table)] = _numbers(getattr(table, attribute + mark))
     if table.quantity == "Cv":
         for name in _ENTHALPY_NAMES:
             for mark in ("", "_u", "_u_fit"):
-                columns[name.format(mark)] = [None] * table.temperature.size
+                columns[_per(name.format(mark), table)] = [None] * table.temperature.size
+    from_standard = "internal_energy_from_298{}_J_mol" if table.quantity == "Cv" else "enthalpy_from_298{}_J_mol"
+    for mark in ("", "_u"):
+        columns[_per(from_standard.format(mark), table)] = _numbers(getattr(table, "energy_from_standard" + mark))
     columns["entropy_fraction_below_data"] = _numbers(table.entropy_fraction_below_data)
     columns["origin"] = list(table.origin)
     columns["u_reason"] = list(table.u_reasons)

@@ -16,6 +16,7 @@ from ..wording import harmless
 from . import content
 from .cautions import CAUTIONS
 from .content import Grid, Row
+from .ranking import ranking_lines
 
 __all__ = ["WIDTH", "summary_text", "text_report"]
 
@@ -45,6 +46,9 @@ def text_report(analysis: Analysis) -> str:
         page.say(f"Withheld: {note}")
     page.section("Model")
     page.rows(content.model_rows(analysis))
+    if len(analysis.comparison.candidates) > 1:
+        page.section("Candidate models (same points, same uncertainties)")
+        page.lines(ranking_lines(analysis.comparison))
     page.section("Parameters (value ± u, k = 1)")
     page.rows(content.parameter_rows(analysis))
     page.section("Characteristic temperatures")
@@ -84,12 +88,14 @@ def summary_text(analysis: Analysis, folder: Path | None) -> str:
     """
     points, fit_range = content.measured_rows(analysis)[3:5]
     model = content.model_rows(analysis)[0]
+    form = "" if analysis.fit.cp_cv == "none" else f" with {analysis.fit.cp_cv}"
     fit_quality, residuals = content.fit_rows(analysis)[:2]
     keys = content.standard_rows(analysis)
     low = [row for row in content.temperature_rows(analysis) if row.label == "theta_D(T->0)"]
     rows = [
         Row("sample", f"{content.headline(analysis)}, {points.value}, {fit_range.value}"),
-        Row("model", f"{model.value}; {model.note}"),
+        Row("model", f"{model.value}{form}; {model.note}"),
+        *([Row("chosen", analysis.comparison.because)] if len(analysis.comparison.candidates) > 1 else []),
         Row("verdict", analysis.diagnosis.verdict),
         *(Row(each.label, each.value) for each in content.parameter_rows(analysis)),
         *(Row(each.label, each.value) for each in low),
@@ -135,6 +141,11 @@ class _Page:
 
     def say(self, words: str) -> None:
         self._console.print(Padding(Text(words), (0, 0, 0, 2)))
+
+    def lines(self, lines: Sequence[str]) -> None:
+        """Write lines that have their layout already."""
+        for each in lines:
+            self._console.print(Text(each), soft_wrap=True)
 
     def rows(self, rows: Sequence[Row], none: str = "", indent: int = 2) -> None:
         """Write label, value and remark; the remark follows where all three fit on the line, else stands below."""

@@ -6,7 +6,7 @@ from typing import Literal
 
 import numpy as np
 
-from ..diagnosing.reach import low_temperature_reach
+from ..constants import STANDARD_TEMPERATURE
 from ..models import (
     Model,
     build_model,
@@ -18,26 +18,14 @@ from ..models import (
     heat_capacity,
 )
 from ..records import FitRecord, FloatArray, Quantity, ThermodynamicTable
+from .differences import energy_from_standard
 from .propagation import propagate, standard_uncertainty
-from .support import lost_in_spectrum, stuck
+from .support import lost_in_spectrum
+from .withholding import HEAVY_BELOW, HEAVY_REASON, allowance_below, row_reasons
 
 __all__ = ["default_grid", "functions_table"]
 
 Origin = Literal["measured", "extrapolated_below", "extrapolated_above"]
-
-_BELOW_ALLOWANCE = ((30.0, 0.10), (50.0, 0.02))
-"""Relative allowance for what the model may get wrong of H and S below the lowest point, by theta/Tmin: a T^3 law from
-there is 10 % off in S(Tmin) at theta/20 and 1 % at theta/50 for plain sine dispersion (computed)."""
-
-_ABOVE = 1.25  # beyond this times the highest fitted point u is withheld: nothing tests Cp - Cv there
-
-_HEAVY_BELOW = 0.1  # share of S below the data above which u of S and H is withheld, unless the data reach low
-
-BELOW_REASON = "below the lowest fitted point: the covariance of one model is no measure of what it does not see"
-ABOVE_REASON = "more than a quarter above the highest fitted point: the covariance of one model is no measure there"
-
-MISFIT_REASON = "the model does not describe the data: the covariance is no measure of how wrong it is"
-HEAVY_REASON = "more than a tenth of S lies below the lowest fitted point: no u of S and H"
 
 
 def default_grid(lowest: float, highest: float) -> FloatArray:
@@ -63,35 +51,6 @@ def _solvable(model: Model, T: FloatArray, values: FloatArray) -> FloatArray:
         return np.ones_like(T)
     lattice = harmonic_heat_capacity(model, T, values)
     return np.where(model.cp_cv.solvable(T, lattice, cp_cv_coefficient(model, values)), 1.0, np.nan)
-
-
-def _allowance_below(fit: FitRecord, model: Model, values: FloatArray, T: FloatArray, lowest: float) -> FloatArray:
-    """What the part below the lowest point adds to u of the four functions, shape (4, m); 0 where the data reach low.
-
-    A model without a T^3 law (Einstein terms alone) has no reach to judge by and gets the larger allowance.
-    """
-    reach = low_temperature_reach(model, fit, lowest)
-    ratio = 0.0 if reach is None else reach.ratio
-    share = next((each for limit, each in _BELOW_ALLOWANCE if ratio < limit), 0.0)
-    H, S = (float(each(model, np.array([lowest]), values)[0]) for each in (energy, entropy))
-    return share * np.stack([np.zeros_like(T), np.full_like(T, H), np.full_like(T, S), np.abs(S - H / T)])
-
-
-def _reasons(
-    model: Model, fit: FitRecord, T: FloatArray, lowest: float, highest: float, describes: bool
-) -> list[str | None]:
-    """Why u of a whole row is withheld; None where it is given."""
-    held = stuck(model, fit)
-    everywhere = None
-    if not describes:
-        everywhere = MISFIT_REASON
-    elif held:
-        everywhere = f"{held[0]} is at a bound: the covariance does not know what it would do without"
-    return [BELOW_REASON if t < lowest else ABOVE_REASON if t > _ABOVE * highest else everywhere for t in T.tolist()]
-
-
-def _origins(T: FloatArray, lowest: float, highest: float) -> tuple[Origin, ...]:
-    return tuple("extrapolated_below" if t < lowest else "extrapolated_above" if t > highest else "measured" for t in T)
 
 
 def functions_table(
@@ -126,22 +85,13 @@ def functions_table(
     model = build_model(fit.terms, fit.cp_cv)
     values, covariance = np.array(fit.values), np.array(fit.covariance)
     rows = _stack(model, T, values) * _solvable(model, T, values)
-    lost = lost_in_spectrum(model, fit)
-    if lost:
+    if lost_in_spectrum(model, fit):
         rows = np.where(highest < T, np.nan, rows)
     u_fit = propagate(lambda v: _stack(model, T, v), values, covariance)
-    reasons = _reasons(model, fit, T, lowest, highest, describes)
-    u = standard_uncertainty(u_fit, fit.scale_factor, fit.covariance_kind)
-    u = u * np.where([reason is None for reason in reasons], 1.0, np.nan)
-    allowance = _allowance_below(fit, model, values, T, lowest)
-    below = float(entropy(model, np.array([lowest]), values)[0])
-    u = np.hypot(u, allowance)
-    heavy = (allowance[2] > 0) & (below > _HEAVY_BELOW * rows[2])
-    u[1:, heavy] = np.nan
-    for k in np.flatnonzero(heavy):
-        reasons[k] = reasons[k] or HEAVY_REASON
-    for k in np.flatnonzero(np.isnan(rows[2]) & (T > highest)):
-        reasons[k] = f"{lost[0]} is not determined" if lost else "Cp - Cv has no solution at this temperature"
+    base = row_reasons(model, fit, T, lowest, highest, describes)
+    at_standard = row_reasons(model, fit, np.array([STANDARD_TEMPERATURE]), lowest, highest, describes)[0]
+    from_standard, from_standard_u = energy_from_standard(fit, model, T, base, at_standard)
+    u, reasons = _uncertainties(model, fit, T, rows, u_fit, lowest, highest, base)
     return ThermodynamicTable(
         quantity=quantity,
         temperature=T,
@@ -154,11 +104,51 @@ def functions_table(
         entropy=rows[2],
         entropy_u=u[2],
         entropy_u_fit=u_fit[2],
+        energy_from_standard=from_standard + 0 * rows[1],
+        energy_from_standard_u=from_standard_u,
         free_energy_function=rows[3],
         free_energy_function_u=u[3],
         free_energy_function_u_fit=u_fit[3],
-        entropy_fraction_below_data=np.where(lowest >= T, 1.0, below / np.maximum(rows[2], 1e-300)),
-        origin=_origins(T, lowest, highest),
+        entropy_fraction_below_data=_share_below(model, values, T, rows[2], lowest),
+        origin=tuple(_origin(t, lowest, highest) for t in T.tolist()),
         u_reasons=tuple(reasons),
         components=dict(components(model, T, values)),
     )
+
+
+def _origin(t: float, lowest: float, highest: float) -> Origin:
+    return "extrapolated_below" if t < lowest else "extrapolated_above" if t > highest else "measured"
+
+
+def _share_below(model: Model, values: FloatArray, T: FloatArray, S: FloatArray, lowest: float) -> FloatArray:
+    """Share of S that lies below the lowest point; all of it for the rows below."""
+    below = float(entropy(model, np.array([lowest]), values)[0])
+    return np.where(lowest >= T, 1.0, below / np.maximum(S, 1e-300))
+
+
+def _uncertainties(
+    model: Model,
+    fit: FitRecord,
+    T: FloatArray,
+    rows: FloatArray,
+    u_fit: FloatArray,
+    lowest: float,
+    highest: float,
+    base: list[str | None],
+) -> tuple[FloatArray, list[str | None]]:
+    """u of the four functions, shape (4, m), NaN where withheld, and the reason for each row."""
+    values, reasons = np.asarray(fit.values), list(base)
+    u = standard_uncertainty(u_fit, fit.scale_factor, fit.covariance_kind)
+    u = u * np.where([reason is None for reason in reasons], 1.0, np.nan)
+    allowance = allowance_below(fit, model, values, T, lowest)
+    u = np.hypot(u, allowance)
+    heavy = (allowance[2] > 0) & (_share_below(model, values, T, rows[2], lowest) > HEAVY_BELOW)
+    u[1:, heavy] = np.nan
+    lost = lost_in_spectrum(model, fit)
+    above = f"{lost[0]} is not determined" if lost else "Cp - Cv has no solution at this temperature"
+    for k in range(T.size):
+        if heavy[k]:
+            reasons[k] = reasons[k] or HEAVY_REASON
+        if np.isnan(rows[2, k]) and T[k] > highest:
+            reasons[k] = above
+    return u, reasons

@@ -19,10 +19,10 @@ from ..records import (
     ThermodynamicTable,
 )
 from .characteristic import LOW_TEMPERATURE, QUANTITIES, CharacteristicTemperature
-from .functions_table import default_grid, functions_table
 from .pointwise import model_theta, pointwise_theta
 from .propagation import propagate, standard_uncertainty
 from .support import lost_in_law, lost_in_spectrum
+from .thermodynamic_table import default_grid, functions_table
 
 __all__ = ["derive"]
 
