@@ -17,6 +17,8 @@ import tomli_w
 from latticefit.constants import GAS_CONSTANT, STANDARD_TEMPERATURE
 from latticefit.functions import einstein_heat_capacity
 from latticefit.models import build_model, energy, entropy, heat_capacity, low_temperature_theta
+from latticefit.records import SampleSettings
+from latticefit.sample import build_sample
 
 FOLDER = Path(__file__).resolve().parent.parent / "data" / "demo"
 LABORATORY = "Kvellmoor Low Temperature Laboratory (fictional)"
@@ -88,8 +90,7 @@ class Demo:
     name: str
     title: str
     about: str
-    atoms: float
-    molar_mass_g_mol: float
+    formula: str
     truth: Truth
     low: float
     high: float
@@ -120,9 +121,8 @@ DEMOS = (
     Demo(
         "halvite",
         "Halvite, crystal HVT-1",
-        "an insulator with two atoms per formula unit; uncertainties in the third column (k = 1)",
-        2,
-        83.40,
+        "an insulator; uncertainties in the third column (k = 1)",
+        "NeKr",
         model_truth(
             "debye + einstein",
             "nernst-lindemann",
@@ -145,9 +145,8 @@ DEMOS = (
     Demo(
         "norrium",
         "Norrium, a metal, bar N-7",
-        "one atom per formula unit; no uncertainties stated",
-        1,
-        96.20,
+        "no uncertainties stated",
+        "At",
         model_truth(
             "debye + einstein + electronic",
             "nernst-lindemann",
@@ -171,9 +170,8 @@ DEMOS = (
     Demo(
         "tvorrite",
         "Tvorrite, powder",
-        "five atoms per formula unit, molar mass 152.30 g/mol; heat capacity per gram",
-        5,
-        152.30,
+        "an insulator; heat capacity per gram, no uncertainties stated",
+        "NeKr2Xe2",
         model_truth(
             "debye + einstein",
             "nernst-lindemann",
@@ -196,9 +194,8 @@ DEMOS = (
     Demo(
         "drommenite",
         "Drommenite, crystal",
-        "two atoms per formula unit; measured from 50 K up only",
-        2,
-        61.70,
+        "an insulator; measured from 50 K up only",
+        "ArXe",
         dispersive_truth(300.0, {330.0: 1.5, 480.0: 1.5}, 2, 1.5e-6),
         50.0,
         300.0,
@@ -210,6 +207,13 @@ DEMOS = (
 )
 
 
+def molar_mass(demo: Demo) -> float:
+    """kg/mol."""
+    found = build_sample(SampleSettings(formula=demo.formula), demo.name).molar_mass
+    assert found is not None
+    return found
+
+
 def lines(demo: Demo) -> list[str]:
     """Header and rows of a demo file."""
     rng = np.random.default_rng(demo.seed)
@@ -219,9 +223,10 @@ def lines(demo: Demo) -> list[str]:
     measured = exact * (1 + demo.noise * rng.standard_normal(T.size))
     header = [
         f"# invented data: {demo.title}. {LABORATORY}.",
-        f"# {demo.about}. Made by scripts/make_demo_data.py, seed {demo.seed}; the exact solid stands in truth.toml.",
+        f"# Formula {demo.formula} (a composition that does not exist); {demo.about}.",
+        f"# Made by scripts/make_demo_data.py, seed {demo.seed}; the exact solid stands in truth.toml.",
     ]
-    return header + demo.write(T, measured, demo.noise * exact, demo.molar_mass_g_mol)
+    return header + demo.write(T, measured, demo.noise * exact, 1e3 * molar_mass(demo))
 
 
 def truth_text() -> str:
@@ -229,8 +234,7 @@ def truth_text() -> str:
     facts = {
         demo.name: {
             "title": demo.title,
-            "atoms": demo.atoms,
-            "molar_mass_g_mol": demo.molar_mass_g_mol,
+            "formula": demo.formula,
             "noise_percent": 100 * demo.noise,
             **demo.truth.facts,
         }

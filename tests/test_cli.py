@@ -385,13 +385,13 @@ def test_inspect_json_holds_the_arrays_of_the_contract(capsys: pytest.CaptureFix
     path = str(DEMO / "tvorrite.csv")
     assert main(["inspect", path, "--json"]) == 0
     per_gram = json.loads(capsys.readouterr().out)["files"][0]
-    assert main(["inspect", path, "--json", "--atoms", "5", "--molar-mass", "152.30 g/mol"]) == 0
+    assert main(["inspect", path, "--json", "--formula", "NeKr2Xe2"]) == 0
     per_mole = json.loads(capsys.readouterr().out)["files"][0]
     assert per_gram["delimiter"] == ";"
     assert per_gram["decimal"] == ","
     assert per_gram["points"] == len(per_gram["measurement"]["temperature_K"]) == 140
     assert per_mole["measurement"]["heat_capacity_J_mol_K"][3] == pytest.approx(
-        152.30 * per_gram["measurement"]["heat_capacity_J_g_K"][3]
+        450.3617 * per_gram["measurement"]["heat_capacity_J_g_K"][3]
     )
     assert per_gram["columns"]["temperature"] == "T (K)"
 

@@ -42,7 +42,7 @@ def test_every_demo_file_is_made_by_its_script_and_says_invented_data() -> None:
 def test_fits_of_demo_files_recover_their_truth(name: str) -> None:
     """Parameters, S, H and theta_D(T->0) of a demo lie within 3.5 u of the stated truth."""
     facts = TRUTH[name]
-    data = lf.read(DEMO / f"{name}.csv", atoms=facts["atoms"], molar_mass=f"{facts['molar_mass_g_mol']} g/mol")
+    data = lf.read(DEMO / f"{name}.csv", formula=facts["formula"])
     fit = lf.fit(data, terms=facts["terms"], cp_cv=facts["cp_cv"])
     assert fit.analysis.diagnosis.describes
     for parameter in fit.analysis.fit.parameters:
@@ -56,7 +56,7 @@ def test_fits_of_demo_files_recover_their_truth(name: str) -> None:
 
 def test_the_sample_that_starts_at_50_k_refuses_its_low_temperature_theta() -> None:
     """Drommenite: a perfect-looking fit, theta_D(T->0) null with the reason, S still given."""
-    data = lf.read(DEMO / "drommenite.csv", atoms=2, molar_mass="61.70 g/mol")
+    data = lf.read(DEMO / "drommenite.csv", formula="ArXe")
     fit = lf.fit(data, terms="debye + einstein", cp_cv="nernst-lindemann")
     assert fit.analysis.diagnosis.statistics.reduced_chi_square < 1.2
     theta = fit.characteristic_temperatures.loc["theta_debye_low_temperature"]

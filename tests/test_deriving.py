@@ -217,7 +217,7 @@ def test_allowance_below_the_data_covers_a_dispersive_solid() -> None:
     import latticefit as lf
 
     truth = tomllib.loads((DEMO / "truth.toml").read_text(encoding="utf-8"))["drommenite"]
-    data = lf.read(DEMO / "drommenite.csv", atoms=2, molar_mass="61.70 g/mol")
+    data = lf.read(DEMO / "drommenite.csv", formula="ArXe")
     fit = lf.fit(data, terms="debye + einstein", cp_cv="nernst-lindemann")
     row = fit.table([298.15]).iloc[0]
     assert abs(row["entropy_J_mol_K"] - truth["entropy_298_J_mol_K"]) < 2 * row["entropy_u_J_mol_K"]
