@@ -69,7 +69,7 @@ def analyse(
         Folder that the path of a saved result in the sheet starts from; the current one by default.
     """
     tell = progress or (lambda words: None)
-    settings, held = resolve_held(sheet.model, base or Path())
+    settings, held = resolve_held(sheet.model, base or Path(), measurement.quantity)
     prepared = prepare(measurement)
     compared = compare(prepared, settings, sheet.report.random_seed, held, tell)
     diagnosis = diagnose(prepared, compared.fit)
@@ -96,7 +96,7 @@ def ranked(
     base: Path | None = None,
 ) -> Comparison:
     """Compare the candidates of the ladder; parameters as `analyse`."""
-    settings, held = resolve_held(replace(sheet.model, terms=None), base or Path())
+    settings, held = resolve_held(replace(sheet.model, terms=None), base or Path(), measurement.quantity)
     return compare(prepare(measurement), settings, sheet.report.random_seed, held, progress).comparison
 
 
@@ -267,6 +267,11 @@ def rank(
     *,
     cp_cv: str | None = None,
     mode_sum: Literal["fixed", "free"] | None = None,
+    start: Mapping[str, float] | None = None,
+    fix: Mapping[str, float] | None = None,
+    fix_u: Mapping[str, float] | None = None,
+    fix_from: str | Path | None = None,
+    bounds: Mapping[str, tuple[float, float] | str] | None = None,
     window: Interval | Sequence[Interval] = (),
     mask: Interval | Sequence[Interval] = (),
     random_seed: int = 0,
@@ -277,7 +282,7 @@ def rank(
     ----------
     measurement : Measurement
         From `read`.
-    cp_cv, mode_sum, window, mask, random_seed
+    cp_cv, mode_sum, start, fix, fix_u, fix_from, bounds, window, mask, random_seed
         As for `fit`.
 
     Returns
@@ -288,7 +293,15 @@ def rank(
     """
     from .report import ranking_frame
 
-    model = {"mode_sum": mode_sum, "cp_cv": cp_cv}
+    model = {
+        "mode_sum": mode_sum,
+        "cp_cv": cp_cv,
+        "start": start,
+        "fix": fix,
+        "fix_u": fix_u,
+        "fix_from": str(fix_from) if isinstance(fix_from, Path) else fix_from,
+        "bounds": bounds,
+    }
     sheet, narrowed, _ = _request(measurement, model, window, mask, {"random_seed": random_seed})
     return ranking_frame(ranked(sheet, narrowed))
 

@@ -7,15 +7,18 @@ from pathlib import Path
 
 import numpy as np
 
+from .deriving import stated_covariance
 from .errors import InputError
 from .models import build_model
-from .records import HeldParameters, ModelSettings, SavedResult
+from .records import HeldParameters, ModelSettings, Quantity, SavedResult
 from .report.saved import read_result
 
 __all__ = ["resolve_held"]
 
 
-def resolve_held(settings: ModelSettings, base: Path) -> tuple[ModelSettings, HeldParameters | None]:
+def resolve_held(
+    settings: ModelSettings, base: Path, quantity: Quantity = "Cp"
+) -> tuple[ModelSettings, HeldParameters | None]:
     """Turn `fix_from` and `fix_u` into fixed values and their covariance.
 
     Parameters
@@ -23,6 +26,8 @@ def resolve_held(settings: ModelSettings, base: Path) -> tuple[ModelSettings, He
     settings : ModelSettings
     base : Path
         Folder that a relative `fix_from` starts from.
+    quantity : {"Cp", "Cv"}
+        Of the data: the Cp-Cv of a saved result is held too, unless the data are Cv or another form is named.
 
     Returns
     -------
@@ -35,7 +40,8 @@ def resolve_held(settings: ModelSettings, base: Path) -> tuple[ModelSettings, He
     Raises
     ------
     InputError
-        When the saved result cannot be read, or a u is given for a parameter that is not fixed.
+        When the saved result cannot be read or is not to be relied on, or a u is given for a parameter that is not
+        fixed.
     """
     names: list[str] = []
     blocks: list[np.ndarray] = []
@@ -44,7 +50,9 @@ def resolve_held(settings: ModelSettings, base: Path) -> tuple[ModelSettings, He
         path = (base / settings.fix_from).resolve()
         path = path / "result.json" if path.is_dir() else path
         saved = read_result(path)
-        lattice, positions = _lattice(saved)
+        wanted = settings.cp_cv or ("none" if quantity == "Cv" else saved.fit.cp_cv)
+        lattice, positions = _lattice(saved, with_cp_cv=wanted == saved.fit.cp_cv)
+        _refuse_unreliable(saved, positions, settings.fix_from)
         twice = sorted(set(lattice) & {*settings.fix, *settings.start, *settings.bounds})
         if twice:
             raise InputError(f"{twice[0]} is held by the saved result and is also named; give one or the other")
@@ -53,10 +61,10 @@ def resolve_held(settings: ModelSettings, base: Path) -> tuple[ModelSettings, He
             settings,
             fix={**values, **settings.fix},
             fix_from=str(path),
-            cp_cv=settings.cp_cv or saved.fit.cp_cv,
+            cp_cv=wanted,
         )
         names += lattice
-        blocks.append(np.asarray(saved.fit.covariance)[np.ix_(positions, positions)])
+        blocks.append(stated_covariance(saved.fit)[np.ix_(positions, positions)])
     for name, u in settings.fix_u.items():
         if name not in settings.fix:
             raise InputError(f"a standard uncertainty is given for {name}, which is not fixed; fix it, or leave u out")
@@ -67,12 +75,29 @@ def resolve_held(settings: ModelSettings, base: Path) -> tuple[ModelSettings, He
     return resolved, HeldParameters(tuple(names), _block_diagonal(blocks))
 
 
-def _lattice(saved: SavedResult) -> tuple[list[str], list[int]]:
-    """Names and positions of what belongs to the lattice of a saved result: its terms and its Cp-Cv."""
+def _lattice(saved: SavedResult, with_cp_cv: bool) -> tuple[list[str], list[int]]:
+    """Names and positions of what belongs to the lattice of a saved result: its terms, and its Cp-Cv where wanted."""
     model = build_model(saved.fit.terms, saved.fit.cp_cv)
-    outside = {i for each in model.placed if not each.term.lattice for i in range(each.slice.start, each.slice.stop)}
-    positions = [i for i in range(len(model.names)) if i not in outside]
-    return [model.names[i] for i in positions], positions
+    inside = [i for each in model.placed if each.term.lattice for i in range(each.slice.start, each.slice.stop)]
+    if with_cp_cv and model.cp_cv.parameter is not None:
+        inside.append(len(model.names) - 1)
+    return [model.names[i] for i in inside], inside
+
+
+def _refuse_unreliable(saved: SavedResult, positions: list[int], shown: str) -> None:
+    """A lattice is known only where its own fit describes its data and determines it."""
+    lost = [
+        each.name
+        for i in positions
+        for each in [saved.fit.parameters[i]]
+        if each.status in ("undetermined", "at_bound") or each.u is None
+    ]
+    if not saved.fit.converged:
+        raise InputError(f"{shown!r} holds a fit that did not converge; its lattice cannot be held as known")
+    if not saved.describes:
+        raise InputError(f"the model of {shown!r} does not describe its own data; its lattice cannot be held as known")
+    if lost:
+        raise InputError(f"{lost[0]} of {shown!r} is not determined there; its lattice cannot be held as known")
 
 
 def _block_diagonal(blocks: list[np.ndarray]) -> np.ndarray:

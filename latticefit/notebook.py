@@ -107,11 +107,15 @@ class Fit:
         return html_summary(self.analysis)
 
 
-@dataclass(frozen=True, eq=False)
+@dataclass(frozen=True, eq=False, repr=False)
 class Saved:
     """A saved result: evaluated on any grid without the data and without a refit."""
 
     result: SavedResult
+
+    def __repr__(self) -> str:
+        saved = self.result
+        return f"Saved({saved.sample.name!r}, {saved.fit.terms!r}, {saved.lowest:.4g} to {saved.highest:.4g} K)"
 
     @property
     def parameters(self) -> pd.DataFrame:

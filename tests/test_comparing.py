@@ -93,7 +93,7 @@ def row(aicc: float, parameters: int, plausible: bool = True, terms: str = "deby
     ("rows", "chosen", "words"),
     [
         ([row(10, 3), row(30, 1)], 0, "lowest AICc"),
-        ([row(10, 5), row(11.9, 3)], 1, "fewer parameters"),
+        ([row(10, 5), row(11.9, 3)], 1, "fewer parameters is kept"),
         ([row(10, 5), row(12.1, 3)], 0, "lowest AICc"),
         ([row(10, 3), row(11, 3)], 0, "lower AICc of those with the fewest"),
         ([row(5, 3, plausible=False), row(10, 2)], 1, "has a lower AICc but a parameter is at a bound"),
@@ -153,3 +153,39 @@ def test_an_insulator_with_an_electronic_term_is_refused() -> None:
     declared = replace(data.measurement, sample=replace(data.measurement.sample, insulator=True))
     with pytest.raises(InputError, match="declared an insulator"):
         fit_model(replace(data, measurement=declared), ModelSettings("debye + electronic"))
+
+
+@pytest.mark.parametrize("seed", range(4))
+def test_an_assumed_sigma_does_not_let_noise_buy_terms(seed: int) -> None:
+    """14 points with 4 % noise and an assumed 1 %: neither a second Einstein term nor electrons are found in noise."""
+    points = np.geomspace(4.0, 300.0, 14)
+    data = invented_solid("debye + einstein", [240.0, 4.0, 380.0, 2.0], points, noise=0.04, seed=seed, atoms=2)
+    assumed = replace(data, sigma=0.01 * np.array(data.heat_capacity), sigma_kind="estimated", sigma_assumed=True)
+    found = compare(assumed, ModelSettings()).comparison
+    assert found.candidates[found.chosen].free_parameters <= 3
+
+
+@pytest.mark.parametrize(
+    ("settings", "quantity", "words"),
+    [
+        (ModelSettings(cp_cv="nernst-lindemann"), "Cv", "the data are Cv"),
+        (ModelSettings(bounds={"debye_theta": (-5.0, -1.0)}), "Cp", "outside the range"),
+        (ModelSettings(fix={"debye_theta": 0.0}), "Cp", "lies outside"),
+        (ModelSettings(fix={"debye_modes": 5.0}), "Cp", "add up to 5"),
+    ],
+)
+def test_what_no_candidate_can_follow_is_refused_with_its_own_reason(
+    settings: ModelSettings, quantity: str, words: str
+) -> None:
+    """A request that fails for every candidate is refused with the reason of the first, not with another."""
+    data = invented_solid("debye + einstein", METAL[1][:4], T, atoms=1, quantity=quantity)  # type: ignore[arg-type]
+    with pytest.raises(InputError, match=words):
+        compare(data, settings)
+
+
+def test_candidates_that_cannot_follow_are_named() -> None:
+    """A mode count that only the mixed models can hold leaves the single Debye term out, with its reason."""
+    data = invented_solid("debye + einstein", METAL[1][:4], T, atoms=1, quantity="Cv")
+    found = compare(data, ModelSettings(fix={"debye_modes": 2.5})).comparison
+    assert any(each.startswith("debye: ") and "add up to 2.5" in each for each in found.dropped)
+    assert found.candidates[found.chosen].terms == "debye + einstein"

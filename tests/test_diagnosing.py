@@ -138,11 +138,12 @@ def triggers() -> dict[str, Diagnosis]:
         "mode-sum": diagnosed(replace_atoms(invented_solid(*insulator, T), 3.0), "debye + einstein", "free"),
         "sigma-overstated": diagnosed(prepared_data(T, C, 0.05 * C, atoms=1), METAL[0]),
         "sigma-assumed": diagnosed(
-            replace(metal, sigma_kind="estimated", sigma_text="assumed: 1 % of the heat capacity"), METAL[0]
+            replace(metal, sigma_kind="estimated", sigma_text="assumed: 1 %", sigma_assumed=True), METAL[0]
         ),
         "few-points": diagnosed(invented_solid(*METAL, T[::7], atoms=1), METAL[0]),
         "not-unique": not_unique(),
         "high-temperature-reach": diagnosed(invented_solid(*METAL, np.geomspace(1.8, 30.0, 60), atoms=1), METAL[0]),
+        "gamma-reach": diagnosed(invented_solid(*METAL, np.geomspace(9.0, 300.0, 90), atoms=1), METAL[0]),
         "implausible-level": diagnosed(scaled(3.0), METAL[0]),
         "above-classical-limit": diagnosed(scaled(1.12), METAL[0]),
         "sigma-understated": diagnosed(prepared_data(T, C, 0.001 * C, atoms=1), METAL[0]),
@@ -218,3 +219,24 @@ def test_more_parameters_than_the_data_can_test_is_not_called_a_description() ->
     assert not found.describes
     assert "nothing tests it" in found.verdict
     assert found.statistics.reduced_chi_square is None
+
+
+def test_an_assumed_sigma_is_no_measure_of_the_model() -> None:
+    """Where 1 % is only assumed, scatter of 4 % speaks against nothing; a pattern in the residuals does."""
+    points = np.geomspace(4.0, 300.0, 14)
+    data = invented_solid("debye", [240.0, 6.0], points, noise=0.04, atoms=2, quantity="Cv", seed=2)
+    assumed = replace(data, sigma=0.01 * np.array(data.heat_capacity), sigma_kind="estimated", sigma_assumed=True)
+    found = diagnosed(assumed, "debye")
+    assert found.describes
+    assert "cannot be told" in found.verdict
+    wrong = invented_solid("debye + einstein", [200.0, 3.0, 700.0, 3.0], T, atoms=2, quantity="Cv")
+    poor = diagnosed(replace(wrong, sigma_kind="estimated", sigma_assumed=True), "debye")
+    assert not poor.describes
+
+
+def test_aicc_with_unknown_sigma_does_not_depend_on_its_scale() -> None:
+    """With only relative sigmas known, differences of AICc do not depend on their scale (Hurvich and Tsai 1989)."""
+    first = (akaike(30.0, 3, 20, False) or 0) - (akaike(50.0, 2, 20, False) or 0)
+    second = (akaike(3000.0, 3, 20, False) or 0) - (akaike(5000.0, 2, 20, False) or 0)
+    assert first == pytest.approx(second)
+    assert akaike(30.0, 3, 5, False) is None

@@ -6,7 +6,7 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from helpers import invented_solid
+from helpers import invented_solid, prepared_data
 
 import latticefit as lf
 from latticefit.fitting import fit_model
@@ -99,3 +99,36 @@ def test_contradictions_are_refused_in_words(files: tuple[Path, Path], tmp_path:
     saved = lf.fit(lf.read(files[0], atoms=1), "debye + einstein").save(tmp_path / "lattice", figures="none")
     with pytest.raises(lf.InputError, match="held by the saved result"):
         lf.fit(data, METAL[0], fix_from=saved, start={"debye_theta": 300.0})
+
+
+def test_misfit_does_not_enlarge_what_the_user_stated() -> None:
+    """A held u stays as stated whatever the reduced chi-square is; the free parameters' u grows with it."""
+    data = invented_solid(*METAL, T, atoms=1)
+    C = np.array(data.heat_capacity)
+    understated = prepared_data(T, C, 0.0005 * C, atoms=1)
+    held = HeldParameters(("electronic_gamma",), np.array([[1e-8**2]]))
+    fit = fit_model(understated, ModelSettings(METAL[0], fix={"electronic_gamma": 7e-4}), held=held)
+    assert fit.scale_factor > 50
+    assert fit.parameters[fit.names.index("electronic_gamma")].u == pytest.approx(1e-8, rel=1e-9)
+    theta = fit.parameters[fit.names.index("debye_theta")]
+    assert (theta.u or 0) > 5 * (theta.u_fit or 1)
+
+
+def test_a_held_lattice_brings_the_u_that_latticefit_stands_behind(tmp_path: Path) -> None:
+    """With understated sigmas the saved u, not the smaller u_fit, is carried on."""
+    data = invented_solid("debye + einstein", METAL[1][:4], T, atoms=1, quantity="Cv")
+    columns = np.column_stack([T, data.heat_capacity, np.array(data.sigma) / 5]).tolist()
+    rows = "\n".join(",".join(map(repr, row)) for row in columns)
+    (tmp_path / "a.csv").write_text(f"# invented data\nT_K,Cv_J_molK,sigma_J_molK\n{rows}\n")
+    lattice = lf.fit(lf.read(tmp_path / "a.csv", atoms=1), "debye + einstein")
+    saved = lattice.save(tmp_path / "lattice", figures="none")
+    again = lf.fit(lf.read(tmp_path / "a.csv", atoms=1), "debye + einstein", fix_from=saved)
+    for name in ("debye_theta", "einstein_theta", "einstein_modes"):
+        assert again.parameters.loc[name, "u"] == pytest.approx(lattice.parameters.loc[name, "u"], rel=1e-6)
+
+
+def test_a_lattice_that_misses_its_own_data_is_not_held(files: tuple[Path, Path], tmp_path: Path) -> None:
+    """A saved model that does not describe its data cannot be held as known."""
+    poor = lf.fit(lf.read(files[0], atoms=1), "debye").save(tmp_path / "poor", figures="none")
+    with pytest.raises(lf.InputError, match="does not describe its own data"):
+        lf.fit(lf.read(files[1], atoms=1), METAL[0], fix_from=poor)

@@ -125,3 +125,67 @@ def test_rank_gives_the_candidates_and_the_reason() -> None:
     assert not frame["terms"].str.contains("electronic").any()
     assert frame["plausible"].is_monotonic_decreasing
     assert frame.attrs["because"]
+
+
+def leaves(record: object, path: tuple[object, ...] = ()) -> list[tuple[object, ...]]:
+    """Paths of every value in a record that `load` may look at."""
+    if isinstance(record, dict):
+        return [leaf for key, each in record.items() for leaf in leaves(each, (*path, key))]
+    if isinstance(record, list) and path and path[-1] in ("names", "matrix"):
+        return [path]
+    return [path]
+
+
+ODD = [None, True, "x", -1, 0, 1e308, [], {}, [[1.0]]]
+READ = ("schema", "sample", "data", "model", "parameters", "covariance", "fit", "verdict")
+
+
+@pytest.mark.slow
+def test_no_damage_to_a_result_gives_a_traceback(folder: Path, tmp_path: Path) -> None:
+    """Nine odd values at every leaf: the result is refused in words, or evaluates without a warning."""
+    import warnings
+
+    original = json.loads((folder / "result.json").read_text(encoding="utf-8"))
+    path = tmp_path / "result.json"
+    for leaf in leaves({key: original[key] for key in READ}):
+        for odd in ODD:
+            record = json.loads(json.dumps(original))
+            at = record
+            for key in leaf[:-1]:
+                at = at[key]
+            at[leaf[-1]] = odd
+            path.write_text(json.dumps(record), encoding="utf-8")
+            with warnings.catch_warnings():
+                warnings.simplefilter("error")
+                try:
+                    saved = lf.load(path)
+                    saved.table([4.0, 77.0, 298.15])
+                    if saved.result.sample.molar_mass is not None:
+                        saved.between(4.0, 77.0, per="kg")
+                except InputError:
+                    continue
+
+
+def test_between_and_table_agree_where_there_is_no_value(folder: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """Where Cp-Cv has no solution neither the table nor a difference gives a value, and both say why."""
+    assert main(["table", str(folder), "--grid", "5000", "--between", "300:5000", "--json"]) == 0
+    record = json.loads(capsys.readouterr().out)
+    row = next(each for each in record["thermodynamic_functions"] if each["temperature_K"] == 5000)
+    assert row["enthalpy_J_mol"] is None
+    assert row["enthalpy_from_298_J_mol"] is None
+    assert record["differences"][0]["enthalpy_difference_J_mol"] is None
+    assert record["differences"][0]["u_reason"] == row["u_reason"]
+    assert main(["table", str(folder), "--between", "1e300:1e301"]) == 2
+
+
+@pytest.mark.parametrize("per", ["g", "kg"])
+def test_every_molar_column_is_scaled(per: str, folder: Path) -> None:
+    """Every column per mole, u and u_fit included, is its molar value over the mass; the others are unchanged."""
+    saved = lf.load(folder)
+    molar, massic = saved.table([10.0, 298.15]), saved.table([10.0, 298.15], per=per)
+    mass = (saved.result.sample.molar_mass or 0) * (1 if per == "kg" else 1000)
+    for name in molar.columns:
+        other = name.replace("_J_mol", f"_J_{per}")
+        if molar[name].dtype == float:
+            expected = molar[name] / mass if other != name else molar[name]
+            np.testing.assert_allclose(massic[other], expected, rtol=1e-12, equal_nan=True)

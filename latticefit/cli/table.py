@@ -37,13 +37,14 @@ def parser() -> CommandParser:
 
 
 def _pair(text: str) -> tuple[float, float]:
-    from math import isfinite
+    from ..reading.settings import temperatures
 
-    from ..reading import parse_interval
-
-    low, high = parse_interval(text)
-    if not (low > 0 and isfinite(high) and low < high):
-        raise InputError(f"--between {text!r}: give two temperatures above 0 K, the lower one first, e.g. 4:77")
+    sides = text.split(":")
+    if len(sides) != 2:
+        raise InputError(f"--between {text!r}: give two temperatures in K, the lower one first, e.g. 4:77")
+    (low,), (high,) = (temperatures(side, "--between") for side in sides)
+    if not low < high:
+        raise InputError(f"--between {text!r}: give the lower temperature first, e.g. 4:77")
     return low, high
 
 

@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from math import exp, inf
 
 from ..diagnosing import akaike, bayes
-from ..errors import FitError, InputError
+from ..errors import FitError, InputError, LatticefitError
 from ..fitting import fit_model
 from ..records import Candidate, Comparison, FitRecord, HeldParameters, ModelSettings, PreparedData
 from .ladder import candidates
@@ -18,6 +18,8 @@ __all__ = ["TIE", "Compared", "choose", "compare", "name_of"]
 TIE = 2.0
 """AICc differences up to this are ties (K. P. Burnham and D. R. Anderson, Model Selection and Multimodel Inference,
 2nd ed., Springer (2002))."""
+
+_FAR = 20.0  # differences of AICc above which a candidate is called far worse
 
 
 @dataclass(frozen=True)
@@ -51,10 +53,8 @@ def compare(
 
     Raises
     ------
-    InputError
-        For settings that no candidate can follow.
-    FitError
-        When no candidate can be fitted.
+    InputError, FitError
+        What stands against the first candidate, when none can be fitted.
     """
     tell = progress or (lambda words: None)
     wanted = (settings,) if settings.terms is not None else candidates(prepared, settings, seed)
@@ -64,17 +64,18 @@ def compare(
         tell(f"comparing {len(wanted)} candidate models on {count} points")
     else:
         tell(f"fitting {settings.terms} to {count} points")
+    dropped: list[tuple[ModelSettings, LatticefitError]] = []
     for each in wanted:
         try:
             fits.append((each, fit_model(prepared, each, seed, held)))
-        except InputError:
-            if len(wanted) == 1:
-                raise
+        except (InputError, FitError) as error:
+            dropped.append((each, error))
     if not fits:
-        raise FitError("no candidate model can be fitted: there are fewer points than the simplest one has parameters")
+        raise dropped[0][1]
     rows = _with_weights([_candidate(prepared, fit) for _, fit in fits])
     chosen, because = _named() if settings.terms is not None else choose(rows)
-    return Compared(Comparison(rows, chosen, because), fits[chosen][1], fits[chosen][0])
+    reasons = tuple(f"{name_of(each.terms or '', each.cp_cv)}: {error}" for each, error in dropped)
+    return Compared(Comparison(rows, chosen, because, reasons), fits[chosen][1], fits[chosen][0])
 
 
 def name_of(terms: str, cp_cv: str | None) -> str:
@@ -88,7 +89,7 @@ def _named() -> tuple[int, str]:
 
 def _candidate(prepared: PreparedData, fit: FitRecord) -> Candidate:
     n, k = prepared.temperature.size, fit.free_parameters
-    aicc = akaike(fit.chi_square, k, n)
+    aicc = akaike(fit.chi_square, k, n, not prepared.sigma_assumed)
     reasons = objections(fit, float(prepared.temperature[0]))
     if aicc is None:
         reasons = (*reasons, f"{n} points are too few to rank {k} parameters")
@@ -100,7 +101,7 @@ def _candidate(prepared: PreparedData, fit: FitRecord) -> Candidate:
         chi_square=fit.chi_square,
         reduced_chi_square=fit.chi_square / fit.degrees_of_freedom if fit.degrees_of_freedom else None,
         aicc=aicc,
-        bic=bayes(fit.chi_square, k, n),
+        bic=bayes(fit.chi_square, k, n, not prepared.sigma_assumed),
         delta_aicc=None,
         weight=0.0,
         plausible=not reasons,
@@ -110,8 +111,6 @@ def _candidate(prepared: PreparedData, fit: FitRecord) -> Candidate:
 
 def _with_weights(rows: list[Candidate]) -> tuple[Candidate, ...]:
     """Differences of AICc to the best plausible candidate, and Akaike weights among the plausible ones."""
-    from dataclasses import replace
-
     ranked = [row.aicc for row in rows if row.plausible and row.aicc is not None]
     known = [row.aicc for row in rows if row.aicc is not None]
     if not known:
@@ -150,21 +149,35 @@ def choose(rows: tuple[Candidate, ...]) -> tuple[int, str]:
 
 
 def _because(rows: tuple[Candidate, ...], chosen: int, best: int, ties: list[int]) -> str:
-    others = [name_of(rows[i].terms, rows[i].cp_cv) for i in ties if i != chosen]
+    forms = any(row.cp_cv != "none" for row in rows)
+
+    def name(k: int) -> str:
+        row = rows[k]
+        bare = f"{row.terms} without Cp-Cv" if forms and row.cp_cv == "none" else name_of(row.terms, row.cp_cv)
+        return f"'{bare}'"
+
+    def worse(k: int) -> str:
+        difference = _rank(rows[k]) - _rank(rows[best])
+        return f"{'far worse' if difference > _FAR else 'worse'} (AICc +{difference:.3g})"
+
+    others = [k for k in ties if k != chosen]
     if others:
-        verb = "ties" if len(others) == 1 else "tie"
-        tied = " and ".join(others) if len(others) < 3 else f"{', '.join(others[:-1])} and {others[-1]}"
-        fewest = all(rows[chosen].free_parameters < rows[i].free_parameters for i in ties if i != chosen)
-        fewer = "has fewer parameters" if fewest else "has the lower AICc of those with the fewest parameters"
-        text = f"{tied} {verb} with it (AICc within {TIE:g}) and it {fewer}"
+        text = f"{_listed([name(k) for k in others])} {'ties' if len(others) == 1 else 'tie'} with {name(chosen)} "
+        text += f"(AICc, which charges the quality of a fit for its parameters, differs by less than {TIE:g}); "
+        fewest = all(rows[chosen].free_parameters < rows[k].free_parameters for k in others)
+        text += "the one with fewer parameters is kept" if fewest else "the lower AICc of those with the fewest is kept"
     else:
-        text = "it has the lowest AICc of the plausible candidates"
-    rest = [row for k, row in enumerate(rows) if row.plausible and k not in ties and row.aicc is not None]
+        text = f"{name(chosen)} has the lowest AICc (quality of the fit charged for parameters) of the plausible ones"
+    rest = [k for k, row in enumerate(rows) if row.plausible and k not in ties and row.aicc is not None]
     if rest:
-        runner = min(rest, key=_rank)
-        text += f"; the next, {name_of(runner.terms, runner.cp_cv)}, is {_rank(runner) - _rank(rows[best]):.3g} worse"
-    better = [row for row in rows if not row.plausible and _rank(row) < _rank(rows[chosen]) - TIE]
+        runner = min(rest, key=lambda k: _rank(rows[k]))
+        text += f"; next is {name(runner)}, {worse(runner)}"
+    better = [k for k, row in enumerate(rows) if not row.plausible and _rank(row) < _rank(rows[chosen]) - TIE]
     if better:
-        first = min(better, key=_rank)
-        text += f"; {name_of(first.terms, first.cp_cv)} has a lower AICc but {first.reasons[0]}"
+        first = min(better, key=lambda k: _rank(rows[k]))
+        text += f"; {name(first)} has a lower AICc but {rows[first].reasons[0]}"
     return text
+
+
+def _listed(names: list[str]) -> str:
+    return names[0] if len(names) == 1 else f"{', '.join(names[:-1])} and {names[-1]}"

@@ -9,7 +9,7 @@ from __future__ import annotations
 from dataclasses import replace
 
 from ..errors import InputError, nearest
-from ..fitting import fit_model
+from ..fitting import fit_model, refuse_cp_cv_of_cv
 from ..models import build_model
 from ..records import ModelSettings, PreparedData
 
@@ -37,6 +37,7 @@ def candidates(prepared: PreparedData, settings: ModelSettings, seed: int = 0) -
     InputError
         When start, fix or bounds name a parameter that no candidate has.
     """
+    refuse_cp_cv_of_cv(prepared, settings)
     theta = _single_debye_theta(prepared, settings, seed)
     forms = [settings.cp_cv] if settings.cp_cv is not None else ["none"]
     quantity, hottest = prepared.measurement.quantity, float(prepared.temperature[-1])

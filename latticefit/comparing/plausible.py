@@ -16,6 +16,7 @@ SAME_THETA = 1.1
 """Two lattice terms whose temperatures are closer than this factor are one band (common practice, no source)."""
 
 _NEGLIGIBLE = 1e-3  # share of the modes below which a term has vanished
+_LOOSE = 0.25  # relative u above which the theta of the T^3 law is not pinned down (common practice, no source)
 _SAME_CORRELATION = 0.999
 _UNSEEN = 0.02  # share of S(298.15 K) below the data above which a lattice without acoustic modes is not tested
 
@@ -42,7 +43,13 @@ def objections(fit: FitRecord, lowest: float) -> tuple[str, ...]:
             found.append(f"{each.name} is at a bound")
         elif each.status == "undetermined":
             found.append(f"{each.name} is not determined")
-    return (*found, *_vanishing(fit, model), *_indistinct(fit, model), *_without_acoustic_modes(fit, model, lowest))
+    return (
+        *found,
+        *_loose_law(fit, model),
+        *_vanishing(fit, model),
+        *_indistinct(fit, model),
+        *_without_acoustic_modes(fit, model, lowest),
+    )
 
 
 def _without_acoustic_modes(fit: FitRecord, model: Model, lowest: float) -> list[str]:
@@ -54,6 +61,18 @@ def _without_acoustic_modes(fit: FitRecord, model: Model, lowest: float) -> list
     if below <= _UNSEEN * total:
         return []
     return ["it has no acoustic modes, and the data start too high to show what that does to S"]
+
+
+def _loose_law(fit: FitRecord, model: Model) -> list[str]:
+    """A term that carries the T^3 law must have a temperature that the data pin down: it is what people quote."""
+    betas = [each.term.cubic_coefficient(*fit.values[each.slice]) for each in model.placed]
+    found = []
+    for placed, beta in zip(model.placed, betas, strict=True):
+        for each, spec in zip(fit.parameters[placed.slice], placed.term.parameters, strict=True):
+            loose = spec.role == "scale" and each.u is not None and each.u > _LOOSE * each.value
+            if loose and 2 * beta > sum(betas):
+                found.append(f"{each.name} is hardly determined ({each.value:.3g} K with u = {each.u:.2g} K)")
+    return found
 
 
 def _vanishing(fit: FitRecord, model: Model) -> list[str]:

@@ -10,7 +10,7 @@ if TYPE_CHECKING:
     from .characteristic import QUANTITIES, CharacteristicTemperature
     from .derivation import derive
     from .pointwise import model_theta, pointwise_theta
-    from .propagation import propagate, standard_uncertainty
+    from .propagation import propagate, stated_covariance, uncertainties
     from .thermodynamic_table import default_grid, functions_table
 
 __all__ = [
@@ -22,7 +22,8 @@ __all__ = [
     "model_theta",
     "pointwise_theta",
     "propagate",
-    "standard_uncertainty",
+    "stated_covariance",
+    "uncertainties",
 ]
 
 __getattr__ = on_first_use(
@@ -43,7 +44,8 @@ __getattr__ = on_first_use(
         ),
         "propagation": (
             "propagate",
-            "standard_uncertainty",
+            "stated_covariance",
+            "uncertainties",
         ),
     },
 )

@@ -47,9 +47,9 @@ def difference_per(each: EnergyDifference, sample: Sample, per: Amount) -> Energ
     factor = _factor(sample, per)
     return replace(
         each,
-        energy=each.energy * factor,
+        energy=None if each.energy is None else each.energy * factor,
         energy_u=None if each.energy_u is None else each.energy_u * factor,
-        entropy=each.entropy * factor,
+        entropy=None if each.entropy is None else each.entropy * factor,
         entropy_u=None if each.entropy_u is None else each.entropy_u * factor,
         per=per,
     )

@@ -20,7 +20,7 @@ from ..records import (
 )
 from .characteristic import LOW_TEMPERATURE, QUANTITIES, CharacteristicTemperature
 from .pointwise import model_theta, pointwise_theta
-from .propagation import propagate, standard_uncertainty
+from .propagation import uncertainties
 from .support import lost_in_law, lost_in_spectrum
 from .thermodynamic_table import default_grid, functions_table
 
@@ -67,10 +67,6 @@ def derive(
     )
 
 
-def _u(fit: FitRecord, u_fit: float) -> float:
-    return float(standard_uncertainty(np.array(u_fit), fit.scale_factor, fit.covariance_kind))
-
-
 def _reach(fit: FitRecord, model: Model, lowest: float, describes: bool) -> tuple[Status, str | None]:
     """Whether theta_D(T->0) is determined, and the remark that goes with it."""
     reach = low_temperature_reach(model, fit, lowest)
@@ -115,10 +111,10 @@ def _characteristic(
         found = each.function(model, v, fit.atoms)
         return np.array(np.nan if found is None else found)
 
-    u_fit = float(propagate(of, values, np.array(fit.covariance)))
+    u_fit, u = (float(each_u) for each_u in uncertainties(of, fit))
     if not np.isfinite(u_fit):
         return _derived_value(each, value, None, None, status, reason)
-    return _derived_value(each, value, _u(fit, u_fit), u_fit, status, reason)
+    return _derived_value(each, value, u, u_fit, status, reason)
 
 
 def _derived_value(
@@ -152,8 +148,8 @@ def _zero_point(fit: FitRecord, model: Model, judged: tuple[Status, str | None])
     value = u_fit = u = None
     if status == "determined":
         value = zero_point_energy(model, values)
-        u_fit = float(propagate(lambda v: np.array(zero_point_energy(model, v)), values, np.array(fit.covariance)))
-        u = _u(fit, u_fit)
+        found = uncertainties(lambda v: np.array(zero_point_energy(model, v)), fit)
+        u_fit, u = (float(each) for each in found)
     low, high = (None, None) if value is None or u is None else (value - 2 * u, value + 2 * u)
     return DerivedValue(
         key="zero_point_energy",

@@ -9,34 +9,37 @@ import numpy as np
 from ..constants import STANDARD_TEMPERATURE
 from ..models import Model, build_model, energy, entropy
 from ..records import EnergyDifference, FitRecord, FloatArray, SavedResult
-from .propagation import propagate, standard_uncertainty
-from .withholding import row_reasons
+from .propagation import uncertainties
+from .withholding import row_reasons, value_reasons
 
 __all__ = ["energy_differences", "energy_from_standard"]
 
 
-def _u(fit: FitRecord, u_fit: FloatArray) -> FloatArray:
-    return standard_uncertainty(u_fit, fit.scale_factor, fit.covariance_kind)
+def _reasons(
+    fit: FitRecord, model: Model, T: FloatArray, lowest: float, highest: float, describes: bool
+) -> tuple[list[str | None], list[str | None]]:
+    """Why no value, and why no u, is given at each T."""
+    missing = value_reasons(model, fit, T, highest)
+    return missing, row_reasons(model, fit, T, lowest, highest, describes)
 
 
 def energy_from_standard(
-    fit: FitRecord, model: Model, T: FloatArray, reasons: Sequence[str | None], standard_reason: str | None
+    fit: FitRecord, model: Model, T: FloatArray, lowest: float, highest: float, describes: bool
 ) -> tuple[FloatArray, FloatArray]:
-    """H(T)-H(298.15 K) on a grid with its u, J/mol; U with Cv. Shapes of T (K).
+    """H(T)-H(298.15 K) on a grid with its u, J/mol; U with Cv. NaN where either end has no value, or no u.
 
-    Parameters
-    ----------
-    reasons : sequence of (str or None), one for each T
-        Why u of a row is withheld; `standard_reason` the same for 298.15 K.
+    Shapes of T (K); `lowest` and `highest` bound the fitted points, K.
     """
     at = np.array([STANDARD_TEMPERATURE])
 
     def difference(values: FloatArray) -> FloatArray:
         return energy(model, T, values) - energy(model, at, values)
 
-    u = _u(fit, propagate(difference, np.array(fit.values), np.array(fit.covariance)))
-    given = [reason is None and standard_reason is None for reason in reasons]
-    return difference(np.array(fit.values)), np.where(given, u, np.nan)
+    _, u = uncertainties(difference, fit)
+    missing, withheld = _reasons(fit, model, np.append(T, at), lowest, highest, describes)
+    valued = np.array([each is None and missing[-1] is None for each in missing[:-1]])
+    given = valued & np.array([each is None and withheld[-1] is None for each in withheld[:-1]])
+    return np.where(valued, difference(np.array(fit.values)), np.nan), np.where(given, u, np.nan)
 
 
 def energy_differences(saved: SavedResult, pairs: Sequence[tuple[float, float]]) -> tuple[EnergyDifference, ...]:
@@ -67,15 +70,16 @@ def _difference(saved: SavedResult, fit: FitRecord, model: Model, low: float, hi
         return np.array([H[1] - H[0], S[1] - S[0]])
 
     found = steps(np.array(fit.values))
-    u = _u(fit, propagate(steps, np.array(fit.values), np.array(fit.covariance)))
-    reasons = row_reasons(model, fit, ends, saved.lowest, saved.highest, saved.describes)
-    reason = next((each for each in reasons if each is not None), None)
+    _, u = uncertainties(steps, fit)
+    missing, withheld = _reasons(fit, model, ends, saved.lowest, saved.highest, saved.describes)
+    gone = next((each for each in missing if each is not None), None)
+    reason = gone or next((each for each in withheld if each is not None), None)
     return EnergyDifference(
         low=low,
         high=high,
-        energy=float(found[0]),
+        energy=None if gone else float(found[0]),
         energy_u=None if reason else float(u[0]),
-        entropy=float(found[1]),
+        entropy=None if gone else float(found[1]),
         entropy_u=None if reason else float(u[1]),
         reason=reason,
         quantity=saved.quantity,

@@ -6,9 +6,9 @@ from collections.abc import Callable
 
 import numpy as np
 
-from ..records import FloatArray
+from ..records import FitRecord, FloatArray
 
-__all__ = ["propagate", "standard_uncertainty"]
+__all__ = ["propagate", "stated_covariance", "uncertainties"]
 
 _STEP = 1e-4  # relative step of the central differences: rounding and curvature errors both stay below 1e-7
 _SIGMAS = 1e-2  # step in standard uncertainties for a parameter that is zero
@@ -47,11 +47,41 @@ def propagate(function: Callable[[FloatArray], FloatArray], values: FloatArray, 
     ndarray
         Shape of the function's result.
     """
-    gradient = _gradient(function, np.array(values), np.sqrt(np.diag(covariance)))
+    return _deviation(_gradient(function, np.array(values), np.sqrt(np.diag(covariance))), covariance)
+
+
+def stated_covariance(fit: FitRecord) -> FloatArray:
+    """Return the covariance behind u, shape (p, p).
+
+    That of the fit, its part from the data enlarged by the reduced chi-square where stated sigmas fall short; what held
+    parameters bring along is not enlarged.
+    """
+    total = np.array(fit.covariance)
+    if fit.covariance_kind == "scaled":
+        return total
+    carried = np.zeros_like(total) if fit.carried is None else np.array(fit.carried)
+    return (total - carried) * max(1.0, fit.scale_factor) + carried
+
+
+def uncertainties(function: Callable[[FloatArray], FloatArray], fit: FitRecord) -> tuple[FloatArray, FloatArray]:
+    """Return u_fit and u of every element of ``function(values)``.
+
+    Parameters
+    ----------
+    function : callable
+        Parameters (p,) -> array of any one shape.
+    fit : FitRecord
+
+    Returns
+    -------
+    u_fit, u : ndarray
+        From the covariance of the fit alone, and as latticefit states it; shape of the function's result.
+    """
+    values, covariance = np.array(fit.values), np.array(fit.covariance)
+    gradient = _gradient(function, values, np.sqrt(np.diag(covariance)))
+    return _deviation(gradient, covariance), _deviation(gradient, stated_covariance(fit))
+
+
+def _deviation(gradient: FloatArray, covariance: FloatArray) -> FloatArray:
     variance = np.einsum("i...,ij,j...->...", gradient, covariance, gradient)
     return np.asarray(np.sqrt(np.maximum(variance, 0.0)))
-
-
-def standard_uncertainty(u_fit: FloatArray, scale_factor: float, kind: str) -> FloatArray:
-    """Return u as latticefit states it: u_fit, times sqrt(reduced chi-square) where stated sigmas fall short."""
-    return u_fit * (np.sqrt(max(1.0, scale_factor)) if kind == "absolute" else 1.0)

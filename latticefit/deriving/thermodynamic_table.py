@@ -6,22 +6,18 @@ from typing import Literal
 
 import numpy as np
 
-from ..constants import STANDARD_TEMPERATURE
 from ..models import (
     Model,
     build_model,
     components,
-    cp_cv_coefficient,
     energy,
     entropy,
-    harmonic_heat_capacity,
     heat_capacity,
 )
 from ..records import FitRecord, FloatArray, Quantity, ThermodynamicTable
 from .differences import energy_from_standard
-from .propagation import propagate, standard_uncertainty
-from .support import lost_in_spectrum
-from .withholding import HEAVY_BELOW, HEAVY_REASON, allowance_below, row_reasons
+from .propagation import uncertainties
+from .withholding import HEAVY_BELOW, HEAVY_REASON, allowance_below, row_reasons, value_reasons
 
 __all__ = ["default_grid", "functions_table"]
 
@@ -43,14 +39,6 @@ def _stack(model: Model, T: FloatArray, values: FloatArray) -> FloatArray:
     """Heat capacity, energy, entropy and free-energy function, shape (4, m)."""
     H, S = energy(model, T, values), entropy(model, T, values)
     return np.stack([heat_capacity(model, T, values), H, S, S - H / T])
-
-
-def _solvable(model: Model, T: FloatArray, values: FloatArray) -> FloatArray:
-    """1 where Cp - Cv has a solution, NaN where the temperature is too high for its form."""
-    if model.cp_cv.solvable is None:
-        return np.ones_like(T)
-    lattice = harmonic_heat_capacity(model, T, values)
-    return np.where(model.cp_cv.solvable(T, lattice, cp_cv_coefficient(model, values)), 1.0, np.nan)
 
 
 def functions_table(
@@ -83,15 +71,13 @@ def functions_table(
     """
     T = np.asarray(temperature, dtype=float)
     model = build_model(fit.terms, fit.cp_cv)
-    values, covariance = np.array(fit.values), np.array(fit.covariance)
-    rows = _stack(model, T, values) * _solvable(model, T, values)
-    if lost_in_spectrum(model, fit):
-        rows = np.where(highest < T, np.nan, rows)
-    u_fit = propagate(lambda v: _stack(model, T, v), values, covariance)
+    values = np.array(fit.values)
+    missing = value_reasons(model, fit, T, highest)
+    rows = _stack(model, T, values) * np.where([each is None for each in missing], 1.0, np.nan)
+    u_fit, u = uncertainties(lambda v: _stack(model, T, v), fit)
     base = row_reasons(model, fit, T, lowest, highest, describes)
-    at_standard = row_reasons(model, fit, np.array([STANDARD_TEMPERATURE]), lowest, highest, describes)[0]
-    from_standard, from_standard_u = energy_from_standard(fit, model, T, base, at_standard)
-    u, reasons = _uncertainties(model, fit, T, rows, u_fit, lowest, highest, base)
+    from_standard, from_standard_u = energy_from_standard(fit, model, T, lowest, highest, describes)
+    u, reasons = _withheld(model, fit, T, rows, u, lowest, base, missing)
     return ThermodynamicTable(
         quantity=quantity,
         temperature=T,
@@ -104,7 +90,7 @@ def functions_table(
         entropy=rows[2],
         entropy_u=u[2],
         entropy_u_fit=u_fit[2],
-        energy_from_standard=from_standard + 0 * rows[1],
+        energy_from_standard=from_standard,
         energy_from_standard_u=from_standard_u,
         free_energy_function=rows[3],
         free_energy_function_u=u[3],
@@ -126,29 +112,26 @@ def _share_below(model: Model, values: FloatArray, T: FloatArray, S: FloatArray,
     return np.where(lowest >= T, 1.0, below / np.maximum(S, 1e-300))
 
 
-def _uncertainties(
+def _withheld(
     model: Model,
     fit: FitRecord,
     T: FloatArray,
     rows: FloatArray,
-    u_fit: FloatArray,
+    u: FloatArray,
     lowest: float,
-    highest: float,
     base: list[str | None],
+    missing: list[str | None],
 ) -> tuple[FloatArray, list[str | None]]:
     """u of the four functions, shape (4, m), NaN where withheld, and the reason for each row."""
     values, reasons = np.asarray(fit.values), list(base)
-    u = standard_uncertainty(u_fit, fit.scale_factor, fit.covariance_kind)
     u = u * np.where([reason is None for reason in reasons], 1.0, np.nan)
     allowance = allowance_below(fit, model, values, T, lowest)
     u = np.hypot(u, allowance)
     heavy = (allowance[2] > 0) & (_share_below(model, values, T, rows[2], lowest) > HEAVY_BELOW)
     u[1:, heavy] = np.nan
-    lost = lost_in_spectrum(model, fit)
-    above = f"{lost[0]} is not determined" if lost else "Cp - Cv has no solution at this temperature"
-    for k in range(T.size):
+    for k, why in enumerate(missing):
         if heavy[k]:
             reasons[k] = reasons[k] or HEAVY_REASON
-        if np.isnan(rows[2, k]) and T[k] > highest:
-            reasons[k] = above
+        if why is not None:
+            u[:, k], reasons[k] = np.nan, why
     return u, reasons

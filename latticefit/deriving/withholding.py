@@ -5,11 +5,11 @@ from __future__ import annotations
 import numpy as np
 
 from ..diagnosing.reach import low_temperature_reach
-from ..models import Model, energy, entropy
+from ..models import Model, cp_cv_coefficient, energy, entropy, harmonic_heat_capacity
 from ..records import FitRecord, FloatArray
-from .support import stuck
+from .support import lost_in_spectrum, stuck
 
-__all__ = ["HEAVY_BELOW", "HEAVY_REASON", "allowance_below", "row_reasons"]
+__all__ = ["HEAVY_BELOW", "HEAVY_REASON", "allowance_below", "row_reasons", "value_reasons"]
 
 _BELOW_ALLOWANCE = ((30.0, 0.10), (50.0, 0.02))
 """Relative allowance for what the model may get wrong of H and S below the lowest point, by theta/Tmin: a T^3 law from
@@ -49,3 +49,23 @@ def row_reasons(
     elif held:
         everywhere = f"{held[0]} is at a bound: the covariance does not know what it would do without"
     return [BELOW_REASON if t < lowest else ABOVE_REASON if t > _ABOVE * highest else everywhere for t in T.tolist()]
+
+
+def value_reasons(model: Model, fit: FitRecord, T: FloatArray, highest: float) -> list[str | None]:
+    """Why not even a value is given at a temperature (K); None where it is.
+
+    Above the data nothing is given that rests on an undetermined parameter, and nowhere where Cp - Cv has no solution.
+    """
+    values = np.asarray(fit.values)
+    lost = lost_in_spectrum(model, fit)
+    solvable = np.ones(T.size, dtype=bool)
+    if model.cp_cv.solvable is not None:
+        lattice = harmonic_heat_capacity(model, T, values)
+        solvable = model.cp_cv.solvable(T, lattice, cp_cv_coefficient(model, values))
+    reasons: list[str | None] = []
+    for t, possible in zip(T.tolist(), solvable.tolist(), strict=True):
+        if not possible:
+            reasons.append("Cp - Cv has no solution at this temperature")
+        else:
+            reasons.append(f"{lost[0]} is not determined" if lost and t > highest else None)
+    return reasons

@@ -7,7 +7,7 @@ import numpy as np
 from ..preparing.scatter import repeat_sets
 from ..records import NamedWarning
 from .case import Case
-from .verdict import MISFIT, misfit, only_scatter
+from .verdict import MISFIT, blame
 
 __all__ = [
     "correlated_residuals",
@@ -28,7 +28,7 @@ _RUN_PULL = 4.0  # mean normalised residual of a run, in its own standard errors
 
 def sigma_understated(case: Case) -> NamedWarning | None:
     """The points scatter more than their uncertainties say."""
-    if not misfit(case.fit, case.statistics) or not only_scatter(case.fit, case.statistics):
+    if blame(case.prepared, case.fit, case.statistics) != "sigma":
         return None
     return NamedWarning(
         code="sigma-understated",
@@ -59,7 +59,7 @@ def sigma_overstated(case: Case) -> NamedWarning | None:
 
 def sigma_assumed(case: Case) -> NamedWarning | None:
     """No uncertainty was stated and none could be estimated."""
-    if "assumed" not in case.prepared.sigma_text:
+    if not case.prepared.sigma_assumed:
         return None
     return NamedWarning(
         code="sigma-assumed",

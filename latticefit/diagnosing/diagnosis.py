@@ -41,7 +41,7 @@ def diagnose(prepared: PreparedData, fit: FitRecord) -> Diagnosis:
         residual_normalised=normalised,
         model_all=heat_capacity(model, np.asarray(prepared.measurement.temperature), fit.values),
         statistics=statistics,
-        validity=validity_facts(fit, statistics),
+        validity=validity_facts(prepared, fit, statistics),
         describes=describes,
         verdict=sentence,
         warnings=find_warnings(Case(prepared, model, fit, statistics)),

@@ -6,7 +6,7 @@ import numpy as np
 
 from ..records import NamedWarning
 from .case import Case
-from .verdict import MISFIT, misfit, only_scatter
+from .verdict import MISFIT, blame
 
 __all__ = [
     "model_misfit",
@@ -23,7 +23,7 @@ _LOOSE = 0.1  # relative u from which a strongly correlated parameter is not a m
 
 def model_misfit(case: Case) -> NamedWarning | None:
     """The model does not describe the data."""
-    if not misfit(case.fit, case.statistics) or only_scatter(case.fit, case.statistics):
+    if blame(case.prepared, case.fit, case.statistics) != "model":
         return None
     return NamedWarning(
         code="model-misfit",

@@ -12,6 +12,7 @@ __all__ = [
     "above_classical_limit",
     "cp_cv_from_melting_point",
     "cp_cv_missing",
+    "gamma_reach",
     "implausible_level",
     "mode_sum",
     "reach_down",
@@ -21,6 +22,7 @@ __all__ = [
 _LEVEL = 1.3  # times 3nR that no lattice reaches (common practice, no source)
 _CLASSICAL = 1.02  # times 3nR that a harmonic lattice does not pass
 _HALF = 0.5
+_COLD, _COLD_THETA = 3.0, 60.0  # K, and theta over this: where gamma can be seen
 _MODE_SUM = 0.02
 
 
@@ -100,6 +102,24 @@ def above_classical_limit(case: Case) -> NamedWarning | None:
         found=ratio,
         threshold=_CLASSICAL,
         advice="check mass, molar mass, formula and addenda; an extra contribution or Cp-Cv is the other explanation",
+    )
+
+
+def gamma_reach(case: Case) -> NamedWarning | None:
+    """An electronic term is free and no point lies low enough to see it beside the dispersion of the lattice."""
+    free = [each for each in case.fit.parameters if each.name == "electronic_gamma" and each.status == "fitted"]
+    limit = max(_COLD, theta_debye_two(case.model, case.fit) / _COLD_THETA)
+    lowest = float(case.prepared.temperature[0])
+    if not free or lowest <= limit:
+        return None
+    return NamedWarning(
+        code="gamma-reach",
+        level="warn",
+        concerns="electronic_gamma",
+        message=(f"no point lies below {limit:.2g} K: from {lowest:.3g} K up dispersion alone can make up a gamma"),
+        found=lowest,
+        threshold=limit,
+        advice="fix gamma from other knowledge, leave the term out, or measure lower",
     )
 
 

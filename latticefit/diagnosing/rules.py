@@ -26,6 +26,7 @@ _RULES: dict[str, Callable[[Case], NamedWarning | None]] = {
     "not-unique": fit_rules.not_unique,
     "strong-correlation": fit_rules.strong_correlation,
     "correlated-residuals": data_rules.correlated_residuals,
+    "gamma-reach": range_rules.gamma_reach,
     "cp-cv-missing": range_rules.cp_cv_missing,
     "mode-sum": range_rules.mode_sum,
     "sigma-overstated": data_rules.sigma_overstated,

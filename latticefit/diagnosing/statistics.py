@@ -14,18 +14,25 @@ from ..records import FitRecord, FloatArray, PreparedData, ResidualBand, Residua
 __all__ = ["akaike", "bayes", "durbin_watson", "lag1_correlation", "residual_statistics", "runs_test"]
 
 
-def akaike(chi_square: float, parameters: int, points: int) -> float | None:
-    """AICc for known sigma, chi2 + 2k + 2k(k+1)/(n-k-1); None for n <= k+1.
+def akaike(chi_square: float, parameters: int, points: int, known_sigma: bool = True) -> float | None:
+    """AICc: chi2 + 2k + 2k(k+1)/(n-k-1) where sigma is known; None where there are too few points for it.
 
-    C. M. Hurvich and C.-L. Tsai, Biometrika 76, 297 (1989).
+    Where only the relative sizes of sigma are known, chi2 is replaced by n ln(chi2/n) and the scale counts as one more
+    parameter. C. M. Hurvich and C.-L. Tsai, Biometrika 76, 297 (1989).
     """
-    room = points - parameters - 1
-    return None if room <= 0 else chi_square + 2 * parameters + 2 * parameters * (parameters + 1) / room
+    k = parameters if known_sigma else parameters + 1
+    room = points - k - 1
+    if room <= 0 or (not known_sigma and chi_square <= 0):
+        return None
+    misfit = chi_square if known_sigma else points * log(chi_square / points)
+    return misfit + 2 * k + 2 * k * (k + 1) / room
 
 
-def bayes(chi_square: float, parameters: int, points: int) -> float:
-    """BIC for known sigma, chi2 + k ln n. G. Schwarz, Ann. Stat. 6, 461 (1978)."""
-    return chi_square + parameters * log(points)
+def bayes(chi_square: float, parameters: int, points: int, known_sigma: bool = True) -> float | None:
+    """BIC: chi2 + k ln n where sigma is known; as `akaike` where it is not. G. Schwarz, Ann. Stat. 6, 461 (1978)."""
+    if known_sigma:
+        return chi_square + parameters * log(points)
+    return None if chi_square <= 0 else points * log(chi_square / points) + (parameters + 1) * log(points)
 
 
 def _average_ties(T: FloatArray, normalised: FloatArray) -> FloatArray:
@@ -118,8 +125,8 @@ def residual_statistics(
     return ResidualStatistics(
         reduced_chi_square=fit.chi_square / dof if dof > 0 else None,
         chi_square_p=float(chi2.sf(fit.chi_square, dof)) if dof > 0 else None,
-        aicc=akaike(fit.chi_square, k, n),
-        bic=bayes(fit.chi_square, k, n),
+        aicc=akaike(fit.chi_square, k, n, not prepared.sigma_assumed),
+        bic=bayes(fit.chi_square, k, n, not prepared.sigma_assumed),
         rms_percent=float(np.sqrt(np.mean(percent**2))),
         max_abs_percent=float(np.abs(percent[worst])),
         max_abs_percent_temperature=float(T[worst]),

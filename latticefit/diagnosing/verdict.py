@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+from typing import Literal
+
 from ..records import FitRecord, PreparedData, ResidualBand, ResidualStatistics, ValidityFact
 from ..rounding import percent_text
 
-__all__ = ["MISFIT", "correlated", "misfit", "only_scatter", "plain", "validity_facts", "verdict"]
+__all__ = ["MISFIT", "blame", "correlated", "misfit", "name_of", "only_scatter", "plain", "validity_facts", "verdict"]
 
 MISFIT = 2.0
 """Reduced chi-square above which a model is said not to describe the data (common practice, no source)."""
@@ -40,6 +42,15 @@ def misfit(fit: FitRecord, statistics: ResidualStatistics) -> bool:
     return reduced is not None and p is not None and reduced > MISFIT and p < _UNLIKELY
 
 
+def blame(prepared: PreparedData, fit: FitRecord, statistics: ResidualStatistics) -> Literal["model", "sigma"] | None:
+    """What a misfit speaks against: the model, or only the uncertainties; None where there is none to speak of."""
+    if prepared.sigma_assumed:
+        return "model" if correlated(statistics) or _worst(statistics.bands).rms_percent > _MISSED else None
+    if not misfit(fit, statistics):
+        return None
+    return "sigma" if only_scatter(fit, statistics) else "model"
+
+
 def verdict(prepared: PreparedData, fit: FitRecord, statistics: ResidualStatistics) -> tuple[bool, str]:
     """Whether the model describes the data, and the sentence that says so.
 
@@ -53,18 +64,39 @@ def verdict(prepared: PreparedData, fit: FitRecord, statistics: ResidualStatisti
         return False, f"The fit did not converge ({fit.message}); its numbers are not to be used."
     if reduced is None or p is None:
         return False, "As many parameters as points: the model passes through them and nothing tests it."
-    if misfit(fit, statistics) and only_scatter(fit, statistics):
+    if prepared.sigma_assumed:
+        return _with_assumed_sigma(prepared, fit, statistics)
+    if blame(prepared, fit, statistics) == "sigma":
         return True, (
-            f"The model {fit.terms!r} follows the data without a pattern in the residuals, but they are "
+            f"The model {name_of(fit)!r} follows the data without a pattern in the residuals, but they are "
             f"{plain(reduced**0.5)} times larger than {stated} (reduced chi-square {plain(reduced)}): those are too "
             f"small, or the scatter is real (rms residual {percent_text(statistics.rms_percent)})."
         )
-    if misfit(fit, statistics):
+    if blame(prepared, fit, statistics) == "model":
         return False, (
-            f"The model {fit.terms!r} does not describe the data: the residuals are {plain(reduced**0.5)} times larger "
-            f"than {stated} (reduced chi-square {plain(reduced)}); {_where(statistics)}."
+            f"The model {name_of(fit)!r} does not describe the data: the residuals are {plain(reduced**0.5)} times "
+            f"larger than {stated} (reduced chi-square {plain(reduced)}); {_where(statistics)}."
         )
     return True, _described(fit, statistics, stated, reduced, p)
+
+
+def _with_assumed_sigma(prepared: PreparedData, fit: FitRecord, statistics: ResidualStatistics) -> tuple[bool, str]:
+    """Without any known sigma only a pattern in the residuals, or a gross miss, speaks against a model."""
+    rms = percent_text(statistics.rms_percent)
+    if blame(prepared, fit, statistics) == "model":
+        return False, (
+            f"The model {name_of(fit)!r} does not describe the data: its residuals (rms {rms}) are no mere scatter; "
+            f"{_where(statistics)}."
+        )
+    return True, (
+        f"The model {name_of(fit)!r} follows the data with an rms residual of {rms}; whether that is the scatter of "
+        "the measurement cannot be told, because no uncertainty was stated and none could be estimated."
+    )
+
+
+def name_of(fit: FitRecord) -> str:
+    """Terms of a fit, with its form of Cp-Cv where it has one."""
+    return fit.terms if fit.cp_cv == "none" else f"{fit.terms} with {fit.cp_cv}"
 
 
 def _where(statistics: ResidualStatistics) -> str:
@@ -78,17 +110,17 @@ def _where(statistics: ResidualStatistics) -> str:
 def _described(fit: FitRecord, statistics: ResidualStatistics, stated: str, reduced: float, p: float) -> str:
     if reduced > 1 and p < _UNLIKELY:
         text = (
-            f"The model {fit.terms!r} comes close to the data but misses them by more than chance allows "
+            f"The model {name_of(fit)!r} comes close to the data but misses them by more than chance allows "
             f"(reduced chi-square {plain(reduced)}, p = {p:.1g}; {_where(statistics)})"
         )
     elif _worst(statistics.bands).rms_percent > _MISSED:
         text = (
-            f"The model {fit.terms!r} stays within {stated} (reduced chi-square {plain(reduced)}), but those are wide: "
-            f"{_where(statistics)}, so the fit hardly judges the model there"
+            f"The model {name_of(fit)!r} stays within {stated} (reduced chi-square {plain(reduced)}), but those are "
+            f"wide: {_where(statistics)}, so the fit hardly judges the model there"
         )
     else:
         text = (
-            f"The model {fit.terms!r} describes the data within {stated} (reduced chi-square {plain(reduced)}, "
+            f"The model {name_of(fit)!r} describes the data within {stated} (reduced chi-square {plain(reduced)}, "
             f"rms residual {percent_text(statistics.rms_percent)})"
         )
     if correlated(statistics):
@@ -101,7 +133,7 @@ def plain(value: float) -> str:
     return percent_text(value).removesuffix(" %") if abs(value) <= 1000 else f"{value:.0f}"
 
 
-def validity_facts(fit: FitRecord, statistics: ResidualStatistics) -> tuple[ValidityFact, ...]:
+def validity_facts(prepared: PreparedData, fit: FitRecord, statistics: ResidualStatistics) -> tuple[ValidityFact, ...]:
     """The yes-or-no facts without which no fit is shown."""
     at_bound = [each.name for each in fit.parameters if each.status == "at_bound"]
     lost = [each.name for each in fit.parameters if each.status == "undetermined"]
@@ -122,7 +154,7 @@ def validity_facts(fit: FitRecord, statistics: ResidualStatistics) -> tuple[Vali
             f"{fit.distinct_minima} within a chi-square of 4, {fit.starts_tried} starts",
         ),
     ]
-    if reduced is not None and p is not None:
+    if reduced is not None and p is not None and not prepared.sigma_assumed:
         facts.append(
             ValidityFact(
                 "chi-square within reach of chance",

@@ -8,7 +8,7 @@ from typing import Literal, cast
 import numpy as np
 from numpy.typing import NDArray
 
-from ..errors import FitError, InputError, nearest
+from ..errors import FitError, InputError, TooFewPointsError, nearest
 from ..models import Model, Parametrisation, build_model
 from ..records import (
     FitRecord,
@@ -24,7 +24,7 @@ from .setup import default_mode_sum, parametrise
 from .solve import Solution, minimise_with_lmfit
 from .start import SearchResult, search
 
-__all__ = ["fit_model", "requested_model"]
+__all__ = ["fit_model", "refuse_cp_cv_of_cv", "requested_model"]
 
 
 def requested_model(settings: ModelSettings) -> Model:
@@ -46,6 +46,15 @@ def requested_model(settings: ModelSettings) -> Model:
                     f"{nearest(name, model.names)}"
                 )
     return model
+
+
+def refuse_cp_cv_of_cv(prepared: PreparedData, settings: ModelSettings) -> None:
+    """Refuse a form of Cp - Cv for data that are Cv (InputError)."""
+    if prepared.measurement.quantity == "Cv" and settings.cp_cv not in (None, "none"):
+        raise InputError(
+            f"the data are Cv, so there is no Cp-Cv to describe; leave --cp-cv {settings.cp_cv} out "
+            "(or say --quantity Cp if they are heat capacities at constant pressure)"
+        )
 
 
 def fit_model(
@@ -79,11 +88,7 @@ def fit_model(
     model = requested_model(settings)
     sample = prepared.measurement.sample
     data = (prepared.temperature, prepared.heat_capacity, prepared.sigma)
-    if prepared.measurement.quantity == "Cv" and model.cp_cv.parameter is not None:
-        raise InputError(
-            f"the data are Cv, so there is no Cp-Cv to describe; leave --cp-cv {settings.cp_cv} out "
-            "(or say --quantity Cp if they are heat capacities at constant pressure)"
-        )
+    refuse_cp_cv_of_cv(prepared, settings)
     if sample.insulator and any(each.term.name == "electronic" for each in model.placed):
         raise InputError(
             f"the sample is declared an insulator, but {model.expression!r} has an electronic term; leave one of the "
@@ -91,7 +96,7 @@ def fit_model(
         )
     par = parametrise(model, settings, sample, data[0], data[1])
     if data[0].size < par.free.size:
-        raise InputError(
+        raise TooFewPointsError(
             f"{data[0].size} points are too few for the {par.free.size} free parameters of {model.expression!r}; "
             "use fewer terms, fix a parameter, or widen the window"
         )
@@ -122,15 +127,13 @@ def _record(
     reduced = solution.chi_square / dof if dof > 0 else 1.0
     scaled = prepared.sigma_kind == "estimated"
     matrix = absolute.matrix * (reduced if scaled else 1.0)
-    if held is not None:
-        matrix = matrix + carried_covariance(interior, values, *data, held)
+    carried = np.zeros_like(matrix) if held is None else carried_covariance(interior, values, *data, held)
+    matrix = matrix + carried
+    # misfit enlarges what comes from the data, not what held parameters bring along
+    stated = (matrix - carried) * (1.0 if scaled else max(1.0, reduced)) + carried
     status = _statuses(par, bound, absolute, values, np.sqrt(np.diag(matrix)))
     order = _sorted_order(model, values, settings)
-    u_scale = 1.0 if scaled else float(np.sqrt(max(1.0, reduced)))
-    parameters = tuple(
-        _parameter(i, model, par, values, matrix, status[i], u_scale, float(found.best.values[i])) for i in order
-    )
-    named = tuple(_renamed(each, model.names[k]) for k, each in enumerate(parameters))
+    parameters = _parameters(model, par, values, (matrix, stated), status, found.best.values, order)
     return FitRecord(
         terms=model.expression,
         mode_sum=cast(Literal["fixed", "free"], default_mode_sum(settings, prepared.measurement.sample)),
@@ -139,7 +142,7 @@ def _record(
         names=model.names,
         values=values[order],
         covariance=matrix[np.ix_(order, order)],
-        parameters=named,
+        parameters=parameters,
         covariance_kind="scaled" if scaled else "absolute",
         scale_factor=reduced,
         condition=absolute.condition,
@@ -151,6 +154,7 @@ def _record(
         evaluations=solution.evaluations,
         starts_tried=found.starts_tried,
         distinct_minima=found.distinct_minima,
+        carried=None if held is None else carried[np.ix_(order, order)],
     )
 
 
@@ -172,25 +176,39 @@ def _statuses(
     return status
 
 
+def _parameters(
+    model: Model,
+    par: Parametrisation,
+    values: FloatArray,
+    covariances: tuple[FloatArray, FloatArray],
+    status: list[ParameterStatus],
+    start: FloatArray,
+    order: NDArray[np.intp],
+) -> tuple[ParameterValue, ...]:
+    """Every parameter, equal terms in their order and named by their new places."""
+    found = [_parameter(i, model, par, values, covariances, status[i], float(start[i])) for i in order]
+    return tuple(replace(each, name=name) for each, name in zip(found, model.names, strict=True))
+
+
 def _parameter(
     i: int,
     model: Model,
     par: Parametrisation,
     values: FloatArray,
-    matrix: FloatArray,
+    covariances: tuple[FloatArray, FloatArray],
     status: ParameterStatus,
-    u_scale: float,
     start: float,
 ) -> ParameterValue:
     spec = model.specs[i]
-    u_fit = None if status in ("undetermined", "at_bound") else float(np.sqrt(matrix[i, i]))
-    if status == "tied" and u_fit == 0 and any(k in par.free for k in par.others):
-        u_fit = None  # every mode count that it follows from is at a bound
+    u_fit, u = (float(np.sqrt(max(each[i, i], 0.0))) for each in covariances)
+    # a mode count that follows from others, every one of them at a bound, is no better known than they are
+    stuck = status == "tied" and u_fit == 0 and any(k in par.free for k in par.others)
+    given = status not in ("undetermined", "at_bound") and not stuck
     return ParameterValue(
         name=model.names[i],
         value=float(values[i]),
-        u=None if u_fit is None else u_fit * u_scale,
-        u_fit=u_fit,
+        u=u if given else None,
+        u_fit=u_fit if given else None,
         unit=spec.unit,
         status=status,
         low=float(par.low[i]),
@@ -198,10 +216,6 @@ def _parameter(
         start=start,
         meaning=spec.meaning,
     )
-
-
-def _renamed(parameter: ParameterValue, name: str) -> ParameterValue:
-    return replace(parameter, name=name)
 
 
 def _sorted_order(model: Model, values: FloatArray, settings: ModelSettings) -> NDArray[np.intp]:

@@ -19,6 +19,7 @@ Interval = tuple[float, float]
 _FEWEST_POINTS: Final = 10
 _LEAST_SCATTER: Final = 1e-4
 _ASSUMED: Final = 0.01
+_ASSUMED_WORD: Final = "assumed"
 _WIDEST_SPAN: Final = 6.0  # seven neighbours over a wider factor in T curve more than a parabola: 2 to 7 % for 0.5 %
 
 
@@ -68,6 +69,7 @@ def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Seq
         reasons=reasons,
         sigma_kind=kind,
         sigma_text=text,
+        sigma_assumed=kind == "estimated" and text.startswith(_ASSUMED_WORD),
     )
 
 
@@ -127,12 +129,12 @@ def _estimated(temperature: FloatArray, heat_capacity: FloatArray, run: NDArray[
     scatter = found.scatter
     if scatter is not None and scatter >= _LEAST_SCATTER:
         text = f"estimated from local scatter: {_percent(scatter)} of the heat capacity"
-        text += " (between sets of repeats, each averaged)" if found.sets else ""
+        text += " (of one point, between and within sets of repeats)" if found.sets else ""
         return scatter * heat_capacity, text
     why = "the local scatter is too small to be noise"
     if scatter is None:
         why = "the points are too far apart to estimate it" if enough else "too few points to estimate it from"
-    return _ASSUMED * heat_capacity, f"assumed: {_ASSUMED * 100:g} % of the heat capacity ({why})"
+    return _ASSUMED * heat_capacity, f"{_ASSUMED_WORD}: {_ASSUMED * 100:g} % of the heat capacity ({why})"
 
 
 def _percent(scatter: float) -> str:

@@ -46,14 +46,30 @@ def repeat_sets(temperature: FloatArray) -> NDArray[np.intp] | None:
     return np.concatenate([[0], np.cumsum(~inside)])
 
 
-def _averaged(temperature: FloatArray, heat_capacity: FloatArray) -> tuple[FloatArray, FloatArray, bool]:
+@dataclass(frozen=True)
+class _Averaged:
+    """Sets of repeats as single points; `inside` is what their spread adds to the variance of one point."""
+
+    temperature: FloatArray
+    heat_capacity: FloatArray
+    sets: bool
+    inside: float
+
+
+def _averaged(temperature: FloatArray, heat_capacity: FloatArray) -> _Averaged:
     sets = repeat_sets(temperature)
     if sets is None:
-        return temperature, heat_capacity, False
+        return _Averaged(temperature, heat_capacity, False, 0.0)
     count = np.bincount(sets)
     mean_t = np.exp(np.bincount(sets, weights=np.log(temperature)) / count)
     mean_c = np.exp(np.bincount(sets, weights=np.log(heat_capacity)) / count)
-    return mean_t, mean_c, True
+    # a set's own slope in T is taken out before its spread is looked at
+    log_t, log_c = np.log(temperature) - np.log(mean_t)[sets], np.log(heat_capacity) - np.log(mean_c)[sets]
+    slope = np.gradient(np.log(mean_c), np.log(mean_t))[sets]
+    freedom = max(int(temperature.size - count.size), 1)
+    within = float(((log_c - slope * log_t) ** 2).sum()) / freedom
+    size = temperature.size / count.size
+    return _Averaged(mean_t, mean_c, True, within * (1 - 1 / size))
 
 
 def pooled_scatter(
@@ -75,13 +91,13 @@ def pooled_scatter(
     found: list[tuple[int, float]] = []
     any_sets = False
     for each in np.unique(run):
-        T, C, sets = _averaged(temperature[run == each], heat_capacity[run == each])
-        if T.size < fewest or neighbour_span(T) > widest:
+        averaged = _averaged(temperature[run == each], heat_capacity[run == each])
+        if averaged.temperature.size < fewest or neighbour_span(averaged.temperature) > widest:
             continue
-        scatter = local_scatter(T, C)
+        scatter = local_scatter(averaged.temperature, averaged.heat_capacity)
         if scatter is not None:
-            found.append((T.size, scatter))
-            any_sets = any_sets or sets
+            found.append((averaged.temperature.size, math.hypot(scatter, math.sqrt(averaged.inside))))
+            any_sets = any_sets or averaged.sets
     if not found:
         return Scatter(None, False)
     weights = sum(count for count, _ in found)

@@ -146,6 +146,8 @@ class PreparedData(Frozen):
         Why a measured point is not fitted; None for the fitted ones.
     sigma_text : str
         The sigma model in force, in words.
+    sigma_assumed : bool
+        True where nothing was stated and nothing could be estimated: only the relative sizes of sigma mean anything.
     """
 
     measurement: Measurement
@@ -157,3 +159,4 @@ class PreparedData(Frozen):
     reasons: tuple[str | None, ...]
     sigma_kind: SigmaKind
     sigma_text: str
+    sigma_assumed: bool = False

@@ -91,9 +91,9 @@ class EnergyDifference:
 
     low: float
     high: float
-    energy: float
+    energy: float | None
     energy_u: float | None
-    entropy: float
+    entropy: float | None
     entropy_u: float | None
     reason: str | None
     quantity: Quantity

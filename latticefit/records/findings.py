@@ -65,6 +65,8 @@ class FitRecord(Frozen):
         Reduced chi-square; what an absolute covariance would be multiplied by (already done when "scaled").
     condition : float
         Condition number of the covariance of the free parameters scaled to unit diagonal.
+    carried : ndarray, shape (p, p), or None
+        The part of `covariance` that comes from the uncertainty of held parameters; no misfit enlarges it.
     starts_tried, distinct_minima : int
         Local fits made to find the minimum, and distinct minima found within a chi-square of 4 of the best.
     """
@@ -88,6 +90,7 @@ class FitRecord(Frozen):
     evaluations: int
     starts_tried: int
     distinct_minima: int
+    carried: FloatArray | None = None
 
 
 @dataclass(frozen=True)
@@ -201,7 +204,7 @@ class Candidate:
     chi_square: float
     reduced_chi_square: float | None
     aicc: float | None
-    bic: float
+    bic: float | None
     delta_aicc: float | None
     weight: float
     plausible: bool
@@ -210,8 +213,12 @@ class Candidate:
 
 @dataclass(frozen=True)
 class Comparison:
-    """Candidates on the same points with the same sigmas, the position of the chosen one, and why, in one sentence."""
+    """Candidates on the same points with the same sigmas, the position of the chosen one, and why, in one sentence.
+
+    `dropped` names the candidates that could not be fitted at all, each with its reason.
+    """
 
     candidates: tuple[Candidate, ...]
     chosen: int
     because: str
+    dropped: tuple[str, ...] = ()

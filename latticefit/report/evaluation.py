@@ -57,11 +57,13 @@ def evaluation_text(
         lines.append(
             f"S({each.high:g} K)-S({each.low:g} K) = {_with_u(each.entropy, each.entropy_u, _unit(each.per, True))}"
         )
-        lines += [f"  u withheld: {each.reason}"] if each.reason else []
+        lines += [f"  withheld: {each.reason}"] if each.reason else []
     return "\n".join(lines) + "\n"
 
 
-def _with_u(value: float, u: float | None, unit: str) -> str:
+def _with_u(value: float | None, u: float | None, unit: str) -> str:
+    if value is None:
+        return "not given"
     return plus_minus(value, u, unit) + ("" if u is not None else " (u withheld)")
 
 

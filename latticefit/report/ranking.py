@@ -25,6 +25,7 @@ def comparison_record(comparison: Comparison) -> dict[str, Any]:
         "candidates": [_candidate(each) for each in comparison.candidates],
         "chosen": {"terms": chosen.terms, "mode_sum": chosen.mode_sum, "cp_cv": chosen.cp_cv},
         "because": comparison.because,
+        "dropped": list(comparison.dropped),
     }
 
 
@@ -106,5 +107,6 @@ def ranking_text(comparison: Comparison, name: str) -> str:
         "",
         *wrap(f"Chosen: {chosen.terms}{form}: {comparison.because}.", 80),
         *wrap(_COLUMNS, 80),
+        *(line for each in comparison.dropped for line in wrap(f"Left out: {each}", 80)),
     ]
     return "\n".join(lines) + "\n"

@@ -142,6 +142,7 @@ def _covariance(analysis: Analysis) -> dict[str, Any]:
     return {
         "names": list(fit.names),
         "matrix": [_numbers(row) for row in fit.covariance],
+        "carried": None if fit.carried is None else [_numbers(row) for row in fit.carried],
         "kind": fit.covariance_kind,
         "scale_factor": _number(fit.scale_factor),
         "inflation_autocorrelation": _inflation(analysis.diagnosis.statistics.lag1_correlation),
