@@ -29,7 +29,14 @@ def default_grid(lowest: float, highest: float) -> FloatArray:
 
     Steps grow with temperature the way printed tables do; 298.15 K is added by `functions_table`'s callers.
     """
-    steps = ((0.1, 1.0, 0.1), (1.0, 5.0, 0.5), (5.0, 20.0, 1.0), (20.0, 50.0, 5.0), (50.0, 3000.0, 10.0))
+    steps = (
+        (0.1, 1.0, 0.1),
+        (1.0, 5.0, 0.5),
+        (5.0, 20.0, 1.0),
+        (20.0, 50.0, 5.0),
+        (50.0, 300.0, 10.0),
+        (300.0, 5000.0, 50.0),
+    )
     grid = np.concatenate([np.round(np.arange(low, high, step), 6) for low, high, step in steps])
     kept = grid[(grid >= lowest / 5) & (grid <= highest)]
     return np.asarray(kept if kept.size else np.array([lowest]))
