@@ -8,6 +8,7 @@ from typing import Final
 from scipy import constants as _codata
 
 __all__ = [
+    "AVOGADRO_CONSTANT",
     "CALORIE_THERMOCHEMICAL",
     "DEBYE_CUBIC",
     "GAS_CONSTANT",
@@ -17,6 +18,9 @@ __all__ = [
 
 GAS_CONSTANT: Final[float] = float(_codata.R)
 """Molar gas constant R, J/(mol K)."""
+
+AVOGADRO_CONSTANT: Final[float] = float(_codata.N_A)
+"""Avogadro constant, 1/mol (exact since the SI of 2019)."""
 
 DEBYE_CUBIC: Final[float] = 12 * pi**4 * GAS_CONSTANT / 5
 """12 pi^4 R/5, J/(mol K): heat capacity of one mole of atoms is this times (T/theta_D)^3 at low T (Debye 1912)."""

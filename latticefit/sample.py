@@ -35,9 +35,9 @@ def parse_formula(text: str) -> Formula:
     Parameters
     ----------
     text : str
-        For example ``Al2O3``, ``Mg0.9Fe0.1O``, ``Ca(OH)2``, ``Li[7]F``; hydrates as ``CaSO4·2H2O``, also with ``*``,
-        ``.`` or ``+``. A point before water is a hydrate point (``CaSO4.2H2O`` holds two waters), any other point
-        between digits is a decimal point.
+        For example ``Al2O3``, ``Mg0.9Fe0.1O``, ``Ca(OH)2``, ``Li[7]F`` or ``⁷LiF``; hydrates as
+        ``CaSO4·2H2O``, also with ``*``, ``.`` or ``+``. A point before water is a hydrate point (``CaSO4.2H2O`` holds
+        two waters), any other point between digits is a decimal point.
 
     Raises
     ------
@@ -61,13 +61,19 @@ def parse_formula(text: str) -> Formula:
 
 
 def _one_separator(text: str) -> str:
-    plain = unicodedata.normalize("NFKC", text).strip()
+    plain = re.sub(r"\^?\{?([⁰¹²³⁴⁵⁶⁷⁸⁹]{1,3}|(?<=\^)\d{1,3}|(?<=\^\{)\d{1,3})\}?([A-Z][a-z]?)", _isotope, text)
+    plain = unicodedata.normalize("NFKC", plain).strip()
     plain = re.sub(r"\s*[·⋅•∙*+]\s*", "+", plain)
     plain = re.sub(r"(?<=\+)([\d./\u2044]+)\s+", r"\1", plain)
     plain = re.sub(r"(?<=[A-Z)\]a-z\d])\.(?=[A-Z(])", "+", plain)
     # "CaSO4.2H2O": a point before a count of waters, unless the digits before it are a plain 0 ("Mg0.9H2O")
     plain = re.sub(r"(?<![A-Za-z+.]0)\.(?=\d*(?:\.\d+)?(?:H2O|D2O)(?![\d.]))", "+", plain)
     return re.sub(r"(?<=\+)(\d+)[/\u2044](\d+)", lambda part: _fraction(part[1], part[2]), plain)
+
+
+def _isotope(found: re.Match[str]) -> str:
+    """Write ``⁷Li`` and ``^7Li`` as ``Li[7]``."""
+    return f"{found[2]}[{unicodedata.normalize('NFKC', found[1])}]"
 
 
 def _fraction(above: str, below: str) -> str:
@@ -147,7 +153,8 @@ def _positive(text: str | None, unit: str, name: str) -> float | None:
 def sample_notes(settings: SampleSettings) -> tuple[str, ...]:
     """Return in words what was decided about the sample that a person should know.
 
-    These are: atoms or molar mass that differ from those of the formula, and a point read as a hydrate point.
+    These are: atoms or molar mass that differ from those of the formula, a point read as a hydrate point, and
+    a leading number.
     """
     if settings.formula is None:
         return ()
@@ -156,6 +163,8 @@ def sample_notes(settings: SampleSettings) -> tuple[str, ...]:
     if "+" in formula.read_as and formula.text.count(".") > formula.read_as.count("."):
         grams = f"{formula.molar_mass * 1000:.6g} g/mol, {formula.atoms:g} atoms"
         notes.append(f"formula {formula.text!r} read as {formula.read_as!r} ({grams})")
+    if formula.read_as[0].isdigit():
+        notes.append(f"formula {formula.text!r} read as that many times the rest; an isotope is written as in 'Li[7]F'")
     if settings.atoms is not None and not math.isclose(settings.atoms, formula.atoms, rel_tol=1e-9):
         notes.append(f"{settings.atoms:g} atoms as stated, although {formula.text!r} has {formula.atoms:g}")
     if settings.molar_mass is not None:

@@ -13,7 +13,7 @@ from dataclasses import dataclass
 from functools import lru_cache
 from typing import TYPE_CHECKING, Any, Final, Literal
 
-from .constants import CALORIE_THERMOCHEMICAL
+from .constants import AVOGADRO_CONSTANT, CALORIE_THERMOCHEMICAL, GAS_CONSTANT
 from .errors import InputError, nearest
 
 if TYPE_CHECKING:
@@ -33,7 +33,8 @@ __all__ = [
 UnitBasis = Literal["mol", "mol_atoms", "gram", "sample"]
 
 # The pound is 0.45359237 kg exactly (international yard and pound agreement, 1959). The Btu is the International
-# Table one, defined by 1 Btu/(lb degF) = 1 cal_IT/(g K) = 4.1868 J/(g K) (ISO 80000-5:2007; from memory).
+# Table one, defined by 1 Btu/(lb degF) = 1 cal_IT/(g K) = 4.1868 J/(g K) (ISO 80000-5:2007; from memory). The
+# electronvolt, N_A and k_B = R/N_A are exact in the SI of 2019.
 _DEFINITIONS: Final = f"""
 kilo- = 1e3 = k-
 milli- = 1e-3 = m-
@@ -47,7 +48,13 @@ kelvin = [temperature] = K
 rankine = 5 / 9 kelvin = degR
 joule = [energy] = J
 calorie = {CALORIE_THERMOCHEMICAL!r} joule = cal
+calorie_international = 4.1868 joule = calIT
 btu = 1055.05585262 joule = Btu = BTU
+electronvolt = 1.602176634e-19 joule = eV
+atom = {1 / AVOGADRO_CONSTANT!r} mole_of_atoms
+formula_unit = {1 / AVOGADRO_CONSTANT!r} mole = fu
+boltzmann_constant = {GAS_CONSTANT / AVOGADRO_CONSTANT!r} joule / kelvin = kB
+molar_gas_constant = {GAS_CONSTANT!r} joule / mole / kelvin = R
 """
 
 HEAT_CAPACITY_EXAMPLES: Final = (
@@ -176,6 +183,8 @@ def find_heat_capacity_unit(text: str) -> HeatCapacityUnit | None:
         if dimension.pop("[energy]", 0) != 1 or dimension.pop("[temperature]", 0) != -1:
             continue
         per = next(iter(dimension), None)
+        if per is None and "kB" in expression:
+            return None  # k_B per atom or per formula unit: n times apart
         if len(dimension) <= 1 and per in _BASIS_OF_DIMENSION and dimension.get(per, -1) == -1:
             basis, target = _BASIS_OF_DIMENSION[per]
             return HeatCapacityUnit(_standard_spelling(unit), _factor(unit, target), basis)
@@ -264,6 +273,8 @@ def _standard_spelling(unit: Any) -> str:
     numerator, *denominators = f"{unit:~C}".split("/")
     denominators.sort(key=lambda symbol: symbol == "K" or symbol == "degR")
     below = " ".join(denominators).replace("molatom", "mol-atom").replace("degR", "degF")
+    if not below:
+        return numerator
     return f"{numerator}/({below})" if len(denominators) > 1 else f"{numerator}/{below}"
 
 
@@ -272,9 +283,15 @@ _REWRITES: Final = (
     (r"μ", "u"),
     (r"[·⋅•∙×]", " "),
     (r"\*\*|\^", "^"),
-    (r"\bcal_(?:th)\b", "cal"),
+    (r"\b(k?cal)_?\{?(?:th)\}?(?![A-Za-z])", r"\1"),
+    (r"\b(k?cal)(?:_?\{?IT\}?(?![A-Za-z])|\s?\(IT\))|\bIT (k?cal)\b", r"\1\2IT"),
+    (r"\bk_?\{?(?:B|\(B\))\}?(?![A-Za-z])", "kB"),
+    (r"\bf\.\s?u\.?|\bformula[-_ ]units?\b|\bmolecules?\b", "fu"),
+    (r"(?<=[\w)]) per (?=\w)", "/"),
+    (r"\bmol(?:es?)? (?:of )?atoms?\b", "molatom"),
     (r"\b(?:g|mol)[-_ ]?(?:atoms?|at)\b", "molatom"),
     (r"(?:°|\bdeg[_ ]?)C\b|(?<![A-Za-z])C\b", "K"),
+    (r"(?:°|\bdeg[_ ]?)R\b", "degR"),
     (r"(?:°|\bdeg[_ ]?)F\b|(?<![A-Za-z])F\b", "degR"),
     (r"\bper\b", "/"),
 )

@@ -151,7 +151,8 @@ def test_the_gas_constant_stands_in_one_file() -> None:
 
 def test_every_library_that_is_imported_is_declared() -> None:
     """What latticefit imports by name stands in pyproject.toml, also where another library would bring it along."""
-    declared = tomllib.loads((PACKAGE.parent / "pyproject.toml").read_text(encoding="utf-8"))["project"]["dependencies"]
+    project = tomllib.loads((PACKAGE.parent / "pyproject.toml").read_text(encoding="utf-8"))["project"]
+    declared = [*project["dependencies"], *project["optional-dependencies"]["spreadsheet"]]
     known = {re.split(r"[<>=]", each)[0].replace("-", "_") for each in declared}
     imported = set()
     for module in MODULES:

@@ -1,149 +1,18 @@
-"""Which column is which: names and units in headers, and the choice by name, number or recognition."""
+"""Which column is which: the choice by name, by number or by recognition."""
 
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Iterable, Sequence
+from collections.abc import Callable
 from dataclasses import dataclass
-from typing import Final, Literal
+from typing import Final
 
 from ..errors import InputError
-from ..records import Quantity
-from ..units import HeatCapacityUnit, TemperatureUnit, find_heat_capacity_unit, find_temperature_unit
-from .table import Table
+from ..units import HeatCapacityUnit, TemperatureUnit
+from .headers import Column, is_uncertainty_of_anything, names_heat_capacity, names_temperature, normal_name
 from .wording import listed, offered, quoted
 
-__all__ = [
-    "Column",
-    "choose_columns",
-    "describe_columns",
-    "find_column",
-    "names_uncertainty",
-    "quantity_of",
-    "uncertainty_columns",
-]
-
-ColumnUnit = HeatCapacityUnit | TemperatureUnit | Literal["percent"]
-
-_PERCENT: Final = frozenset({"%", "percent", "per cent", "pct"})
-_TEMPERATURE_NAME: Final = re.compile(r"(?:sample )?(?:t|temp|temperature)(?: ?(?:sample|90|68))?")
-_HEAT_CAPACITY_NAME: Final = re.compile(r"(?:sample )?(?:c(?:[ ,]?[pv])?(?:[ ,]?m)?|hc)(?: (?:sample|total))?")
-_UNCERTAINTY_NAME: Final = re.compile(
-    r"^[uU](?:\s*\(|_|\s|$)|^[uU]_?[cC][pPvV]?$|σ|(?i:(?<![a-z])(?:sigma|error|err|std|stdev|unc|uncertainty)(?![a-z]))"
-)
-_OF_TEMPERATURE: Final = re.compile(r"(?<![A-Za-z])T(?![A-Za-z])|(?i:temp)")
-_COVERAGE: Final = (
-    re.compile(r"\(\s*k\s*=\s*(\d+(?:\.\d+)?)\s*\)|[,;]?\s*(?<![A-Za-z])k\s*=\s*(\d+(?:\.\d+)?)"),
-    re.compile(r"(?<![\w.])(\d)\s*[-_ ]?(?=sigma|σ)()"),
-)
-
-
-@dataclass(frozen=True)
-class Column:
-    """A column: 0-based index, header as written (None without), its name without unit, unit, coverage factor."""
-
-    index: int
-    header: str | None
-    name: str
-    unit: ColumnUnit | None
-    coverage_factor: float | None
-
-    @property
-    def label(self) -> str:
-        """What messages and reports call it."""
-        return self.header if self.header else f"column {self.index + 1}"
-
-
-def describe_columns(table: Table) -> tuple[Column, ...]:
-    """Return every column of a table with the name, unit and coverage factor that its header states."""
-    headers: Iterable[str | None] = [None] * table.width if table.headers is None else table.headers
-    return tuple(_describe(index, header or None) for index, header in enumerate(headers))
-
-
-def _describe(index: int, header: str | None) -> Column:
-    if header is None:
-        return Column(index, None, "", None, None)
-    rest, coverage = header, None
-    for pattern in _COVERAGE:
-        match = pattern.search(rest)
-        if match is not None and coverage is None:
-            coverage = float(match[1] or match[2]) or None
-            rest = rest[: match.start()] + rest[match.end() :]
-    name, unit = _split_header(rest.strip())
-    return Column(index, header, name, unit, coverage)
-
-
-def _split_header(header: str) -> tuple[str, ColumnUnit | None]:
-    """Split ``Cp [mJ/mol-K]``, ``T/K``, ``Cp / J mol-1 K-1``, ``Cv_cal_molK`` into name and unit.
-
-    The first place from the left after which a whole unit stands is taken, so that the unit is as long as can be.
-    """
-    for place, sign in enumerate(header[:200]):
-        if sign not in "([/_, " or place == 0:
-            continue
-        name = header[:place].strip(" _/,")
-        unit = _unit_of(_unbracketed(header[place:].lstrip("/_, ")), name)
-        if unit is not None:
-            return name, unit
-    return header, None
-
-
-def _unbracketed(text: str) -> str:
-    text = text.strip()
-    pairs = {"(": ")", "[": "]"}
-    while len(text) > 1 and text[-1] == pairs.get(text[0]):
-        depth, inner = 0, text[1:-1]
-        for sign in inner:  # "(mol K)/(g K)" is not one pair of brackets
-            depth += (sign in "([") - (sign in ")]")
-            if depth < 0:
-                return text
-        text = inner.strip()
-    return text
-
-
-def _unit_of(text: str, name: str) -> ColumnUnit | None:
-    if text.casefold() in _PERCENT:
-        return "percent"
-    temperature = find_temperature_unit(text)
-    if temperature is not None:
-        bare_c = text.casefold() == "c"  # "T_C" is in degC, "sample_C" is a heat capacity
-        return None if bare_c and not _names_temperature(name) else temperature
-    return find_heat_capacity_unit(text)
-
-
-def _normal(name: str) -> str:
-    return re.sub(r"[\s_.°]+", " ", name.casefold()).strip()
-
-
-def _names_temperature(name: str) -> bool:
-    return _TEMPERATURE_NAME.fullmatch(_normal(name)) is not None
-
-
-def _names_heat_capacity(name: str) -> bool:
-    normal = _normal(name)
-    return _HEAT_CAPACITY_NAME.fullmatch(normal) is not None or "heat capacity" in normal or "specific heat" in normal
-
-
-def names_uncertainty(column: Column) -> bool:
-    """Say whether a header names an uncertainty of something other than the temperature."""
-    stated = column.coverage_factor is not None or _UNCERTAINTY_NAME.search(column.name) is not None
-    return stated and _OF_TEMPERATURE.search(column.name) is None
-
-
-def uncertainty_columns(columns: Sequence[Column], taken: Sequence[Column]) -> list[Column]:
-    """Return the columns whose header names an uncertainty and does not give it a unit of something else."""
-    usable = [column for column in columns if column not in taken and not isinstance(column.unit, TemperatureUnit)]
-    return [column for column in usable if names_uncertainty(column)]
-
-
-def quantity_of(column: Column) -> Quantity:
-    """Return "Cv" for a header that says so, else "Cp"."""
-    normal = _normal(column.name)
-    says_cv = re.search(r"(?<![a-z])c[ ,]?v(?![a-z])|constant volume|isochoric", normal)
-    return "Cv" if says_cv else "Cp"
-
-
-# ------------------------------------------------------------------------------------------------------- the choice
+__all__ = ["choose_columns", "find_column"]
 
 
 def choose_columns(
@@ -234,30 +103,32 @@ class _Role:
 
 
 _TEMPERATURE: Final = _Role(
-    "temperature", "--temperature", _names_temperature, TemperatureUnit, re.compile(r"\b(?:rise|delta|d ?t|step)\b")
+    "temperature", "--temperature", names_temperature, TemperatureUnit, re.compile(r"\b(?:rise|delta|d ?t|step)\b")
 )
 _HEAT_CAPACITY: Final = _Role(
-    "heat capacity", "--heat-capacity", _names_heat_capacity, HeatCapacityUnit, re.compile(r"^s\b|entropy|addenda")
+    "heat capacity", "--heat-capacity", names_heat_capacity, HeatCapacityUnit, re.compile(r"^s\b|entropy|addenda")
 )
 
 
 def _recognise(columns: tuple[Column, ...], taken: Column | None, role: _Role, shown: str) -> Column:
     """Take the one column named like the quantity, in its unit or in none; else the one column in its unit."""
-    free = [column for column in columns if column != taken and not _is_uncertainty_of_anything(column)]
+    free = [column for column in columns if column != taken and not is_uncertainty_of_anything(column)]
     named = [column for column in free if role.named(column.name) and isinstance(column.unit, role.unit | None)]
     in_unit = [column for column in free if isinstance(column.unit, role.unit)]
-    rest = [column for column in in_unit if not role.other_name.search(_normal(column.name))]
+    rest = [column for column in in_unit if not role.other_name.search(normal_name(column.name))]
     candidates = named or rest
     if len(candidates) == 1:
         return candidates[0]
     if not candidates and taken is not None and role.named(taken.name):
         raise InputError(f"{shown}: {quoted(taken.label)} looks like the {role.what}, but is chosen as something else")
+    unread = next((column for column in free if role.named(re.split(r"\s*[/(\[]", column.name)[0])), None)
+    if not candidates and unread is not None and unread.unit is None:
+        raise InputError(
+            f"{shown}: the unit in {quoted(unread.label)} cannot be read; choose the column by {role.option} and give "
+            f"its unit by {role.option}-unit"
+        )
     if not candidates:
         headers = listed(column.label for column in columns)
         raise InputError(f"{shown}: no column is named like a {role.what}; choose one of {headers} by {role.option}")
     claims = listed(column.label for column in candidates)
     raise InputError(f"{shown}: columns {claims} may each be the {role.what}; choose one by {role.option}")
-
-
-def _is_uncertainty_of_anything(column: Column) -> bool:
-    return column.coverage_factor is not None or _UNCERTAINTY_NAME.search(column.name) is not None

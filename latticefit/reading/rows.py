@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -11,9 +12,10 @@ from numpy.typing import NDArray
 
 from ..errors import InputError
 from ..records import FloatArray
-from .columns import Column
-from .table import Row, Table
-from .values import Decimal, Number, mixed_decimals, parse_number
+from .blocks import Row
+from .headers import Column
+from .table import Table
+from .values import Decimal, Number, is_plain, mixed_decimals, parse_number, spelling
 from .wording import quoted
 
 __all__ = ["Cells", "place", "read_cells", "reasons_against", "refuse_bad_sigma", "refuse_too_few"]
@@ -23,7 +25,8 @@ __all__ = ["Cells", "place", "read_cells", "reasons_against", "refuse_bad_sigma"
 class Cells:
     """Numbers of every row in the file's own units, shape (m,), NaN where missing.
 
-    `written_sigma` holds the uncertainties written with the heat capacities, as in ``12.34(5)``.
+    `written_sigma` holds the uncertainties written with the heat capacities, as in ``12.34(5)``, `repairs` the line
+    (None for the whole file) and the words of what was mended in the spelling of the numbers.
     """
 
     temperature: FloatArray
@@ -32,6 +35,7 @@ class Cells:
     written_sigma: FloatArray
     temperature_has_sigma: bool
     decimal: Decimal
+    repairs: tuple[tuple[int | None, str], ...]
 
 
 def read_cells(table: Table, columns: Sequence[Column], shown: str) -> Cells:
@@ -53,7 +57,34 @@ def read_cells(table: Table, columns: Sequence[Column], shown: str) -> Cells:
         written_sigma=np.array(written),
         temperature_has_sigma=any(number.uncertainty is not None for number in numbers[0]),
         decimal=decimal,
+        repairs=(*_unclear_commas(table, columns, decimal), *_respelt(table, columns)),
     )
+
+
+def _unclear_commas(table: Table, columns: Sequence[Column], decimal: Decimal) -> list[tuple[int | None, str]]:
+    """Note decimal commas that could be thousands, because three digits follow each of them."""
+    if decimal == "point":
+        return []
+    cells = [cell for row in table.rows for column in columns if "," in (cell := table.cell(row, column.index))]
+    if not all(re.fullmatch(r"[+-]?[1-9]\d{0,2},\d{3}", cell, re.ASCII) for cell in cells):
+        return []
+    return [(None, f"three digits follow every comma, as in {quoted(cells[0])}; read as decimal commas, not thousands")]
+
+
+def _respelt(table: Table, columns: Sequence[Column]) -> list[tuple[int | None, str]]:
+    """List the marks and the grouped digits of the cells that are read, line by line."""
+    repairs: list[tuple[int | None, str]] = []
+    for row in table.rows:
+        for column in columns:
+            cell = table.cell(row, column.index)
+            if is_plain(cell):
+                continue
+            found = spelling(cell)
+            if found.mark is not None:
+                repairs.append((row.line, f"{quoted(cell)} in {_column(column)}: mark {quoted(found.mark)} not read"))
+            if found.grouped:
+                repairs.append((row.line, f"{quoted(cell)} in {_column(column)} read as {found.plain}"))
+    return repairs
 
 
 def _decimal(table: Table, columns: Sequence[Column], shown: str) -> Decimal:

@@ -12,7 +12,8 @@ from numpy.typing import NDArray
 from ..errors import InputError
 from ..records import Basis, ExcludedRow, FloatArray, Quantity, Reading, Repair, RunSettings, Sample
 from ..units import HeatCapacityUnit, TemperatureUnit, heat_capacity_unit, temperature_unit
-from .columns import Column, choose_columns, describe_columns, quantity_of
+from .columns import choose_columns
+from .headers import Column, describe_columns, power_of_ten, quantity_of
 from .rows import Cells, read_cells, reasons_against, refuse_bad_sigma, refuse_too_few
 from .sigma_source import SigmaSource, find_sigma_source
 from .table import Table, find_table
@@ -92,7 +93,8 @@ def read_run(sample: Sample, run: RunSettings, path: Path, index: int) -> RunDat
     if sigma is not None:
         refuse_bad_sigma(sigma, keep, table, choice.columns[-1], shown)
     lines = np.array([row.line for row in table.rows], dtype=np.intp)
-    notes = (*table.notes, *choice.notes, *choice.sigma.notes, *_written_notes(choice, cells))
+    order = _order_notes(temperature[keep], lines[keep])
+    notes = (*table.notes, *choice.notes, *choice.sigma.notes, *_written_notes(choice, cells), *order)
     left_out = [(i, reason) for i, reason in enumerate(reasons) if reason is not None]
     return RunData(
         reading=_reading(source, table, choice, cells, run),
@@ -105,6 +107,7 @@ def read_run(sample: Sample, run: RunSettings, path: Path, index: int) -> RunDat
         sigma_text="" if sigma is None else choice.sigma.text,
         repairs=(
             *(Repair(run.file, None, note) for note in notes),
+            *(Repair(run.file, line, note) for line, note in (*table.repairs, *cells.repairs)),
             *(Repair(run.file, int(lines[i]), f"row left out: {reason}") for i, reason in left_out),
         ),
         excluded=tuple(
@@ -112,6 +115,16 @@ def read_run(sample: Sample, run: RunSettings, path: Path, index: int) -> RunDat
             for i, reason in left_out
         ),
     )
+
+
+def _order_notes(temperature: FloatArray, lines: NDArray[np.intp]) -> list[str]:
+    """Say where the temperatures do not rise; the order of the file is kept all the same."""
+    falls = np.flatnonzero(np.diff(temperature) < 0)
+    if not falls.size:
+        return []
+    if falls.size == temperature.size - 1:
+        return ["the temperatures fall from row to row"] if falls.size > 1 else []
+    return [f"the temperatures are not in order: {falls.size} of them fall, the first in line {lines[falls[0] + 1]}"]
 
 
 def _at(sigma: FloatArray | None, i: int) -> float:
@@ -122,7 +135,7 @@ def _at(sigma: FloatArray | None, i: int) -> float:
 
 
 def _choose(table: Table, run: RunSettings, shown: str) -> _Choice:
-    described = describe_columns(table)
+    described = describe_columns(table.headers or [None] * table.width)
     t_column, c_column = choose_columns(described, run.temperature, run.heat_capacity, shown)
     t_unit, t_notes = _temperature_unit(t_column, run.temperature_unit, shown)
     c_unit, c_notes = _heat_capacity_unit(c_column, run.heat_capacity_unit, shown)
@@ -145,6 +158,7 @@ def _temperature_unit(column: Column, asked: str | None, shown: str) -> tuple[Te
     if asked is not None:
         unit = temperature_unit(asked)
         return unit, _against_header(column, unit)
+    _refuse_power(column, "--temperature-unit", shown)
     if isinstance(column.unit, TemperatureUnit):
         return column.unit, ()
     _refuse_other_unit(column, "temperature", "--temperature-unit", shown)
@@ -156,8 +170,10 @@ def _heat_capacity_unit(column: Column, asked: str | None, shown: str) -> tuple[
         unit = heat_capacity_unit(asked)
         return unit, _against_header(column, unit)
     if isinstance(column.unit, HeatCapacityUnit):
+        _refuse_power(column, "--heat-capacity-unit", shown)
         return column.unit, ()
     _refuse_other_unit(column, "heat capacity", "--heat-capacity-unit", shown)
+    _refuse_power(column, "--heat-capacity-unit", shown)
     raise InputError(
         f"{shown}: the unit of {quoted(column.label)} is not stated; write it into the header, as in "
         "'Cp (J/(mol K))', or give --heat-capacity-unit 'J/(mol K)'"
@@ -167,6 +183,14 @@ def _heat_capacity_unit(column: Column, asked: str | None, shown: str) -> tuple[
 def _against_header(column: Column, unit: TemperatureUnit | HeatCapacityUnit) -> tuple[str, ...]:
     against = column.unit is not None and column.unit != unit
     return (f"{quoted(column.label)} read in {unit.text} as asked, against its header",) if against else ()
+
+
+def _refuse_power(column: Column, option: str, shown: str) -> None:
+    if power_of_ten(column):
+        raise InputError(
+            f"{shown}: {quoted(column.label)} holds a power of ten, and whether the numbers were multiplied by it or "
+            f"are to be is not clear; give the unit of the numbers as they stand by {option}"
+        )
 
 
 def _refuse_other_unit(column: Column, what: str, option: str, shown: str) -> None:

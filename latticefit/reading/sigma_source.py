@@ -10,7 +10,8 @@ from dataclasses import dataclass
 from ..errors import InputError
 from ..records import RunSettings
 from ..units import HeatCapacityUnit, TemperatureUnit
-from .columns import Column, find_column, uncertainty_columns
+from .columns import find_column
+from .headers import Column, uncertainty_columns
 from .sigma import SigmaModel, parse_sigma_text
 from .wording import listed, offered, quoted
 

@@ -4,28 +4,21 @@ from __future__ import annotations
 
 import csv
 import re
-from collections import Counter
 from contextlib import suppress
 from dataclasses import dataclass
 from typing import Final, NamedTuple
 
 from ..errors import InputError
+from .blocks import Row, divide
 from .text import TextFile
 from .values import is_number
-from .wording import quoted, shown_name
+from .wording import counted, quoted, shown_name
 
-__all__ = ["MAX_COLUMNS", "Row", "Table", "find_table"]
+__all__ = ["MAX_COLUMNS", "Table", "find_table"]
 
 MAX_COLUMNS: Final = 1000
 _SAMPLED_LINES: Final = 200
 _DELIMITERS: Final[dict[str, str | None]] = {"tab": "\t", "semicolon": ";", "comma": ",", "blank": None}
-
-
-class Row(NamedTuple):
-    """One line of the table: its 1-based number in the file and its cells."""
-
-    line: int
-    cells: list[str]
 
 
 @dataclass(frozen=True)
@@ -37,6 +30,7 @@ class Table:
     width: int
     rows: tuple[Row, ...]
     notes: tuple[str, ...]
+    repairs: tuple[tuple[int | None, str], ...]
 
     def cell(self, row: Row, column: int) -> str:
         """Return a cell, empty where the line ends before it."""
@@ -57,21 +51,24 @@ def find_table(source: TextFile) -> Table:
         If there is none, if it has one column, or if it is not clear where its columns are.
     """
     shown = shown_name(source.name)
+    _refuse_wide(source.lines, shown)
     lines = _without_comments(source.lines)
     if not lines:
         raise InputError(f"{shown}: holds comments only, no data")
-    delimiter = _find_delimiter(lines[:_SAMPLED_LINES])
-    rows = [row for row in (Row(line, _split(text, delimiter)) for line, text in lines) if any(row.cells)]
+    delimiter = source.delimiter or _find_delimiter(_sample(lines))
+    rows, plain_blanks = [], any(re.search(r"\S[ \t]+\S", line.text) for line in lines)
+    for line, text in lines:
+        cells = _split(text, delimiter, plain_blanks)
+        if any(cells):
+            rows.append(Row(line, cells))
     if not any(is_number(cell) for row in rows for cell in row.cells):
         raise InputError(f"{shown}: no column holds numbers")
-    width = max(len(row.cells) for row in rows)
-    if width > MAX_COLUMNS:
-        raise InputError(f"{shown}: has {width} columns, more than the {MAX_COLUMNS} that are read")
-    headers, notes = None, source.notes
-    if _is_header(rows):
-        head, rows = rows[0], rows[1:]
-        headers = _fit_header(lines[0].text, head, rows, delimiter, shown)
-    else:
+    texts = dict(lines)
+    parts = divide(
+        rows, lambda row, width: _header_cells(texts[row.line], row.cells, width, delimiter), delimiter, shown
+    )
+    headers, rows, notes = parts.headers, parts.rows, source.notes
+    if headers is None:
         commented = _commented_header(source.lines, rows, delimiter)
         if commented is not None:
             headers = tuple(commented.cells)
@@ -80,7 +77,27 @@ def find_table(source: TextFile) -> Table:
     width = max(len(row.cells) for row in rows) if headers is None else len(headers)
     if width < 2:
         raise InputError(f"{shown}: has one column; temperature and heat capacity are needed side by side")
-    return Table(delimiter, headers, width, tuple(rows), notes)
+    return Table(delimiter, headers, width, tuple(rows), notes, parts.repairs)
+
+
+def _refuse_wide(lines: list[str], shown: str) -> None:
+    """Refuse too many columns before a line is split into them."""
+    for number, line in enumerate(lines, start=1):
+        if len(line) <= 2 * MAX_COLUMNS or line.lstrip().startswith("#"):
+            continue
+        columns = (
+            max(line.count("\t"), line.count(";"), line.count(","), len(line.split(None, 3 * MAX_COLUMNS)) - 1) + 1
+        )
+        if columns > MAX_COLUMNS:
+            raise InputError(f"{shown}: line {number} has {columns} columns, more than the {MAX_COLUMNS} that are read")
+
+
+def _sample(lines: list[_Line]) -> list[_Line]:
+    """Return lines from the beginning and the middle: a long preamble must not settle the delimiter."""
+    middle = len(lines) // 2
+    return (
+        lines if len(lines) <= _SAMPLED_LINES else lines[: _SAMPLED_LINES // 2] + lines[middle:][: _SAMPLED_LINES // 2]
+    )
 
 
 def _without_comments(lines: list[str]) -> list[_Line]:
@@ -96,14 +113,18 @@ def _without_comments(lines: list[str]) -> list[_Line]:
 
 
 def _joined_uncertainty(text: str) -> str:
-    """Write ``12.34 +/- 0.05`` as one word, so that blanks around the sign do not make columns."""
-    if "±" not in text and "+-" not in text and "+/-" not in text:
-        return text
-    return re.sub(r"[ \u00a0\u2009]*(?:±|\+/-|\+-)[ \u00a0\u2009]*", "±", text)
+    """Write ``12.34 +/- 0.05``, ``1.2 × 10-3`` and ``12.3 †`` as one word: their blanks do not make columns."""
+    if "±" in text or "+-" in text or "+/-" in text:
+        text = re.sub(r"[ \u00a0\u2009]*(?:±|\+/-|\+-)[ \u00a0\u2009]*", "±", text)
+    if "10" in text and re.search(r"[×·⋅xX*]", text) is not None:
+        text = re.sub(r"(?<=[\d.,)])[ \u00a0\u2009]*([×·⋅xX*])[ \u00a0\u2009]*(?=10[-−^*{⁻⁺⁰¹²³⁴⁵⁶⁷⁸⁹\d])", r"\1", text)
+    return re.sub(r"(?<=[\d)])[ \u00a0\u2009]+(?=(?:[*†‡§¶]+|[a-e]\))(?:[\s;,]|$))", "", text)
 
 
-def _split(text: str, delimiter: str) -> list[str]:
+def _split(text: str, delimiter: str, plain_blanks: bool = False) -> list[str]:
     sign = _DELIMITERS[delimiter]
+    if sign is None and plain_blanks:  # the other kinds of blank then stand inside numbers
+        return [word.strip('"') for word in re.findall(r'"[^"]*"|[^ \t]+', text)]
     if sign is None:
         return [word.strip('"') for word in re.findall(r'"[^"]*"|\S+', text)]
     cells = text.split(sign)
@@ -122,7 +143,7 @@ def _find_delimiter(lines: list[_Line]) -> str:
     for delimiter in _DELIMITERS:
         rows = [_split(text, delimiter) for _, text in lines]
         counts = [(sum(map(is_number, cells)), len(cells)) for cells in rows]
-        numbers, cells = (sum(part) for part in zip(*counts, strict=True))
+        numbers, cells = sum(number for number, _ in counts), sum(size for number, size in counts if number)
         score = (
             sum(number >= 2 for number, _ in counts),
             sum(number >= 1 and size >= 2 for number, size in counts),
@@ -133,32 +154,20 @@ def _find_delimiter(lines: list[_Line]) -> str:
     return best
 
 
-def _is_header(rows: list[Row]) -> bool:
-    """Say whether the first row names the columns: it holds no number, or has a word above the first number."""
-    head = rows[0].cells
-    below = rows[1].cells if len(rows) > 1 else [""]
-    word_above_number = not is_number(head[0]) and is_number(below[0] if below else "")
-    return word_above_number or not any(map(is_number, head))
+def _header_cells(text: str, cells: list[str], width: int, delimiter: str) -> tuple[str, ...] | None:
+    """Return the headers of a line, None where it does not name `width` columns.
 
-
-def _fit_header(text: str, head: Row, rows: list[Row], delimiter: str, shown: str) -> tuple[str, ...]:
-    """Return the headers; in a table separated by blanks they may hold blanks themselves, as in ``T (K)``."""
-    if not rows:
-        raise InputError(f"{shown}: no data follow the header in line {head.line}")
+    In a table separated by blanks the headers may hold blanks themselves, as in ``T (K)``.
+    """
     if delimiter != "blank":
-        return tuple(head.cells)
-    width = Counter(len(row.cells) for row in rows).most_common(1)[0][0]
+        return tuple(cells)
     bracketed = re.sub(r"\s+(?=[(\[])", " ", text)
-    for pattern in (r"\s+", r"\s{2,}|\t", r"\s+(?![^(\[]*[)\]])(?![(\[])"):
-        headers = [part.strip().strip('"') for part in re.split(pattern, bracketed)]
-        if len(headers) == width:
-            return tuple(headers)
-    if len(head.cells) == width:
-        return tuple(head.cells)
-    words, columns = _counted(len(head.cells), "word"), _counted(width, "column")
-    raise InputError(
-        f"{shown}: line {head.line} has {words} over {columns}; separate the columns by tabs, commas or semicolons"
-    )
+    for line in (bracketed, text):
+        for pattern in (r"\s+", r"\s{2,}|\t", r"\s+(?![^(\[]*[)\]])(?![(\[])"):
+            headers = [part.strip().strip('"') for part in re.split(pattern, line)]
+            if len(headers) == width:
+                return tuple(headers)
+    return tuple(cells) if len(cells) == width else None
 
 
 def _commented_header(lines: list[str], rows: list[Row], delimiter: str) -> Row | None:
@@ -180,18 +189,14 @@ def _check_rows(rows: list[Row], headers: tuple[str, ...] | None, delimiter: str
                 raise _decimal_comma(row, f"{quoted(comma)} has a decimal comma in a comma-separated file", shown)
         if len(row.cells) > width or (delimiter == "blank" and len(row.cells) != width):
             named = (
-                f"the header names {_counted(width, 'column')}" if headers is not None else f"there are {width} columns"
+                f"the header names {counted(width, 'column')}" if headers is not None else f"there are {width} columns"
             )
-            found = f"line {row.line} has {_counted(len(row.cells), 'cell')} where {named}"
+            found = f"line {row.line} has {counted(len(row.cells), 'cell')} where {named}"
             if delimiter == "comma" and all(is_number(cell) and "." not in cell for cell in row.cells):
                 raise _decimal_comma(row, f"{found}, perhaps decimal commas in a comma-separated file", shown)
             raise InputError(f"{shown}: {found}")
     if delimiter == "comma" and headers is None:
         _refuse_unclear_commas(rows, shown)
-
-
-def _counted(number: int, noun: str) -> str:
-    return f"{number} {noun}" if number == 1 else f"{number} {noun}s"
 
 
 def _refuse_unclear_commas(rows: list[Row], shown: str) -> None:

@@ -6,7 +6,7 @@ from collections.abc import Iterable, Sequence
 
 from ..errors import nearest
 
-__all__ = ["listed", "offered", "quoted", "shown_name"]
+__all__ = ["counted", "listed", "offered", "quoted", "shown_name"]
 
 _LONGEST = 60
 
@@ -33,3 +33,8 @@ def offered(word: str, headers: Sequence[str]) -> str:
     """Return a hint that names the header nearest to a word, or all of them."""
     hint = nearest(word, map(shown_name, headers))
     return hint if hint.startswith("did you mean") else f"the columns are {listed(headers)}"
+
+
+def counted(number: int, noun: str) -> str:
+    """Return ``1 word`` or ``2 words``."""
+    return f"{number} {noun}" if number == 1 else f"{number} {noun}s"
