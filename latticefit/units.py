@@ -283,6 +283,9 @@ _REWRITES: Final = (
     (r"μ", "u"),
     (r"[·⋅•∙×]", " "),
     (r"\*\*|\^", "^"),
+    (r"\b[Jj]oules?\b", "J"),
+    (r"\bKelvins?\b", "K"),
+    (r"\bmoles\b", "mol"),
     (r"\b(k?cal)_?\{?(?:th)\}?(?![A-Za-z])", r"\1"),
     (r"\b(k?cal)(?:_?\{?IT\}?(?![A-Za-z])|\s?\(IT\))|\bIT (k?cal)\b", r"\1\2IT"),
     (r"\bk_?\{?(?:B|\(B\))\}?(?![A-Za-z])", "kB"),
@@ -295,7 +298,11 @@ _REWRITES: Final = (
     (r"(?:°|\bdeg[_ ]?)F\b|(?<![A-Za-z])F\b", "degR"),
     (r"\bper\b", "/"),
 )
-_GLUED: Final = ((r"\b([mku]?(?:mol|g))K\b", r"\1 K"), (r"\bK([mku]?(?:mol|g))\b", r"K \1"))
+_GLUED: Final = (
+    (r"\b([mkun]?J)K(?![a-z])", r"\1 K"),
+    (r"\b([mku]?(?:mol|g))K\b", r"\1 K"),
+    (r"\bK([mku]?(?:mol|g))\b", r"K \1"),
+)
 _EXPONENTS: Final = (
     (r"(?<=[A-Za-z])\s*\^?\s*\{?(-?\d)\}?", r"**\1 "),
     (r"-(?=[A-Za-z(])", " "),

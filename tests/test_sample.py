@@ -133,3 +133,16 @@ def test_wrong_sample_is_refused_in_one_sentence(settings: SampleSettings, sente
     with pytest.raises(InputError) as caught:
         build_sample(settings, "x")
     assert str(caught.value) == sentence
+
+
+@pytest.mark.parametrize("text", ["Li[7]F", "⁷LiF", "^7LiF", "^{7}LiF"])
+def test_isotope_in_any_spelling(text: str) -> None:
+    """An isotope has its own mass: 7.016003 + 18.998403 g/mol (AME atomic mass and IUPAC weight, from memory)."""
+    formula = parse_formula(text)
+    assert formula.atoms == 2
+    assert formula.molar_mass == pytest.approx((7.016003 + 18.998403) / 1000, rel=1e-6)
+
+
+def test_leading_number_is_noted() -> None:
+    """``7LiF`` is seven formula units, not an isotope; the note says how that is written."""
+    assert "an isotope is written as in 'Li[7]F'" in sample_notes(SampleSettings(formula="7LiF"))[0]

@@ -40,11 +40,17 @@ FACTORS = [
     ("nJ/K", 1e-9, "sample"),
     ("J/(mol-atom K)", 1.0, "mol_atoms"),
     ("cal/(g-atom K)", 4.184, "mol_atoms"),
+    ("cal_IT/(g K)", 4.1868, "gram"),
+    ("kcal_IT/(kg K)", 4.1868, "gram"),
+    ("kcal/(kg K)", 4.184, "gram"),
 ]
 
 SPELLINGS = {
     "J/(mol K)": [
         "J/mol/K",
+        "Joule/mole/Kelvin",
+        "JK−1mol−1",
+        "JK^{-1}mol^{-1}",
         "J/K/mol",
         "J mol^-1 K^-1",
         "J mol**-1 K**-1",
@@ -72,7 +78,12 @@ SPELLINGS = {
     "uJ/K": ["µJ/K", "μJ/K", "uJ_K", "µJ K⁻¹", "uJ K-1"],
     "cal/(mol K)": ["cal_molK", "cal mol-1 K-1", "cal/mol-K", "cal/mol/K"],
     "Btu/(lb degF)": ["BTU/lb-F", "Btu/(lb °F)", "Btu/lb/degF"],
-    "J/(mol-atom K)": ["J/(g-atom K)", "J/(gatom K)", "J/(mol atoms K)"],
+    "J/(mol-atom K)": ["J/(g-atom K)", "J/(gatom K)", "J/(mol atoms K)", "J/(mol of atoms K)", "J mol-at^-1 K^-1"],
+    "calIT/(g K)": ["cal_IT/(g K)", "cal_{IT} g^-1 K^-1", "cal(IT)/(g °C)", "IT cal/(g K)"],
+    "kB/atom": ["k_B/atom", "k_B per atom", "kB atom^-1", "k_{B}/atom"],
+    "kB/fu": ["k_B/f.u.", "k_B per formula unit", "k_B/molecule"],
+    "eV/(atom K)": ["eV/K/atom", "eV atom^-1 K^-1", "eV per atom per K"],
+    "R": [" R ", "(R)"],
 }
 
 
@@ -89,6 +100,15 @@ def test_definitions_agree_with_a_general_library() -> None:
     expected = constants.Btu_IT / (constants.lb * 1000 * constants.degree_Fahrenheit)
     assert heat_capacity_unit("Btu/(lb F)").factor == pytest.approx(expected, rel=1e-12)
     assert temperature_unit("degC").offset == constants.zero_Celsius
+
+
+def test_units_of_single_atoms_are_the_molar_gas_constant() -> None:
+    """k_B per atom is R per mole of atoms, eV/(atom K) is the Faraday constant's number (CODATA, scipy.constants)."""
+    per_atom, electronvolts = heat_capacity_unit("k_B/atom"), heat_capacity_unit("eV/(atom K)")
+    assert (per_atom.basis, electronvolts.basis) == ("mol_atoms", "mol_atoms")
+    assert per_atom.factor == pytest.approx(constants.R, rel=1e-14)
+    assert electronvolts.factor == pytest.approx(constants.physical_constants["Faraday constant"][0], rel=1e-9)
+    assert heat_capacity_unit("R").factor == heat_capacity_unit("k_B/f.u.").factor == pytest.approx(constants.R, 1e-14)
 
 
 @pytest.mark.parametrize(("standard", "text"), [(key, text) for key, texts in SPELLINGS.items() for text in texts])
@@ -108,7 +128,7 @@ def test_offered_spelling_is_standard(text: str) -> None:
     "text",
     [
         *("", "K", "J", "J/mol", "J/mol/K/K", "mJ mol-1 K-2", "J//K", "J/(mol K", "2 J/K", "J/(2 mol K)", "J**K"),
-        *("C", "()", "J/K**0", "e" * 5000, "__import__('os')", "J K mol"),
+        *("k_B", "mol", "R/K", "k_B/g/K", "C", "()", "J/K**0", "e" * 5000, "__import__('os')", "J K mol"),
     ],
 )
 def test_what_is_no_heat_capacity_is_refused(text: str) -> None:

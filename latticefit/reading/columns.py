@@ -130,5 +130,8 @@ def _recognise(columns: tuple[Column, ...], taken: Column | None, role: _Role, s
     if not candidates:
         headers = listed(column.label for column in columns)
         raise InputError(f"{shown}: no column is named like a {role.what}; choose one of {headers} by {role.option}")
-    claims = listed(column.label for column in candidates)
+    labels = [column.label for column in candidates]
+    claims = listed(labels)
+    if len(set(labels)) < len(labels):
+        claims = " and ".join(f"{column.index + 1} ({quoted(column.label)})" for column in candidates[:9])
     raise InputError(f"{shown}: columns {claims} may each be the {role.what}; choose one by {role.option}")

@@ -18,7 +18,7 @@ from .rows import Cells, read_cells, reasons_against, refuse_bad_sigma, refuse_t
 from .sigma_source import SigmaSource, find_sigma_source
 from .table import Table, find_table
 from .text import TextFile, load_text
-from .wording import quoted, shown_name
+from .wording import counted, quoted, shown_name
 
 __all__ = ["RunData", "read_run"]
 
@@ -124,7 +124,8 @@ def _order_notes(temperature: FloatArray, lines: NDArray[np.intp]) -> list[str]:
         return []
     if falls.size == temperature.size - 1:
         return ["the temperatures fall from row to row"] if falls.size > 1 else []
-    return [f"the temperatures are not in order: {falls.size} of them fall, the first in line {lines[falls[0] + 1]}"]
+    fall = counted(falls.size, "fall")
+    return [f"the temperatures are not in order: {fall}, the first in line {lines[falls[0] + 1]}"]
 
 
 def _at(sigma: FloatArray | None, i: int) -> float:
