@@ -248,6 +248,8 @@ def _registry() -> pint.UnitRegistry[Any]:
 # words, products, quotients, brackets, and digits only as exponents: nothing else reaches the library
 _UNIT_EXPRESSION: Final = re.compile(r"(?:[A-Za-z]+|\*\*-?[1-9](?!\d)|\*(?!\*)|[/() ])+", re.ASCII)
 
+_PREFIXED: Final = re.compile(r"\b[kmun](?:R|kB|atom|fu)\b")  # "nR" is n times R, not a nano-R
+
 
 def _pint_unit(expression: str) -> Any | None:
     """Return the unit of an expression made of unit symbols, or None where it is none."""
@@ -255,7 +257,12 @@ def _pint_unit(expression: str) -> Any | None:
 
     import pint
 
-    if len(expression) > 80 or "//" in expression or _UNIT_EXPRESSION.fullmatch(expression) is None:
+    if (
+        len(expression) > 80
+        or "//" in expression
+        or _PREFIXED.search(expression)
+        or _UNIT_EXPRESSION.fullmatch(expression) is None
+    ):
         return None
     try:
         unit = _registry().parse_units(expression)

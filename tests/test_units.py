@@ -128,7 +128,21 @@ def test_offered_spelling_is_standard(text: str) -> None:
     "text",
     [
         *("", "K", "J", "J/mol", "J/mol/K/K", "mJ mol-1 K-2", "J//K", "J/(mol K", "2 J/K", "J/(2 mol K)", "J**K"),
-        *("k_B", "mol", "R/K", "k_B/g/K", "C", "()", "J/K**0", "e" * 5000, "__import__('os')", "J K mol"),
+        *(
+            "k_B",
+            "nR",
+            "3R",
+            "J/(natom K)",
+            "mol",
+            "R/K",
+            "k_B/g/K",
+            "C",
+            "()",
+            "J/K**0",
+            "e" * 5000,
+            "__import__('os')",
+            "J K mol",
+        ),
     ],
 )
 def test_what_is_no_heat_capacity_is_refused(text: str) -> None:

@@ -175,8 +175,8 @@ def _preamble(above: list[Row], reader: _Reader, width: int) -> list[tuple[int |
         above_names = f"numbers in {width} columns above the line that names them"
         raise InputError(f"{reader.shown}: line {data.line} holds {above_names}; put the names first")
     first, last = above[0].line, above[-1].line
-    lines = f"line {first} stands" if len(above) == 1 else f"lines {first} to {last} stand"
-    return [(first, f"{lines} above the table; not read")]
+    lines = "text" if len(above) == 1 else f"text in lines {first} to {last}"
+    return [(first, f"{lines} above the table is not read")]
 
 
 def _units(row: Row, headers: Sequence[str], reader: _Reader) -> tuple[str, ...] | None:

@@ -103,10 +103,18 @@ class _Role:
 
 
 _TEMPERATURE: Final = _Role(
-    "temperature", "--temperature", names_temperature, TemperatureUnit, re.compile(r"\b(?:rise|delta|d ?t|step)\b")
+    "temperature",
+    "--temperature",
+    names_temperature,
+    TemperatureUnit,
+    re.compile(r"\b(?:rise|delta|d ?t|step|ln|log)\b|\^|1 ?/ ?t|δ"),
 )
 _HEAT_CAPACITY: Final = _Role(
-    "heat capacity", "--heat-capacity", names_heat_capacity, HeatCapacityUnit, re.compile(r"^s\b|entropy|addenda")
+    "heat capacity",
+    "--heat-capacity",
+    names_heat_capacity,
+    HeatCapacityUnit,
+    re.compile(r"^s\b|entropy|addenda|/ ?t\b|\b(?:ln|log)\b|\^|δ"),
 )
 
 

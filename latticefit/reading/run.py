@@ -107,7 +107,7 @@ def read_run(sample: Sample, run: RunSettings, path: Path, index: int) -> RunDat
         sigma_text="" if sigma is None else choice.sigma.text,
         repairs=(
             *(Repair(run.file, None, note) for note in notes),
-            *(Repair(run.file, line, note) for line, note in (*table.repairs, *cells.repairs)),
+            *(Repair(run.file, line, note) for line, note in _by_line(table.repairs, cells.repairs)),
             *(Repair(run.file, int(lines[i]), f"row left out: {reason}") for i, reason in left_out),
         ),
         excluded=tuple(
@@ -115,6 +115,11 @@ def read_run(sample: Sample, run: RunSettings, path: Path, index: int) -> RunDat
             for i, reason in left_out
         ),
     )
+
+
+def _by_line(*repairs: tuple[tuple[int | None, str], ...]) -> list[tuple[int | None, str]]:
+    """Return the repairs in the order of the file, those of the whole file first."""
+    return sorted((each for part in repairs for each in part), key=lambda repair: repair[0] or 0)
 
 
 def _order_notes(temperature: FloatArray, lines: NDArray[np.intp]) -> list[str]:
