@@ -100,7 +100,10 @@ class HeatCapacityUnit:
 
 @dataclass(frozen=True)
 class TemperatureUnit:
-    """A unit of temperature: T in K = (value + offset) * factor. The degree Celsius is K less 273.15 (SI brochure)."""
+    """A unit of temperature: T in K = (value + offset) * factor. The degree Celsius is K less 273.15 (SI brochure).
+
+    0 degF is 459.67 degR, and 1 degR is 5/9 K (NIST Special Publication 811, 2008, appendix B; from memory).
+    """
 
     text: str
     factor: float
@@ -111,6 +114,8 @@ _TEMPERATURE_UNITS: Final = {
     "K": TemperatureUnit("K", 1.0, 0.0),
     "mK": TemperatureUnit("mK", 1e-3, 0.0),
     "degC": TemperatureUnit("degC", 1.0, 273.15),
+    "degF": TemperatureUnit("degF", 5 / 9, 459.67),
+    "degR": TemperatureUnit("degR", 5 / 9, 0.0),
 }
 _TEMPERATURE_SPELLINGS: Final = {
     "kelvin": "K",
@@ -120,6 +125,12 @@ _TEMPERATURE_SPELLINGS: Final = {
     "°c": "degC",
     "degc": "degC",
     "celsius": "degC",
+    "°f": "degF",
+    "degf": "degF",
+    "fahrenheit": "degF",
+    "°r": "degR",
+    "degr": "degR",
+    "rankine": "degR",
     "degreecelsius": "degC",
     "degreescelsius": "degC",
 }
@@ -149,7 +160,7 @@ def heat_capacity_unit(text: str) -> HeatCapacityUnit:
 
 
 def temperature_unit(text: str) -> TemperatureUnit:
-    """Return the unit of temperature that `text` names: K, mK or degC, in the usual spellings.
+    """Return the unit of temperature that `text` names: K, mK, degC, degF or degR, in the usual spellings.
 
     Raises
     ------

@@ -165,7 +165,7 @@ CHOICES: list[tuple[str, dict[str, Any], str]] = [
     (GOOD, {"heat_capacity_unit": "J/(mol k)"},
      "'J/(mol k)' is not a unit of heat capacity that latticefit knows: did you mean 'J/(mol K)'?"),
     (GOOD, {"temperature_unit": "F"},
-     "'F' is not a unit of temperature that latticefit knows: known are K, degC and mK"),
+     "'F' is not a unit of temperature that latticefit knows: known are K, degC, degF, degR and mK"),
     (GOOD, {"sigma": "sigm"}, "run.csv: --sigma 'sigm' is neither a column nor a sigma text such as '0.5%'; the "
      "columns are 'T_K' and 'Cp_J_molK'"),
     (GOOD, {"sigma": "0.5"}, "run.csv: --sigma '0.5' is no column number; for a percentage write 0.5%"),

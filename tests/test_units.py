@@ -156,7 +156,7 @@ def test_near_miss_is_offered() -> None:
     """A misspelt unit gets the nearest known one, a strange one the list."""
     with pytest.raises(InputError, match=r"did you mean 'J/\(mol K\)'\?"):
         heat_capacity_unit("J/(mol k)")
-    with pytest.raises(InputError, match=r"known are K, degC and mK"):
+    with pytest.raises(InputError, match=r"known are K, degC, degF, degR and mK"):
         temperature_unit("furlong")
 
 
@@ -171,10 +171,14 @@ def test_near_miss_is_offered() -> None:
         ("deg C", 0.0, 273.15),
         ("℃", 100.0, 373.15),
         ("C", 1.0, 274.15),
+        ("°F", 32.0, 273.15),
+        ("degF", 212.0, 373.15),
+        ("Fahrenheit", -459.67, 0.0),
+        ("°R", 491.67, 273.15),
     ],
 )
 def test_temperature_units(text: str, value: float, kelvin: float) -> None:
-    """K, mK and degC convert by the definition of the degree Celsius (SI brochure: t/degC = T/K - 273.15)."""
+    """Each converts by its definition: t/degC = T/K - 273.15 (SI brochure), 32 degF = 0 degC, 1 degR = 5/9 K."""
     unit = temperature_unit(text)
     assert (value + unit.offset) * unit.factor == pytest.approx(kelvin, rel=1e-15, abs=1e-15)
 

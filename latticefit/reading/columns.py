@@ -9,7 +9,14 @@ from typing import Final
 
 from ..errors import InputError
 from ..units import HeatCapacityUnit, TemperatureUnit
-from .headers import Column, is_uncertainty_of_anything, names_heat_capacity, names_temperature, normal_name
+from .headers import (
+    Column,
+    is_uncertainty_of_anything,
+    names_heat_capacity,
+    names_temperature,
+    normal_name,
+    unit_unread,
+)
 from .wording import listed, offered, quoted
 
 __all__ = ["choose_columns", "find_column"]
@@ -129,8 +136,8 @@ def _recognise(columns: tuple[Column, ...], taken: Column | None, role: _Role, s
         return candidates[0]
     if not candidates and taken is not None and role.named(taken.name):
         raise InputError(f"{shown}: {quoted(taken.label)} looks like the {role.what}, but is chosen as something else")
-    unread = next((column for column in free if role.named(re.split(r"\s*[/(\[]", column.name)[0])), None)
-    if not candidates and unread is not None and unread.unit is None:
+    unread = next((column for column in free if unit_unread(column, role.named)), None)
+    if not candidates and unread is not None:
         raise InputError(
             f"{shown}: the unit in {quoted(unread.label)} cannot be read; choose the column by {role.option} and give "
             f"its unit by {role.option}-unit"

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 import unicodedata
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from typing import Final, Literal
 
@@ -23,6 +23,7 @@ __all__ = [
     "quantity_of",
     "uncertainty_columns",
     "unit_of_cell",
+    "unit_unread",
 ]
 
 ColumnUnit = HeatCapacityUnit | TemperatureUnit | Literal["percent"]
@@ -105,6 +106,12 @@ def power_of_ten(column: Column) -> bool:
     """Say whether a header holds a power of ten, as ``10^3 Cp`` does: multiplied or to be multiplied is not clear."""
     pattern = r"(?<![\d.])10\s*(?:\^|\*\*|\{?[-−+]\d|[⁻⁺⁰¹²³⁴⁵⁶⁷⁸⁹])"
     return column.header is not None and re.search(pattern, column.header) is not None
+
+
+def unit_unread(column: Column, named: Callable[[str], bool]) -> bool:
+    """Say whether a header names the quantity and then, after a slash or in brackets, a unit that is not known."""
+    name = re.split(r"\s*[/(\[]", column.name)[0]
+    return column.unit is None and name != column.name and named(name)
 
 
 def unit_of_cell(text: str, header: str) -> ColumnUnit | None:

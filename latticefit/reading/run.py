@@ -13,7 +13,7 @@ from ..errors import InputError
 from ..records import Basis, ExcludedRow, FloatArray, Quantity, Reading, Repair, RunSettings, Sample
 from ..units import HeatCapacityUnit, TemperatureUnit, heat_capacity_unit, temperature_unit
 from .columns import choose_columns
-from .headers import Column, describe_columns, power_of_ten, quantity_of
+from .headers import Column, describe_columns, names_temperature, power_of_ten, quantity_of, unit_unread
 from .rows import Cells, read_cells, reasons_against, refuse_bad_sigma, refuse_too_few
 from .sigma_source import SigmaSource, find_sigma_source
 from .table import Table, find_table
@@ -168,6 +168,8 @@ def _temperature_unit(column: Column, asked: str | None, shown: str) -> tuple[Te
     if isinstance(column.unit, TemperatureUnit):
         return column.unit, ()
     _refuse_other_unit(column, "temperature", "--temperature-unit", shown)
+    if unit_unread(column, names_temperature):
+        raise InputError(f"{shown}: the unit in {quoted(column.label)} cannot be read; give it by --temperature-unit")
     return temperature_unit("K"), (f"the unit of {quoted(column.label)} is not stated; taken as K",)
 
 

@@ -19,7 +19,9 @@ MAX_PARTS: Final = 1000
 MAX_SHEET_COLUMNS: Final = 1000
 MAX_CELLS: Final = 2_000_000
 
-_ENTITY_MARKS: Final = (b"<!DOCTYPE", b"<!ENTITY")
+_ENTITY_MARKS: Final = tuple(
+    mark.encode(encoding) for mark in ("<!DOCTYPE", "<!ENTITY") for encoding in ("ascii", "utf-16-le", "utf-16-be")
+)
 
 
 def spreadsheet_lines(data: bytes, shown: str) -> tuple[list[str], tuple[str, ...]]:
@@ -66,7 +68,7 @@ def _check_archive(data: bytes, shown: str) -> None:
             if "[Content_Types].xml" not in names or not any(name.startswith("xl/") for name in names):
                 raise InputError(f"{shown}: is an archive but no .xlsx spreadsheet; save the table as .xlsx or CSV")
             for part in parts:
-                if part.filename.endswith((".xml", ".rels")):
+                if not part.filename.startswith("xl/media/"):
                     _refuse_entities(archive, part, shown)
     except InputError:
         raise
@@ -82,7 +84,7 @@ def _refuse_entities(archive: zipfile.ZipFile, part: zipfile.ZipInfo, shown: str
         while chunk := stream.read(1 << 20):
             if any(mark in tail + chunk for mark in _ENTITY_MARKS):
                 raise InputError(f"{shown}: the spreadsheet defines XML entities, which none needs; save it as CSV")
-            tail = chunk[-16:]
+            tail = chunk[-24:]
 
 
 def _rows(sheet: Any, shown: str) -> Iterator[list[str]]:
