@@ -11,6 +11,7 @@ import openpyxl
 import pytest
 from reading_helpers import messages, read_text
 
+from latticefit.cli import main
 from latticefit.errors import InputError
 from latticefit.reading import spreadsheet, text
 
@@ -126,3 +127,12 @@ def test_sheet_is_named_where_there_are_several(tmp_path: Path) -> None:
     assert "read from sheet 'run 1', the only one of 2 that holds a table" in messages(
         read_text(tmp_path, stream.getvalue())
     )
+
+
+def test_inspect_says_that_it_read_a_spreadsheet(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """A spreadsheet has no delimiter to speak of: `inspect` says what it is."""
+    (tmp_path / "run.xlsx").write_bytes(book(TABLE))
+    assert main(["inspect", str(tmp_path / "run.xlsx")]) == 0
+    text_shown = capsys.readouterr().out
+    assert "a spreadsheet" in text_shown
+    assert "separated by" not in text_shown

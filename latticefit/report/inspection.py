@@ -8,7 +8,7 @@ from typing import Any
 import numpy as np
 
 from ..constants import GAS_CONSTANT
-from ..records import Measurement
+from ..records import Measurement, Reading
 from ..wording import harmless
 from .wording import significant
 
@@ -58,7 +58,7 @@ def inspection_text(measurement: Measurement) -> str:
     order = np.argsort(T, kind="stable")
     lines = [
         harmless(reading.file),
-        f"  written     {reading.encoding}, separated by {reading.delimiter}, decimal {reading.decimal}",
+        f"  written     {_written(reading)}",
         f"  temperature {harmless(reading.temperature_column)}, in {reading.temperature_unit}",
         f"  {measurement.quantity}          {harmless(reading.heat_capacity_column)}, in {reading.heat_capacity_unit}"
         + ("" if reading.heat_capacity_unit == unit else f", converted to {unit}"),
@@ -81,6 +81,12 @@ def inspection_text(measurement: Measurement) -> str:
         where = "whole file" if each.line is None else f"line {each.line}"
         lines.append(f"    {where}: {harmless(each.message)}")
     return "\n".join(lines).rstrip() + "\n"
+
+
+def _written(reading: Reading) -> str:
+    if reading.encoding == "spreadsheet":
+        return "a spreadsheet"
+    return f"{reading.encoding}, separated by {reading.delimiter}, decimal {reading.decimal}"
 
 
 def _per_decade(T: np.ndarray) -> str:
