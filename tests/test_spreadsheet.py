@@ -100,7 +100,7 @@ def test_row_far_down_is_refused(tmp_path: Path) -> None:
 def test_missing_library_is_named(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     """Without the extra the sentence says what to install."""
     monkeypatch.setitem(__import__("sys").modules, "openpyxl", None)
-    with pytest.raises(InputError, match=r"install latticefit\[spreadsheet\] to read it, or save the table as CSV"):
+    with pytest.raises(InputError, match=r"install openpyxl to read it, or save the table as CSV"):
         read_text(tmp_path, book(TABLE))
 
 

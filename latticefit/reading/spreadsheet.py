@@ -37,7 +37,7 @@ def spreadsheet_lines(data: bytes, shown: str) -> tuple[list[str], tuple[str, ..
         import openpyxl
     except ImportError:
         raise InputError(
-            f"{shown}: is a spreadsheet; install latticefit[spreadsheet] to read it, or save the table as CSV"
+            f"{shown}: is a spreadsheet; install openpyxl to read it, or save the table as CSV"
         ) from None
     try:
         with warnings.catch_warnings():
