@@ -36,9 +36,7 @@ def spreadsheet_lines(data: bytes, shown: str) -> tuple[list[str], tuple[str, ..
     try:
         import openpyxl
     except ImportError:
-        raise InputError(
-            f"{shown}: is a spreadsheet; install openpyxl to read it, or save the table as CSV"
-        ) from None
+        raise InputError(f"{shown}: is a spreadsheet; install openpyxl to read it, or save the table as CSV") from None
     try:
         with warnings.catch_warnings():
             warnings.simplefilter("ignore")  # the library warns of styles and validations, which are not read
