@@ -5,7 +5,7 @@ from __future__ import annotations
 import difflib
 from collections.abc import Iterable
 
-__all__ = ["FitError", "InputError", "LatticefitError", "TooFewPointsError", "nearest"]
+__all__ = ["FitError", "InputError", "LatticefitError", "nearest"]
 
 
 class LatticefitError(Exception):
@@ -14,10 +14,6 @@ class LatticefitError(Exception):
 
 class InputError(LatticefitError, ValueError):
     """Raised when a file, an option, a sheet or an argument is wrong; exit code 2."""
-
-
-class TooFewPointsError(InputError):
-    """Raised when there are fewer points than free parameters."""
 
 
 class FitError(LatticefitError, RuntimeError):

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import itertools
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -18,7 +19,7 @@ from latticefit.deriving import (
     default_grid,
     derive,
     functions_table,
-    propagate,
+    uncertainties,
 )
 from latticefit.fitting import fit_model
 from latticefit.functions import debye_heat_capacity, invert_debye
@@ -205,7 +206,13 @@ def test_propagation_is_linear_algebra_for_a_linear_function() -> None:
     def linear(x: FloatArray) -> FloatArray:
         return np.asarray(A @ x)
 
-    assert_allclose(propagate(linear, np.array([1.0, -2.0, 0.0]), C), np.sqrt(np.diag(A @ C @ A.T)), rtol=1e-7)
+    carried = 0.3 * C
+    fit = fit_model(invented_solid("debye", [280.0, 3.0], T, atoms=1), ModelSettings("debye"))
+    fit = replace(fit, values=np.array([1.0, -2.0, 0.0]), covariance=C, carried=carried, scale_factor=9.0)
+    u_fit, u = uncertainties(linear, fit)
+    assert_allclose(u_fit, np.sqrt(np.diag(A @ C @ A.T)), rtol=1e-7)
+    stated = 9 * (C - carried) + carried  # a misfit enlarges what comes from the data only
+    assert_allclose(u, np.sqrt(np.diag(A @ stated @ A.T)), rtol=1e-7)
 
 
 def test_allowance_below_the_data_covers_a_dispersive_solid() -> None:
@@ -231,3 +238,15 @@ def test_default_grid_is_round_and_reaches_below_the_data() -> None:
     assert grid[-1] == 300.0
     assert np.all(np.diff(grid) > 0)
     assert energy(MIXED, grid, VALUES).shape == grid.shape
+
+
+def test_a_model_that_misses_the_data_gives_no_u_at_all() -> None:
+    """Where the model does not describe the data, values stand with the reason and without u, everywhere."""
+    data = invented_solid(*METAL, T, atoms=1)
+    fit = fit_model(data, ModelSettings("debye + electronic"))
+    derived = derive(data, fit, describes=False)
+    for each in (*derived.characteristic_temperatures, derived.zero_point_energy):
+        assert each.value is not None
+        assert (each.u, each.low, each.high) == (None, None, None)
+        assert "best wrong model" in (each.reason or "")
+    assert np.isnan(derived.table.entropy_u).all()

@@ -10,7 +10,7 @@ if TYPE_CHECKING:
     from .characteristic import QUANTITIES, CharacteristicTemperature
     from .derivation import derive
     from .pointwise import model_theta, pointwise_theta
-    from .propagation import propagate, stated_covariance, uncertainties
+    from .propagation import stated_covariance, uncertainties
     from .thermodynamic_table import default_grid, functions_table
 
 __all__ = [
@@ -21,7 +21,6 @@ __all__ = [
     "functions_table",
     "model_theta",
     "pointwise_theta",
-    "propagate",
     "stated_covariance",
     "uncertainties",
 ]
@@ -43,7 +42,6 @@ __getattr__ = on_first_use(
             "pointwise_theta",
         ),
         "propagation": (
-            "propagate",
             "stated_covariance",
             "uncertainties",
         ),

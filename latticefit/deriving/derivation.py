@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Literal
 
 import numpy as np
@@ -23,6 +24,7 @@ from .pointwise import model_theta, pointwise_theta
 from .propagation import uncertainties
 from .support import lost_in_law, lost_in_spectrum
 from .thermodynamic_table import default_grid, functions_table
+from .withholding import MISFIT_REASON
 
 __all__ = ["derive"]
 
@@ -53,12 +55,14 @@ def derive(
     wanted = default_grid(lowest, highest) if grid is None else np.array(grid, dtype=float)
     table = functions_table(fit, np.union1d(wanted, [STANDARD_TEMPERATURE]), lowest, highest, quantity, describes)
     dense = np.geomspace(lowest / 5, max(highest * 1.05, lowest * 2), _CURVE_POINTS)
-    law, spectrum = _reach(fit, model, lowest, describes), _spectrum(fit, model, highest)
+    law, spectrum = _reach(fit, model, lowest), _spectrum(fit, model, highest)
+    temperatures = [
+        _characteristic(each, fit, model, law if each.key == LOW_TEMPERATURE else spectrum) for each in QUANTITIES
+    ]
+    zero_point = _zero_point(fit, model, spectrum)
     return Derived(
-        characteristic_temperatures=tuple(
-            _characteristic(each, fit, model, law if each.key == LOW_TEMPERATURE else spectrum) for each in QUANTITIES
-        ),
-        zero_point_energy=_zero_point(fit, model, spectrum),
+        characteristic_temperatures=tuple(each if describes else _of_wrong_model(each) for each in temperatures),
+        zero_point_energy=zero_point if describes else _of_wrong_model(zero_point),
         table=table,
         curve=functions_table(fit, dense, lowest, highest, quantity, describes),
         pointwise_theta=pointwise_theta(prepared, fit, model),
@@ -67,7 +71,15 @@ def derive(
     )
 
 
-def _reach(fit: FitRecord, model: Model, lowest: float, describes: bool) -> tuple[Status, str | None]:
+def _of_wrong_model(each: DerivedValue) -> DerivedValue:
+    """The value without u: where a model misses the data, its covariance says nothing about how far off it is."""
+    if each.value is None:
+        return each
+    remark = f"u withheld, {MISFIT_REASON}; this is the value of the best wrong model"
+    return replace(each, u=None, low=None, high=None, reason=f"{remark}; {each.reason}" if each.reason else remark)
+
+
+def _reach(fit: FitRecord, model: Model, lowest: float) -> tuple[Status, str | None]:
     """Whether theta_D(T->0) is determined, and the remark that goes with it."""
     reach = low_temperature_reach(model, fit, lowest)
     if reach is None:
@@ -80,8 +92,6 @@ def _reach(fit: FitRecord, model: Model, lowest: float, describes: bool) -> tupl
     remark = "the model's theta_D(T->0) can be 1-2 % off beyond its u: that is the model, not the scatter"
     if reach.status == "doubtful":
         remark = f"{reach.reason}, where a good fit can still be wrong by percents; {remark}"
-    if not describes:
-        remark = f"the model does not describe the data: this is the value of the best wrong model; {remark}"
     return "determined", remark
 
 

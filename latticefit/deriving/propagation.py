@@ -8,7 +8,7 @@ import numpy as np
 
 from ..records import FitRecord, FloatArray
 
-__all__ = ["propagate", "stated_covariance", "uncertainties"]
+__all__ = ["stated_covariance", "uncertainties"]
 
 _STEP = 1e-4  # relative step of the central differences: rounding and curvature errors both stay below 1e-7
 _SIGMAS = 1e-2  # step in standard uncertainties for a parameter that is zero
@@ -30,26 +30,6 @@ def _gradient(function: Callable[[FloatArray], FloatArray], values: FloatArray, 
     return np.array(columns, dtype=float)
 
 
-def propagate(function: Callable[[FloatArray], FloatArray], values: FloatArray, covariance: FloatArray) -> FloatArray:
-    """Covariance-propagated standard uncertainty of every element of ``function(values)``.
-
-    Law of propagation of uncertainty, JCGM 100:2008, section 5.2, with central differences.
-
-    Parameters
-    ----------
-    function : callable
-        Parameters (p,) -> array of any one shape.
-    values : ndarray, shape (p,)
-    covariance : ndarray, shape (p, p)
-
-    Returns
-    -------
-    ndarray
-        Shape of the function's result.
-    """
-    return _deviation(_gradient(function, np.array(values), np.sqrt(np.diag(covariance))), covariance)
-
-
 def stated_covariance(fit: FitRecord) -> FloatArray:
     """Return the covariance behind u, shape (p, p).
 
@@ -65,6 +45,8 @@ def stated_covariance(fit: FitRecord) -> FloatArray:
 
 def uncertainties(function: Callable[[FloatArray], FloatArray], fit: FitRecord) -> tuple[FloatArray, FloatArray]:
     """Return u_fit and u of every element of ``function(values)``.
+
+    Law of propagation of uncertainty, JCGM 100:2008, section 5.2, with central differences.
 
     Parameters
     ----------

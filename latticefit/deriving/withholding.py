@@ -4,14 +4,14 @@ from __future__ import annotations
 
 import numpy as np
 
-from ..diagnosing.reach import low_temperature_reach
+from ..diagnosing.reach import REACH_STOP, REACH_WARN, low_temperature_reach
 from ..models import Model, cp_cv_coefficient, energy, entropy, harmonic_heat_capacity
 from ..records import FitRecord, FloatArray
 from .support import lost_in_spectrum, stuck
 
-__all__ = ["HEAVY_BELOW", "HEAVY_REASON", "allowance_below", "row_reasons", "value_reasons"]
+__all__ = ["HEAVY_BELOW", "HEAVY_REASON", "MISFIT_REASON", "allowance_below", "row_reasons", "value_reasons"]
 
-_BELOW_ALLOWANCE = ((30.0, 0.10), (50.0, 0.02))
+_BELOW_ALLOWANCE = ((REACH_STOP, 0.10), (REACH_WARN, 0.02))
 """Relative allowance for what the model may get wrong of H and S below the lowest point, by theta/Tmin: a T^3 law from
 there is 10 % off in S(Tmin) at theta/20 and 1 % at theta/50 for plain sine dispersion (computed)."""
 

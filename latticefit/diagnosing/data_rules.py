@@ -7,7 +7,7 @@ import numpy as np
 from ..preparing.scatter import repeat_sets
 from ..records import NamedWarning
 from .case import Case
-from .verdict import MISFIT, blame
+from .verdict import DURBIN_WATSON, MISFIT, RUNS_P, blame, correlated
 
 __all__ = [
     "correlated_residuals",
@@ -21,8 +21,6 @@ __all__ = [
 
 _POINTS_PER_PARAMETER = 5
 _SIGMA_OVERSTATED = 0.5
-_DURBIN_WATSON = 1.2
-_RUNS_P = 0.01
 _RUN_PULL = 4.0  # mean normalised residual of a run, in its own standard errors
 
 
@@ -75,8 +73,8 @@ def sigma_assumed(case: Case) -> NamedWarning | None:
 def correlated_residuals(case: Case) -> NamedWarning | None:
     """Neighbouring residuals go together."""
     dw, p = case.statistics.durbin_watson, case.statistics.runs_test_p
-    low = dw is not None and not _DURBIN_WATSON <= dw <= 4 - _DURBIN_WATSON
-    if not low and (p is None or p >= _RUNS_P):
+    low = dw is not None and not DURBIN_WATSON <= dw <= 4 - DURBIN_WATSON
+    if not correlated(case.statistics):
         return None
     rho = min(max(case.statistics.lag1_correlation or 0.0, 0.0), 0.99)
     return NamedWarning(
@@ -88,7 +86,7 @@ def correlated_residuals(case: Case) -> NamedWarning | None:
             f"too small by about {((1 + rho) / (1 - rho)) ** 0.5:.1f}"
         ),
         found=dw if low else p,
-        threshold=_DURBIN_WATSON if low else _RUNS_P,
+        threshold=DURBIN_WATSON if low else RUNS_P,
         advice="look at the residuals: a wave means a missing term, a step a join of runs, smoothness a smoothed table",
     )
 

@@ -30,8 +30,8 @@ def model_misfit(case: Case) -> NamedWarning | None:
         level="warn",
         concerns="fit",
         message=(
-            "the model does not describe the data; its parameters are those of the best wrong model, and u of S and H "
-            "is withheld: over the fitted points the residuals add up to "
+            "the model does not describe the data; its parameters are those of the best wrong model, and u of "
+            "every derived value is withheld: over the fitted points the residuals add up to "
             f"{case.statistics.entropy_miss:+.3g} J/(mol K) in S and {case.statistics.energy_miss:+.3g} J/mol in the "
             "energy, which the model lacks"
         ),

@@ -110,13 +110,18 @@ def gamma_reach(case: Case) -> NamedWarning | None:
     free = [each for each in case.fit.parameters if each.name == "electronic_gamma" and each.status == "fitted"]
     limit = max(_COLD, theta_debye_two(case.model, case.fit) / _COLD_THETA)
     lowest = float(case.prepared.temperature[0])
-    if not free or lowest <= limit:
+    reach = low_temperature_reach(case.model, case.fit, lowest)
+    in_law = reach is None or reach.status != "withheld"
+    if not free or (lowest <= limit and in_law):
         return None
     return NamedWarning(
         code="gamma-reach",
         level="warn",
         concerns="electronic_gamma",
-        message=(f"no point lies below {limit:.2g} K: from {lowest:.3g} K up dispersion alone can make up a gamma"),
+        message=(
+            f"from {lowest:.3g} K up dispersion of the lattice alone can make up a gamma; it is seen below "
+            f"{limit:.2g} K, with the lattice in its T^3 range"
+        ),
         found=lowest,
         threshold=limit,
         advice="fix gamma from other knowledge, leave the term out, or measure lower",

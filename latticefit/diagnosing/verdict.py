@@ -7,14 +7,30 @@ from typing import Literal
 from ..records import FitRecord, PreparedData, ResidualBand, ResidualStatistics, ValidityFact
 from ..rounding import percent_text
 
-__all__ = ["MISFIT", "blame", "correlated", "misfit", "name_of", "only_scatter", "plain", "validity_facts", "verdict"]
+__all__ = [
+    "DURBIN_WATSON",
+    "MISFIT",
+    "RUNS_P",
+    "blame",
+    "correlated",
+    "misfit",
+    "name_of",
+    "only_scatter",
+    "plain",
+    "validity_facts",
+    "verdict",
+]
 
 MISFIT = 2.0
 """Reduced chi-square above which a model is said not to describe the data (common practice, no source)."""
 
 _UNLIKELY = 1e-3  # upper-tail probability of chi-square below which chance is ruled out
-_CORRELATED = (1.2, 2.8)  # Durbin-Watson outside this range
-_RUNS_P = 0.01
+DURBIN_WATSON = 1.2
+"""Durbin-Watson below this, or above 4 minus this, means correlated residuals."""
+
+RUNS_P = 0.01
+"""Probability of the runs test below which residuals are called correlated."""
+
 _ENOUGH = 15  # degrees of freedom below which the tests for a pattern have no power
 _MISSED = 10.0  # rms residual in percent within a decade above which a model has missed it
 _CONDITION = 1e8
@@ -27,7 +43,7 @@ def _worst(bands: tuple[ResidualBand, ...]) -> ResidualBand:
 def correlated(statistics: ResidualStatistics) -> bool:
     """Whether neighbouring residuals go together, by the Durbin-Watson or the runs test."""
     dw, p = statistics.durbin_watson, statistics.runs_test_p
-    return (dw is not None and not _CORRELATED[0] <= dw <= _CORRELATED[1]) or (p is not None and p < _RUNS_P)
+    return (dw is not None and not DURBIN_WATSON <= dw <= 4 - DURBIN_WATSON) or (p is not None and p < RUNS_P)
 
 
 def only_scatter(fit: FitRecord, statistics: ResidualStatistics) -> bool:

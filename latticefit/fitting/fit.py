@@ -8,7 +8,7 @@ from typing import Literal, cast
 import numpy as np
 from numpy.typing import NDArray
 
-from ..errors import FitError, InputError, TooFewPointsError, nearest
+from ..errors import FitError, InputError
 from ..models import Model, Parametrisation, build_model
 from ..records import (
     FitRecord,
@@ -20,7 +20,7 @@ from ..records import (
     PreparedData,
 )
 from .covariance import Covariance, at_bounds, carried_covariance, covariance
-from .setup import default_mode_sum, parametrise
+from .setup import check_names, default_mode_sum, parametrise
 from .solve import Solution, minimise_with_lmfit
 from .start import SearchResult, search
 
@@ -38,13 +38,7 @@ def requested_model(settings: ModelSettings) -> Model:
     if settings.terms is None:
         raise InputError("no model is named; give its terms, e.g. 'debye + einstein'")
     model = build_model(settings.terms, settings.cp_cv or "none")
-    for what, given in (("start", settings.start), ("fix", settings.fix), ("bounds", settings.bounds)):
-        for name in given:
-            if name not in model.names:
-                raise InputError(
-                    f"{what} names {name!r}, which the model {model.expression!r} does not have; "
-                    f"{nearest(name, model.names)}"
-                )
+    check_names(model, settings)
     return model
 
 
@@ -96,7 +90,7 @@ def fit_model(
         )
     par = parametrise(model, settings, sample, data[0], data[1])
     if data[0].size < par.free.size:
-        raise TooFewPointsError(
+        raise InputError(
             f"{data[0].size} points are too few for the {par.free.size} free parameters of {model.expression!r}; "
             "use fewer terms, fix a parameter, or widen the window"
         )

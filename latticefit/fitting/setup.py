@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
 from math import isfinite
 
 import numpy as np
@@ -11,7 +10,7 @@ from ..errors import InputError, nearest
 from ..models import Model, Parametrisation
 from ..records import FloatArray, ModelSettings, Sample
 
-__all__ = ["default_mode_sum", "parametrise"]
+__all__ = ["check_names", "default_mode_sum", "parametrise"]
 
 _MODES_PER_ATOM = 3
 _EXCESS = 2.0  # times the measured heat capacity that a held term alone may give
@@ -23,13 +22,15 @@ def default_mode_sum(settings: ModelSettings, sample: Sample) -> str:
     return settings.mode_sum or ("free" if sample.atoms is None else "fixed")
 
 
-def _check_names(model: Model, names: Iterable[str], what: str) -> None:
-    for name in names:
-        if name not in model.names:
-            raise InputError(
-                f"{what} names {name!r}, which the model {model.expression!r} does not have; "
-                f"{nearest(name, model.names)}"
-            )
+def check_names(model: Model, settings: ModelSettings) -> None:
+    """Refuse start, fix and bounds of parameters that the model does not have (InputError, the nearest offered)."""
+    for what, given in (("start", settings.start), ("fix", settings.fix), ("bounds", settings.bounds)):
+        for name in given:
+            if name not in model.names:
+                raise InputError(
+                    f"{what} names {name!r}, which the model {model.expression!r} does not have; "
+                    f"{nearest(name, model.names)}"
+                )
 
 
 def _bounds(
@@ -104,8 +105,7 @@ def parametrise(
     InputError
         For unknown names, values outside their bounds, or a fixed mode sum without a number of atoms.
     """
-    for what, names in (("start", settings.start), ("fix", settings.fix), ("bounds", settings.bounds)):
-        _check_names(model, names, what)
+    check_names(model, settings)
     both = sorted({*settings.fix} & {*settings.start, *settings.bounds})
     if both:
         raise InputError(f"{both[0]} is fixed and also has a start value or bounds; give one or the other")
