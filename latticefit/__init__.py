@@ -14,7 +14,7 @@ from ._version import __version__
 
 if TYPE_CHECKING:
     from . import functions, models
-    from .analysis import Fit, Saved, fit, load, rank, read
+    from .calls import Fit, Saved, fit, load, rank, read
     from .errors import FitError, InputError, LatticefitError
     from .records import Measurement
 
@@ -35,16 +35,16 @@ __all__ = [
 ]
 
 _HOME = {
-    "Fit": "analysis",
+    "Fit": "calls",
     "FitError": "errors",
     "InputError": "errors",
     "LatticefitError": "errors",
     "Measurement": "records",
-    "Saved": "analysis",
-    "load": "analysis",
-    "rank": "analysis",
-    "fit": "analysis",
-    "read": "analysis",
+    "Saved": "calls",
+    "load": "calls",
+    "rank": "calls",
+    "fit": "calls",
+    "read": "calls",
 }
 
 

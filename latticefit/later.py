@@ -12,18 +12,16 @@ __all__ = ["LATER_COMMANDS", "LATER_KEYS", "LATER_OPTIONS"]
 
 LATER_KEYS: Mapping[str, frozenset[str]] = MappingProxyType(
     {
-        "": frozenset(("addenda",)),
+        "": frozenset[str](),
         "sample": frozenset(("density", "scale_uncertainty")),
-        "run": frozenset(("split_by",)),
+        "run": frozenset[str](),
         "model": frozenset[str](),
         "report": frozenset[str](),
     }
 )
 """Keys of the run sheet by table; the tables themselves stand under the empty name."""
 
-LATER_OPTIONS: frozenset[str] = frozenset(
-    ("--save-sheet", *(f"--{key.replace('_', '-')}" for keys in LATER_KEYS.values() for key in keys))
-)
+LATER_OPTIONS: frozenset[str] = frozenset(f"--{key.replace('_', '-')}" for keys in LATER_KEYS.values() for key in keys)
 """Options: the same words as the keys, and those that have no key."""
 
 LATER_COMMANDS: frozenset[str] = frozenset(("batch", "elastic", "excess"))

@@ -44,6 +44,7 @@ LEVELS = {
     "held": 11,
     "notebook": 11,
     "analysis": 12,
+    "calls": 13,
     "batch": 13,
     "cli": 14,
     "__main__": 15,

@@ -140,7 +140,6 @@ BAD = {
         ["fit", COPPER, "--terms", "debye", "--scale-uncertainty", "0.5%"],
         "--scale-uncertainty is not available in this version",
     ),
-    "later option of inspect": (["inspect", COPPER, "--save-sheet=a"], "--save-sheet is not available in this version"),
     "later command": (["excess", COPPER], "the command excess is not available in this version"),
     "empty value": (["fit", COPPER, "--terms", "debye", "--temperature", ""], "--temperature must be a header"),
     "negative coverage": (["fit", COPPER, "--terms", "debye", "--coverage-factor", "-2"], "must be above 0"),

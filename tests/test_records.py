@@ -13,8 +13,7 @@ import pytest
 from analysis_factory import METAL, build
 from helpers import prepared_data
 
-from latticefit import records
-from latticefit.analysis import Fit
+from latticefit import Fit, records
 from latticefit.records import Analysis, ModelSettings, Provenance, ReadOnly, RunSettings, SampleSettings, Sheet
 
 COPIES: dict[str, Callable[[Any], Any]] = {

@@ -62,7 +62,11 @@ def _from_options(arguments: argparse.Namespace) -> tuple[Sheet, Path, Path | No
         raise InputError("--allow-outside concerns run sheets; files on the command line may lie anywhere")
     runs = tuple(options.run_settings(arguments, file) for file in arguments.files)
     sheet = Sheet(
-        options.sample_settings(arguments), runs, options.model_settings(arguments), options.report_settings(arguments)
+        options.sample_settings(arguments),
+        runs,
+        options.model_settings(arguments),
+        options.report_settings(arguments),
+        options.addenda_settings(arguments),
     )
     return sheet, Path(), None
 
@@ -106,7 +110,7 @@ def run(arguments: argparse.Namespace) -> int:
             "the melting point is not used: it only holds the coefficient of --cp-cv nernst-lindemann, where that is "
             "not named itself"
         )
-    measurement = read_measurement(sheet.sample, sheet.runs, base)
+    measurement = read_measurement(sheet.sample, sheet.runs, base, sheet.addenda)
     _tell_repairs(measurement, tell)
     return _finish(arguments, sheet, measurement, base, out, tell)
 

@@ -11,7 +11,7 @@ from ..errors import InputError
 from .parsing import CommandParser
 
 if TYPE_CHECKING:
-    from ..records import ModelSettings, ReportSettings, RunSettings, SampleSettings
+    from ..records import AddendaSettings, ModelSettings, ReportSettings, RunSettings, SampleSettings
 
 __all__ = [
     "add_column_options",
@@ -19,6 +19,7 @@ __all__ = [
     "add_point_options",
     "add_report_options",
     "add_sample_options",
+    "addenda_settings",
     "given_options",
     "is_sheet",
     "model_settings",
@@ -45,6 +46,7 @@ def add_sample_options(parser: CommandParser) -> None:
     group.add_argument(
         "--melting-point", metavar="'VALUE UNIT'", help="fixes the Nernst-Lindemann coefficient, e.g. '1358 K'"
     )
+    group.add_argument("--accept-level", action="store_true", help="take a heat capacity whose level looks impossible")
 
 
 def add_column_options(parser: CommandParser) -> None:
@@ -61,6 +63,16 @@ def add_column_options(parser: CommandParser) -> None:
         help="a column, or '0.5%%', '0.02 mJ/(mol K) + 0.3%%', '1%% below 100 K, 0.3%% above', '1 J/(mol K)'",
     )
     group.add_argument("--coverage-factor", metavar="K", help="k of the stated uncertainties, where they are U")
+    group.add_argument("--temperature-scale", metavar="SCALE", help="ITS-90, or IPTS-68 to convert T and Cp from it")
+    group.add_argument("--worksheet", metavar="NAME|NUMBER", help="sheet of a spreadsheet file")
+    group.add_argument("--split-by", metavar="COLUMN", help="a column whose values divide the file into runs")
+    group.add_argument(
+        "--addenda",
+        metavar="FILE",
+        action="append",
+        default=[],
+        help="heat capacity in J/K of what was measured with the sample, to be taken off (repeatable)",
+    )
 
 
 def add_point_options(parser: CommandParser) -> None:
@@ -71,6 +83,19 @@ def add_point_options(parser: CommandParser) -> None:
     )
     group.add_argument(
         "--mask", metavar="LOW:HIGH", action="append", default=[], help="leave this range in K out (repeatable)"
+    )
+    group.add_argument(
+        "--mask-lines", metavar="FIRST:LAST", action="append", default=[], help="leave these lines out (repeatable)"
+    )
+    group.add_argument(
+        "--require",
+        metavar="CONDITION",
+        action="append",
+        default=[],
+        help="fit only lines where a column meets a limit, e.g. 'quality >= 0.9' (repeatable)",
+    )
+    group.add_argument(
+        "--replicates", metavar="keep|average|drop-first", help="what is done with sets of repeats (default: keep)"
     )
 
 
@@ -142,6 +167,7 @@ def sample_settings(arguments: argparse.Namespace) -> SampleSettings:
 
     given = {key: getattr(arguments, key) for key in SAMPLE}
     given["atoms"] = _number(arguments.atoms, "atoms")
+    given["accept_level"] = arguments.accept_level or None
     return SampleSettings(**checked(given, SAMPLE, _option))
 
 
@@ -154,6 +180,16 @@ def run_settings(arguments: argparse.Namespace, file: str) -> RunSettings:
     given = {key: None if value == [] else value for key, value in given.items()}
     given["coverage_factor"] = _number(arguments.coverage_factor, "coverage_factor")
     return RunSettings(file=file, **checked(given, RUN, _option))
+
+
+def addenda_settings(arguments: argparse.Namespace) -> tuple[AddendaSettings, ...]:
+    """Return the `[[addenda]]` tables of the options: files in J/K."""
+    from ..reading.settings import ADDENDA, checked
+    from ..records import AddendaSettings
+
+    return tuple(
+        AddendaSettings(**checked({"file": file}, ADDENDA, lambda key: "--addenda")) for file in arguments.addenda
+    )
 
 
 def _by_name(texts: list[str], option: str, parse: Callable[[str], tuple[str, Any]]) -> dict[str, Any]:

@@ -46,7 +46,7 @@ def run(arguments: argparse.Namespace) -> int:
         if not arguments.quiet:
             print(f"latticefit: {words}", file=sys.stderr, flush=True)
 
-    measurement = read_measurement(sheet.sample, sheet.runs, base)
+    measurement = read_measurement(sheet.sample, sheet.runs, base, sheet.addenda)
     comparison = ranked(replace(sheet, model=replace(sheet.model, terms=None)), measurement, tell, base)
     if arguments.json:
         print(json_text(comparison_record(comparison)), end="")

@@ -10,7 +10,7 @@ from pathlib import Path
 import numpy as np
 
 from ..errors import InputError
-from ..records import Measurement, Repair, RunSettings, SampleSettings
+from ..records import AddendaSettings, Measurement, Repair, RunSettings, SampleSettings
 from ..sample import build_sample, sample_notes
 from .run import RunData, read_run
 from .wording import quoted
@@ -18,7 +18,12 @@ from .wording import quoted
 __all__ = ["read_measurement"]
 
 
-def read_measurement(sample: SampleSettings, runs: Sequence[RunSettings], base: Path | None = None) -> Measurement:
+def read_measurement(
+    sample: SampleSettings,
+    runs: Sequence[RunSettings],
+    base: Path | None = None,
+    addenda: Sequence[AddendaSettings] = (),
+) -> Measurement:
     """Read the files of one sample.
 
     Parameters
@@ -29,6 +34,8 @@ def read_measurement(sample: SampleSettings, runs: Sequence[RunSettings], base: 
         The files and how each is to be read, joined in this order.
     base : Path, optional
         Folder that relative file names start from; the current one by default.
+    addenda : sequence of AddendaSettings
+        Known heat capacities that are in the data and are taken off.
 
     Returns
     -------
@@ -66,6 +73,7 @@ def read_measurement(sample: SampleSettings, runs: Sequence[RunSettings], base: 
         ),
         excluded=tuple(row for part in parts for row in part.excluded),
         sample_settings=sample,
+        addenda_settings=tuple(addenda),
     )
 
 

@@ -14,11 +14,13 @@ __all__ = [
     "HIGHEST_TEMPERATURE",
     "MAX_GRID_POINTS",
     "interval_text",
+    "line_interval_text",
     "ordered_interval",
     "parse_assignment",
     "parse_bounds",
     "parse_grid",
     "parse_interval",
+    "parse_line_interval",
 ]
 
 MAX_GRID_POINTS: Final = 100_000
@@ -129,6 +131,29 @@ def interval_text(interval: tuple[float, float]) -> str:
     """Return an interval as `parse_interval` reads it; the inverse to the last bit."""
     low, high = interval
     return f"{_shortest(low) if low > 0 or not math.isfinite(high) else ''}:{_shortest(high)}"
+
+
+def parse_line_interval(text: str) -> tuple[int, int]:
+    """Read a closed interval of 1-based lines of a file: ``"40:45"``, or one line, ``"12"``.
+
+    Raises
+    ------
+    InputError
+        If it cannot be read, or its ends are not 1 <= first <= last.
+    """
+    match = re.fullmatch(r"\s*(\d{1,9})\s*(?::\s*(\d{1,9})\s*)?", text, re.ASCII)
+    if match is None:
+        raise InputError(f"lines {quoted(text)} must be a line number or FIRST:LAST, as in '12' or '40:45'")
+    first, last = int(match[1]), int(match[2] or match[1])
+    if not 1 <= first <= last:
+        raise InputError(f"lines {quoted(text)} must be FIRST:LAST, counted from 1")
+    return first, last
+
+
+def line_interval_text(lines: tuple[int, int]) -> str:
+    """Return an interval of lines as `parse_line_interval` reads it."""
+    first, last = lines
+    return str(first) if first == last else f"{first}:{last}"
 
 
 def _shortest(value: float) -> str:

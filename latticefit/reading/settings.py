@@ -14,10 +14,18 @@ from types import MappingProxyType
 from typing import Any, Final
 
 from ..errors import InputError, nearest
-from .options import HIGHEST_TEMPERATURE, MAX_GRID_POINTS, ordered_interval, parse_bounds, parse_grid, parse_interval
+from .options import (
+    HIGHEST_TEMPERATURE,
+    MAX_GRID_POINTS,
+    ordered_interval,
+    parse_bounds,
+    parse_grid,
+    parse_interval,
+    parse_line_interval,
+)
 from .wording import quoted, shown_name
 
-__all__ = ["MODEL", "REPORT", "RUN", "SAMPLE", "Converter", "checked", "temperatures", "wrong"]
+__all__ = ["ADDENDA", "MODEL", "REPORT", "RUN", "SAMPLE", "Converter", "checked", "temperatures", "wrong"]
 
 Converter = Callable[[Any, str], Any]
 
@@ -158,6 +166,35 @@ def _intervals(value: Any, where: str) -> tuple[tuple[float, float], ...]:
     return tuple(_interval(each, where, value) for each in several)
 
 
+def _lines(value: Any, where: str) -> tuple[tuple[int, int], ...]:
+    alone = isinstance(value, str) or _whole(value) is not None
+    several = [value] if alone else value
+    if not isinstance(several, (list, tuple)) or not several:
+        raise wrong(where, 'a text such as "40:45" or a list of them', value)
+    found = []
+    for each in several:
+        text = str(each) if _whole(each) is not None else each
+        if isinstance(each, tuple) and len(each) == 2 and None not in (_whole(each[0]), _whole(each[1])):
+            text = f"{each[0]}:{each[1]}"
+        if not isinstance(text, str):
+            raise wrong(where, 'a text such as "40:45" or a list of them', value)
+        try:
+            found.append(parse_line_interval(text))
+        except InputError as error:
+            raise InputError(f"{where}: {error}") from None
+    return tuple(found)
+
+
+def _texts(example: str) -> Converter:
+    def convert(value: Any, where: str) -> tuple[str, ...]:
+        several = [value] if isinstance(value, str) else value
+        if not isinstance(several, (list, tuple)) or not several:
+            raise wrong(where, f'a text such as "{example}" or a list of them', value)
+        return tuple(_text(each, where) for each in several)
+
+    return convert
+
+
 def _interval(each: Any, where: str, value: Any) -> tuple[float, float]:
     try:
         if isinstance(each, str):
@@ -236,7 +273,7 @@ def _by_name(convert: Converter) -> Converter:
     return table
 
 
-# -------------------------------------------------------------------------------------------------- the four tables
+# -------------------------------------------------------------------------------------------------- the tables
 
 SAMPLE: Final[Mapping[str, Converter]] = MappingProxyType(
     {
@@ -247,6 +284,7 @@ SAMPLE: Final[Mapping[str, Converter]] = MappingProxyType(
         "mass": _quantity_like("12.3 mg"),
         "melting_point": _quantity_like("1358 K"),
         "insulator": _flag,
+        "accept_level": _flag,
     }
 )
 RUN: Final[Mapping[str, Converter]] = MappingProxyType(
@@ -262,6 +300,21 @@ RUN: Final[Mapping[str, Converter]] = MappingProxyType(
         "heat_capacity_unit": _text,
         "window": _intervals,
         "mask": _intervals,
+        "worksheet": _text,
+        "temperature_scale": _one_of("ITS-90", "IPTS-68"),
+        "require": _texts("quality >= 0.9"),
+        "mask_lines": _lines,
+        "replicates": _one_of("keep", "average", "drop-first"),
+        "split_by": _column,
+    }
+)
+ADDENDA: Final[Mapping[str, Converter]] = MappingProxyType(
+    {
+        **{key: RUN[key] for key in ("file", "temperature", "heat_capacity", "sigma", "coverage_factor")},
+        **{key: RUN[key] for key in ("temperature_unit", "heat_capacity_unit", "worksheet", "temperature_scale")},
+        "mass": _quantity_like("0.35 mg"),
+        "fraction": _quantity_like("1.2(1)%"),
+        "runs": _texts("run1"),
     }
 )
 MODEL: Final[Mapping[str, Converter]] = MappingProxyType(

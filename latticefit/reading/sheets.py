@@ -10,16 +10,16 @@ from typing import Any, Final
 
 from ..errors import InputError, nearest
 from ..later import LATER_KEYS
-from ..records import ModelSettings, ReportSettings, RunSettings, SampleSettings, Sheet
-from .options import interval_text
-from .settings import MODEL, REPORT, RUN, SAMPLE, Converter, checked, wrong
+from ..records import AddendaSettings, ModelSettings, ReportSettings, RunSettings, SampleSettings, Sheet
+from .options import interval_text, line_interval_text
+from .settings import ADDENDA, MODEL, REPORT, RUN, SAMPLE, Converter, checked, wrong
 from .wording import quoted, shown_name
 
 __all__ = ["read_sheet", "write_sheet"]
 
 _MAX_BYTES: Final = 1_000_000
 
-_TABLES: Final = ("sample", "run", "model", "report")
+_TABLES: Final = ("sample", "run", "addenda", "model", "report")
 
 
 def read_sheet(path: Path, allow_outside: bool = False) -> Sheet:
@@ -54,6 +54,7 @@ def read_sheet(path: Path, allow_outside: bool = False) -> Sheet:
         runs=_runs(content.get("run"), shown),
         model=ModelSettings(**_table(content.get("model", {}), "model", MODEL, f"{shown}: [model]")),
         report=ReportSettings(**_table(content.get("report", {}), "report", REPORT, f"{shown}: [report]")),
+        addenda=_addenda(content.get("addenda", []), shown),
     )
     if not allow_outside:
         _refuse_outside(sheet, path.parent, shown)
@@ -84,7 +85,7 @@ def _table(content: Any, name: str, keys: Mapping[str, Converter], where: str) -
     if not isinstance(content, dict):
         raise wrong(where, "a table", content)
     for key in content:
-        if key in LATER_KEYS[name]:
+        if key in LATER_KEYS.get(name, ()):
             raise InputError(f"{where} {key} is not available in this version; remove it")
         if key not in keys:
             raise InputError(f"{where} has no key {quoted(key)}; {nearest(key, keys)}")
@@ -108,8 +109,23 @@ def _runs(content: Any, shown: str) -> tuple[RunSettings, ...]:
     return tuple(runs)
 
 
+def _addenda(content: Any, shown: str) -> tuple[AddendaSettings, ...]:
+    """Read ``[addenda]``, or several ``[[addenda]]``."""
+    entries = [content] if isinstance(content, dict) else content
+    if not isinstance(entries, list):
+        raise wrong(f"{shown}: addenda", "a table [addenda] or several [[addenda]]", content)
+    found = []
+    for number, entry in enumerate(entries, start=1):
+        where = f"{shown}: [addenda]" if isinstance(content, dict) else f"{shown}: [[addenda]] {number}"
+        settings = _table(entry, "addenda", ADDENDA, where)
+        if "file" not in settings:
+            raise InputError(f'{where} has no file; add file = "..."')
+        found.append(AddendaSettings(**settings))
+    return tuple(found)
+
+
 def _refuse_outside(sheet: Sheet, folder: Path, shown: str) -> None:
-    named = [run.file for run in sheet.runs]
+    named = [run.file for run in sheet.runs] + [known.file for known in sheet.addenda]
     named += [name for name in (sheet.report.out, sheet.model.fix_from) if name]
     try:
         root = folder.resolve()
@@ -130,14 +146,16 @@ def write_sheet(sheet: Sheet) -> str:
 
     # each run by itself: the library would set short ones inside one list, where people write [[run]]
     runs = ["[[run]]\n" + tomli_w.dumps(_changed(run)) for run in sheet.runs]
+    addenda = ["[[addenda]]\n" + tomli_w.dumps(_changed(each)) for each in sheet.addenda]
     return "\n".join(
-        [*table("sample", sheet.sample), *runs, *table("model", sheet.model), *table("report", sheet.report)]
+        [*table("sample", sheet.sample), *runs, *addenda, *table("model", sheet.model), *table("report", sheet.report)]
     )
 
 
 def _changed(settings: Any) -> dict[str, Any]:
     """Return the fields of a settings record that are not at their default, as TOML values."""
-    default = type(settings)("") if isinstance(settings, RunSettings) else type(settings)()
+    named = isinstance(settings, (RunSettings, AddendaSettings))
+    default = type(settings)("") if named else type(settings)()
     changed = {}
     for entry in fields(settings):
         value = getattr(settings, entry.name)
@@ -145,6 +163,10 @@ def _changed(settings: Any) -> dict[str, Any]:
             continue
         if entry.name in ("window", "mask"):
             value = [interval_text(interval) for interval in value]
+        elif entry.name == "mask_lines":
+            value = [line_interval_text(lines) for lines in value]
+        elif isinstance(value, tuple):
+            value = list(value)
         elif isinstance(value, Mapping):
             value = {name: list(part) if isinstance(part, tuple) else part for name, part in value.items()}
         changed[entry.name] = value

@@ -7,7 +7,18 @@ unpickled one; a record that holds arrays is equal to itself alone.
 
 from __future__ import annotations
 
-from .base import Basis, FloatArray, Frozen, Level, ParameterStatus, Quantity, ReadOnly, SigmaKind
+from .base import (
+    Basis,
+    FloatArray,
+    Frozen,
+    Level,
+    ParameterStatus,
+    Quantity,
+    ReadOnly,
+    Replicates,
+    SigmaKind,
+    TemperatureScale,
+)
 from .data import ExcludedRow, Measurement, PreparedData, Reading, Repair, Sample
 from .derived import (
     Analysis,
@@ -31,9 +42,10 @@ from .findings import (
     ResidualStatistics,
     ValidityFact,
 )
-from .request import ModelSettings, ReportSettings, RunSettings, SampleSettings, Sheet
+from .request import AddendaSettings, ModelSettings, ReportSettings, RunSettings, SampleSettings, Sheet
 
 __all__ = [
+    "AddendaSettings",
     "Analysis",
     "Basis",
     "Candidate",
@@ -60,6 +72,7 @@ __all__ = [
     "ReadOnly",
     "Reading",
     "Repair",
+    "Replicates",
     "ReportSettings",
     "ResidualBand",
     "ResidualStatistics",
@@ -69,6 +82,7 @@ __all__ = [
     "SavedResult",
     "Sheet",
     "SigmaKind",
+    "TemperatureScale",
     "ThermodynamicTable",
     "ValidityFact",
 ]

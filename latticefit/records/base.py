@@ -9,12 +9,26 @@ from typing import Any, Literal, TypeVar
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["Basis", "FloatArray", "Frozen", "Level", "ParameterStatus", "Quantity", "ReadOnly", "SigmaKind", "empty"]
+__all__ = [
+    "Basis",
+    "FloatArray",
+    "Frozen",
+    "Level",
+    "ParameterStatus",
+    "Quantity",
+    "ReadOnly",
+    "Replicates",
+    "SigmaKind",
+    "TemperatureScale",
+    "empty",
+]
 
 FloatArray = NDArray[np.float64]
 Basis = Literal["mol", "gram", "sample"]
 Quantity = Literal["Cp", "Cv"]
 SigmaKind = Literal["stated", "estimated"]
+Replicates = Literal["keep", "average", "drop-first"]
+TemperatureScale = Literal["ITS-90", "IPTS-68"]
 Level = Literal["note", "warn", "stop"]
 ParameterStatus = Literal["fitted", "fixed", "tied", "at_bound", "undetermined"]
 

@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from .base import Basis, FloatArray, Frozen, Quantity, SigmaKind
-from .request import RunSettings, SampleSettings
+from .request import AddendaSettings, RunSettings, SampleSettings
 
 __all__ = ["ExcludedRow", "Measurement", "PreparedData", "Reading", "Repair", "Sample"]
 
@@ -22,7 +22,8 @@ _UNITS: Mapping[Basis, str] = {"mol": "J/(mol K)", "gram": "J/(g K)", "sample": 
 class Sample:
     """The sample: atoms per formula unit, molar mass in kg/mol, mass in kg, melting point in K; None where unknown.
 
-    `insulator` is True where the user declared that there are no conduction electrons.
+    `insulator` is True where the user declared that there are no conduction electrons; `mass_u` is the standard
+    uncertainty of the mass, kg, None where none is stated.
     """
 
     name: str
@@ -32,6 +33,7 @@ class Sample:
     mass: float | None = None
     melting_point: float | None = None
     insulator: bool = False
+    mass_u: float | None = None
 
 
 @dataclass(frozen=True)
@@ -57,7 +59,10 @@ class ExcludedRow:
 
 @dataclass(frozen=True)
 class Reading:
-    """How one file was read: path, sha256 of its bytes, and the choices that were made."""
+    """How one run was read: path and sha256 of its file, and the choices that were made.
+
+    Runs that come from one file, divided by a column, share its path and its settings.
+    """
 
     path: str
     file: str
@@ -91,6 +96,14 @@ class Measurement(Frozen):
         Index into `readings`.
     line : ndarray of int, shape (n,)
         1-based line in the file.
+    set_aside : tuple of (str or None), length n or 0
+        Why a point is not to be fitted although it could be read (a line that is masked, a condition that is not met);
+        None for the others. Empty where no point is set aside.
+    addenda, addenda_u : ndarray, shape (n,), or None
+        The known heat capacity that was taken off at each point, and its standard uncertainty (k = 1), which is not in
+        `sigma`; unit as `heat_capacity`. None where nothing was taken off.
+    addenda_readings : tuple of Reading
+        How the files of known heat capacities were read, one for each of `addenda_settings`.
     """
 
     sample: Sample
@@ -106,6 +119,11 @@ class Measurement(Frozen):
     repairs: tuple[Repair, ...]
     excluded: tuple[ExcludedRow, ...]
     sample_settings: SampleSettings
+    set_aside: tuple[str | None, ...] = ()
+    addenda: FloatArray | None = None
+    addenda_u: FloatArray | None = None
+    addenda_settings: tuple[AddendaSettings, ...] = ()
+    addenda_readings: tuple[Reading, ...] = ()
 
     def _facts(self) -> dict[str, str]:
         """What a notebook shows of it; names stand in quotes, with whatever does not print escaped."""

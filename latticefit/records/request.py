@@ -6,14 +6,17 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 from typing import Literal
 
-from .base import Frozen, Quantity, ReadOnly, empty
+from .base import Frozen, Quantity, ReadOnly, Replicates, TemperatureScale, empty
 
-__all__ = ["ModelSettings", "ReportSettings", "RunSettings", "SampleSettings", "Sheet"]
+__all__ = ["AddendaSettings", "ModelSettings", "ReportSettings", "RunSettings", "SampleSettings", "Sheet"]
 
 
 @dataclass(frozen=True)
 class SampleSettings:
-    """The `[sample]` table of a run sheet, as written (quantities are strings with unit)."""
+    """The `[sample]` table of a run sheet, as written (quantities are strings with unit).
+
+    `accept_level` takes a heat capacity whose level looks impossible as it stands.
+    """
 
     name: str | None = None
     formula: str | None = None
@@ -22,6 +25,7 @@ class SampleSettings:
     mass: str | None = None
     melting_point: str | None = None
     insulator: bool = False
+    accept_level: bool = False
 
 
 @dataclass(frozen=True)
@@ -29,7 +33,9 @@ class RunSettings:
     """One `[[run]]` of a run sheet: a file and how it is to be read.
 
     `temperature` and `heat_capacity` are a header or a 1-based column number, None to recognise them; `sigma` is
-    a header, a column number or a sigma text. `window` and `mask` are closed intervals in K.
+    a header, a column number, a sigma text or the word "scatter" or "replicates", which estimates it from the data.
+    `window` and `mask` are closed intervals in K, `mask_lines` closed intervals of 1-based lines of the file, `require`
+    conditions on a column, such as ``"quality >= 0.9"``; `split_by` is a column whose values divide the file into runs.
     """
 
     file: str
@@ -43,6 +49,35 @@ class RunSettings:
     heat_capacity_unit: str | None = None
     window: tuple[tuple[float, float], ...] = ()
     mask: tuple[tuple[float, float], ...] = ()
+    worksheet: str | None = None
+    temperature_scale: TemperatureScale | None = None
+    require: tuple[str, ...] = ()
+    mask_lines: tuple[tuple[int, int], ...] = ()
+    replicates: Replicates | None = None
+    split_by: str | int | None = None
+
+
+@dataclass(frozen=True)
+class AddendaSettings:
+    """One `[[addenda]]` of a run sheet: a known heat capacity that is in the data and is taken off.
+
+    Columns, units and sigma as in `RunSettings`. A file in J/K is taken off as it stands; one per gram needs `mass`
+    (grease, exchange gas) or `fraction`, the part of the sample's mass that is another substance. `runs` holds the
+    labels of the runs that it concerns, all of them when empty.
+    """
+
+    file: str
+    temperature: str | int | None = None
+    heat_capacity: str | int | None = None
+    sigma: str | int | None = None
+    coverage_factor: float | None = None
+    temperature_unit: str | None = None
+    heat_capacity_unit: str | None = None
+    worksheet: str | None = None
+    temperature_scale: TemperatureScale | None = None
+    mass: str | None = None
+    fraction: str | None = None
+    runs: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -82,3 +117,4 @@ class Sheet:
     runs: tuple[RunSettings, ...]
     model: ModelSettings = field(default_factory=ModelSettings)
     report: ReportSettings = field(default_factory=ReportSettings)
+    addenda: tuple[AddendaSettings, ...] = ()
