@@ -14,6 +14,7 @@ from ..models import build_model
 from ..records import Analysis, DerivedValue, ParameterValue, ThermodynamicTable
 from ..rounding import percent_text
 from ..wording import harmless
+from .level import level_text
 from .wording import concise, plain_number, plus_minus, shown_unit, significant
 
 __all__ = [
@@ -108,6 +109,7 @@ def measured_rows(analysis: Analysis) -> tuple[Row, ...]:
         Row("points", points, "; ".join(left_out)),
         Row("range fitted", _range(prepared.temperature[0], prepared.temperature[-1])),
         Row("sigma", prepared.sigma_text, f"the covariance is {analysis.fit.covariance_kind}"),
+        *(() if analysis.level is None else (Row("level", level_text(analysis.level)),)),
     )
 
 
