@@ -82,7 +82,7 @@ def test_entities_are_refused(tmp_path: Path) -> None:
 
 @pytest.mark.parametrize(
     ("rows", "words"),
-    [([[1.0] * 1001, [2.0] * 1001], "row 1 has more than the 1000 columns"), ([["x"]], "no sheet holds")],
+    [([[1.0] * 1001, [2.0] * 1001], "row 1 has more than the 1000 columns"), ([["x"]], "no worksheet holds")],
 )
 def test_sheet_without_a_readable_table(rows: list[list[Any]], words: str, tmp_path: Path) -> None:
     """Too many columns, or no numbers, are refused in words."""
@@ -124,7 +124,7 @@ def test_sheet_is_named_where_there_are_several(tmp_path: Path) -> None:
         sheet.append(row)
     stream = io.BytesIO()
     workbook.save(stream)
-    assert "read from sheet 'run 1', the only one of 2 that holds a table" in messages(
+    assert "read from worksheet 'run 1', the only one of 2 that holds a table" in messages(
         read_text(tmp_path, stream.getvalue())
     )
 

@@ -14,6 +14,7 @@ from types import MappingProxyType
 from typing import Any, Final
 
 from ..errors import InputError, nearest
+from .conditions import check_condition
 from .options import (
     HIGHEST_TEMPERATURE,
     MAX_GRID_POINTS,
@@ -195,6 +196,13 @@ def _texts(example: str) -> Converter:
     return convert
 
 
+def _conditions(value: Any, where: str) -> tuple[str, ...]:
+    try:
+        return tuple(check_condition(text) for text in _texts("quality >= 0.9")(value, where))
+    except InputError as error:
+        raise InputError(str(error) if str(error).startswith(where) else f"{where}: {error}") from None
+
+
 def _interval(each: Any, where: str, value: Any) -> tuple[float, float]:
     try:
         if isinstance(each, str):
@@ -302,7 +310,7 @@ RUN: Final[Mapping[str, Converter]] = MappingProxyType(
         "mask": _intervals,
         "worksheet": _text,
         "temperature_scale": _one_of("ITS-90", "IPTS-68"),
-        "require": _texts("quality >= 0.9"),
+        "require": _conditions,
         "mask_lines": _lines,
         "replicates": _one_of("keep", "average", "drop-first"),
         "split_by": _column,
