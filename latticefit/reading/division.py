@@ -17,7 +17,7 @@ from .columns import chosen_column, find_column
 from .headers import Column
 from .rows import decimal_of, place
 from .table import Table
-from .values import is_number, parse_number
+from .values import Decimal, is_number, parse_number
 from .wording import bare, counted, listed, quoted
 
 __all__ = ["LABEL_COLUMNS", "MAX_RUNS", "Division", "divide_rows", "escaped_label", "order_notes"]
@@ -106,7 +106,9 @@ def divide_rows(
             )
     names = tuple(dict.fromkeys(value for value, use in zip(values, usable, strict=True) if use and value))
     _refuse_measured(names, int(usable.sum()), column, shown)
-    as_label = tuple(column.name.strip().casefold() in LABEL_COLUMNS and not is_number(name) for name in names)
+    as_label = tuple(
+        column.name.strip().casefold() in LABEL_COLUMNS and _finite(name, "point") is None for name in names
+    )
     named = tuple(
         _unescaped(name) if own else f"{column.label} = {name}" for name, own in zip(names, as_label, strict=True)
     )
@@ -124,14 +126,18 @@ def _values(fitted: Table, table: Table, columns: Sequence[Column], shown: str) 
     decimal = decimal_of(fitted, columns, shown)
     values = []
     for cell in cells:
-        number = parse_number(cell, decimal) if is_number(cell) else None
-        finite = number is not None and math.isfinite(number.value)
-        values.append(repr(number.value + 0.0).removesuffix(".0") if finite and number is not None else cell)
+        number = _finite(cell, decimal)
+        values.append(cell if number is None else repr(number + 0.0).removesuffix(".0"))
     return values
 
 
+def _finite(cell: str, decimal: Decimal) -> float | None:
+    number = parse_number(cell, decimal) if is_number(cell) else None
+    return number.value if number is not None and math.isfinite(number.value) else None
+
+
 def _refuse_measured(names: tuple[str, ...], rows: int, column: Column, shown: str) -> None:
-    numbers = sum(map(is_number, names))
+    numbers = sum(_finite(name, "point") is not None for name in names)
     few = numbers > 10 and 2 * numbers > rows
     if len(names) > MAX_RUNS or few:
         many = f"{len(names)} values in {rows} rows"

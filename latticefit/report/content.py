@@ -38,6 +38,8 @@ __all__ = [
     "withheld_notes",
 ]
 
+_REASONS = 5  # of points that are not fitted, those named
+
 
 @dataclass(frozen=True)
 class Row:
@@ -99,7 +101,9 @@ def measured_rows(analysis: Analysis) -> tuple[Row, ...]:
     ]
     about += [] if sample.mass is None else [f"mass {plain_number(1e6 * sample.mass, 6)} mg"]
     about += [] if sample.melting_point is None else [f"melting point {plain_number(sample.melting_point, 6)} K"]
-    left_out = [f"{count} not fitted ({reason})" for reason, count in reasons.items()]
+    left_out = [f"{count} not fitted ({reason})" for reason, count in reasons.most_common(_REASONS)]
+    others = sum(count for _, count in reasons.most_common()[_REASONS:])
+    left_out += [f"{others} not fitted for reasons that residuals.csv gives"] if others else []
     left_out += [f"{len(measurement.excluded)} rows left out at reading"] if measurement.excluded else []
     return (
         Row("sample", headline(analysis), ", ".join(about)),
@@ -303,7 +307,8 @@ def provenance_rows(analysis: Analysis) -> tuple[Row, ...]:
     """Say which version made the result, when, from which bytes, with what."""
     provenance = analysis.provenance
     packages = ", ".join(f"{name} {version}" for name, version in provenance.packages.items())
-    files = tuple(Row("sha256", each.sha256, each.file) for each in analysis.measurement.readings)
+    read = dict.fromkeys((each.sha256, each.file) for each in analysis.measurement.readings)
+    files = tuple(Row("sha256", sha256, file) for sha256, file in read)
     return (
         Row("latticefit", provenance.version, packages),
         Row("made", provenance.created, f"random seed {provenance.random_seed}"),
