@@ -19,7 +19,20 @@ from latticefit.records import Measurement, Reading, RunSettings, Sample, Sample
 LABELS = [
     *("run 1", "run, Field (T) = 5", "cooling", "1", "1.0", "5e3", "1 2 3", "run 1 2 3", "a,b", 'a"b', "a;b", "a\tb"),
     *("x\ny", "#1", " edge ", "=1+1", "-", "nan", "1 \u00b1 2", "2 x 10", "run 1 a)", "\\u{41}", "\u202eabc", "\ud800"),
-    *("\u03b8 = 0\u00b0", "run", "label", "T_K", "Series 2", "used", "yes", "12.3(4)", "'", "\x00", "\U0001f600", "1,5"),
+    *(
+        "\u03b8 = 0\u00b0",
+        "run",
+        "label",
+        "T_K",
+        "Series 2",
+        "used",
+        "yes",
+        "12.3(4)",
+        "'",
+        "\x00",
+        "\U0001f600",
+        "1,5",
+    ),
 ]
 POSITIVE = st.floats(min_value=5e-324, max_value=1.7e308, exclude_min=False, allow_subnormal=True)
 
@@ -49,7 +62,9 @@ def build(
 @settings(suppress_health_check=[HealthCheck.function_scoped_fixture], max_examples=200, deadline=None)
 @given(
     points=st.lists(st.tuples(POSITIVE, POSITIVE, POSITIVE), min_size=1, max_size=12),
-    labels=st.lists(st.one_of(st.sampled_from(LABELS), st.text(min_size=1, max_size=12)), min_size=1, max_size=5, unique=True),
+    labels=st.lists(
+        st.one_of(st.sampled_from(LABELS), st.text(min_size=1, max_size=12)), min_size=1, max_size=5, unique=True
+    ),
     basis=st.sampled_from(["mol", "gram", "sample"]),
     quantity=st.sampled_from(["Cp", "Cv"]),
     stated=st.booleans(),
@@ -75,7 +90,14 @@ def test_any_measurement_reads_back_identical(
     assert [each.label for each in back.readings] == labels
     assert (back.quantity, back.basis) == (quantity, basis)
     assert [each is not None for each in back.set_aside] == [each is not None for each in why]
-    assert not [each.message for each in back.repairs if "order" not in each.message and "divided" not in each.message and "not fitted" not in each.message and "fall" not in each.message]
+    assert not [
+        each.message
+        for each in back.repairs
+        if "order" not in each.message
+        and "divided" not in each.message
+        and "not fitted" not in each.message
+        and "fall" not in each.message
+    ]
 
 
 def test_what_is_read_is_written_and_read_again(tmp_path: Path) -> None:

@@ -106,13 +106,13 @@ def set_aside(
         decimal = "point" if condition.number is None else decimal_of(unmasked, shared, shown)
         unmet = _unmet(table, condition, decimal)
         if None not in unmet:
-            held = list(dict.fromkeys(table.cell(row, condition.column.index) for row in table.rows))
-            raise InputError(f"{shown}: no row meets the condition {quoted(text)}; the column holds {listed(held)}")
+            held = _held(table, condition, decimal)
+            raise InputError(f"{shown}: no row meets the condition {quoted(text)}; the column holds {held}")
         count = sum(reason is not None for reason in unmet)
         notes += [f"{counted(count, 'row')} of {len(unmet)} not fitted: {quoted(text)} is not met"] if count else []
         reasons = [before or reason for before, reason in zip(reasons, unmet, strict=True)]
     if None not in reasons:
-        raise InputError(f"{shown}: masked lines and conditions together leave no row to fit; widen one of them")
+        raise InputError(f"{shown}: masked lines and conditions together leave no row to fit; loosen one of them")
     return reasons, tuple(notes)
 
 
@@ -156,7 +156,7 @@ def _condition(text: str, columns: tuple[Column, ...], shown: str) -> _Condition
 
 def _unmet(table: Table, condition: _Condition, decimal: Decimal) -> list[str | None]:
     """Say for each row in which way it does not meet the condition, None where it does."""
-    wanted = f"not {condition.sign} {bare(condition.limit)}"
+    wanted = f"not {condition.sign} {bare(condition.limit)}".replace("not = ", "not ")
     if condition.sign == "!=":
         wanted = f"which the condition {quoted(condition.text)} leaves out"
     name = bare(condition.column.label)
@@ -166,6 +166,16 @@ def _unmet(table: Table, condition: _Condition, decimal: Decimal) -> list[str | 
         reason = _against(cell, condition, decimal)
         reasons.append(None if reason is None else f"{name} is {reason}, {wanted}")
     return reasons
+
+
+def _held(table: Table, condition: _Condition, decimal: Decimal) -> str:
+    """Say what stands in the column: the range of its numbers, or its texts."""
+    cells = dict.fromkeys(table.cell(row, condition.column.index) for row in table.rows)
+    numbers = [number.value for cell in cells if (number := parse_number(cell, decimal)) is not None]
+    finite = [number for number in numbers if math.isfinite(number)]
+    if condition.number is None or not finite:
+        return listed(cells)
+    return f"numbers from {min(finite):g} to {max(finite):g}"
 
 
 def _against(cell: str, condition: _Condition, decimal: Decimal) -> str | None:

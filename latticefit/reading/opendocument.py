@@ -44,7 +44,7 @@ def read_ods(
     Raises
     ------
     ValueError
-        If it is damaged or no spreadsheet.
+        If it is damaged.
     """
     reader = _Reader(wanted, limits, refuse)
     parser = expat.ParserCreate(namespace_separator=" ")
@@ -56,8 +56,6 @@ def read_ods(
         parser.ParseFile(content)
     except expat.ExpatError as error:
         raise ValueError(str(error)) from None
-    if not reader.is_spreadsheet:
-        raise ValueError("no spreadsheet in it")
     return reader.sheets
 
 
@@ -66,7 +64,6 @@ class _Reader:
 
     def __init__(self, wanted: Callable[[int, str], bool], limits: tuple[int, int], refuse: Refuse) -> None:
         self.sheets: OdsSheets = {}
-        self.is_spreadsheet = False
         self._wanted, self._refuse = wanted, refuse
         self._most_columns, self._most_cells = limits
         self._unread = 0  # how deep inside something that is not read
@@ -89,8 +86,6 @@ class _Reader:
             self._cell, self._words = attributes, []
         elif name in _BLANKS and self._words:
             self._words.append(" ")
-        elif name == f"{_OFFICE}spreadsheet":
-            self.is_spreadsheet = True
 
     def end(self, name: str) -> None:
         if self._unread:

@@ -168,8 +168,9 @@ def _intervals(value: Any, where: str) -> tuple[tuple[float, float], ...]:
 
 
 def _lines(value: Any, where: str) -> tuple[tuple[int, int], ...]:
-    alone = isinstance(value, str) or _whole(value) is not None
-    several = [value] if alone else value
+    # (40, 45) is an interval, as (2, 300) is one of temperatures; [40, 45] is two lines
+    alone = isinstance(value, tuple) and any(_whole(side) is not None for side in value)
+    several = [value] if alone or isinstance(value, str) or _whole(value) is not None else value
     if not isinstance(several, (list, tuple)) or not several:
         raise wrong(where, 'a text such as "40:45" or a list of them', value)
     found = []

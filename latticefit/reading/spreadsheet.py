@@ -105,7 +105,10 @@ def _ods(archive: zipfile.ZipFile, names: set[str], shown: str) -> Callable[[_Wa
 
     def read(wanted: _Wanted) -> dict[str, list[list[str]]]:
         with archive.open("content.xml") as content:
-            return read_ods(content, wanted, (MAX_SHEET_COLUMNS, MAX_CELLS), refuse)
+            sheets = read_ods(content, wanted, (MAX_SHEET_COLUMNS, MAX_CELLS), refuse)
+        if not sheets:
+            raise InputError(f"{shown}: is an OpenDocument file but no spreadsheet; save the table as CSV")
+        return sheets
 
     return read
 

@@ -38,8 +38,6 @@ __all__ = [
     "withheld_notes",
 ]
 
-_REASONS = 5  # of points that are not fitted, those named
-
 
 @dataclass(frozen=True)
 class Row:
@@ -92,7 +90,11 @@ def measured_rows(analysis: Analysis) -> tuple[Row, ...]:
         for each in measurement.readings
     ]
     kind = "constant volume (Cv)" if measurement.quantity == "Cv" else "constant pressure (Cp)"
-    reasons = Counter(each for each in prepared.reasons if each is not None)
+    set_aside = measurement.set_aside or (None,) * len(prepared.reasons)
+    aside = sum(each is not None for each in set_aside)
+    reasons = Counter(
+        each for each, why in zip(prepared.reasons, set_aside, strict=True) if each is not None and why is None
+    )
     points = f"{prepared.temperature.size} fitted of {measurement.temperature.size} read"
     how = [
         f"T from {harmless(each.temperature_column)!r} in {each.temperature_unit}, heat capacity from "
@@ -101,9 +103,8 @@ def measured_rows(analysis: Analysis) -> tuple[Row, ...]:
     ]
     about += [] if sample.mass is None else [f"mass {plain_number(1e6 * sample.mass, 6)} mg"]
     about += [] if sample.melting_point is None else [f"melting point {plain_number(sample.melting_point, 6)} K"]
-    left_out = [f"{count} not fitted ({reason})" for reason, count in reasons.most_common(_REASONS)]
-    others = sum(count for _, count in reasons.most_common()[_REASONS:])
-    left_out += [f"{others} not fitted for reasons that residuals.csv gives"] if others else []
+    left_out = [f"{count} not fitted ({reason})" for reason, count in reasons.items()]
+    left_out += [f"{aside} set aside by line or by condition, as the repairs say"] if aside else []
     left_out += [f"{len(measurement.excluded)} rows left out at reading"] if measurement.excluded else []
     return (
         Row("sample", headline(analysis), ", ".join(about)),
