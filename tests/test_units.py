@@ -95,8 +95,8 @@ def test_factor_is_the_published_definition(text: str, factor: float, basis: str
 
 
 # NIST Special Publication 811 (2008), appendix B.8, "Heat capacity and entropy" and "Specific heat capacity and
-# specific entropy", in J/K and J/(kg K), seven digits as printed there (from memory). Its Btu and calories without index
-# are not used: a bare Btu is the International Table one here, a bare calorie the thermochemical one.
+# specific entropy", in J/K and J/(kg K), seven digits as printed there (from memory). Its Btu and calories without
+# index are not used: a bare Btu is the International Table one here, a bare calorie the thermochemical one.
 PRINTED = [
     ("Btu/degF", 1.899101e3, 1.0),
     ("Btu/degR", 1.899101e3, 1.0),

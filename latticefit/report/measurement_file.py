@@ -124,7 +124,7 @@ def write_measurement_file(measurement: Measurement, path: Path, replace: bool =
     if path.exists() and any(path.resolve() == Path(each.path) for each in measurement.readings):
         raise InputError(f"{shown!r} is a file that was read for this measurement; it is never replaced, name another")
     if path.exists() and not replace:
-        raise InputError(f"{shown!r} exists already; name another file, or allow it by replace")
+        raise InputError(f"{shown!r} exists already; name another file, or give replace=True")
     aside = path.with_name(f".{path.name[:40]}-{secrets.token_hex(6)}.partial")
     try:
         try:
