@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import tomllib
+from pathlib import Path
 from typing import Any
 
 import pytest
@@ -12,6 +13,7 @@ from reading_helpers import SAMPLE
 
 from latticefit.errors import InputError
 from latticefit.reading import read_measurement
+from latticefit.reading.settings import RUN, checked
 from latticefit.records import RunSettings
 
 CORPUS = ROOT / "tests" / "corpus"
@@ -21,7 +23,7 @@ CASES = tomllib.loads((CORPUS / "expected.toml").read_text(encoding="utf-8"))["c
 @pytest.mark.parametrize("case", CASES, ids=[case["file"] for case in CASES])
 def test_file_of_the_corpus(case: dict[str, Any]) -> None:
     """The file gives its arrays and every repair with its line, or is refused in its sentence."""
-    run = RunSettings(case["file"], **case.get("options", {}))
+    run = RunSettings(case["file"], **checked(case.get("options", {}), RUN))
     if "refused" in case:
         with pytest.raises(InputError) as caught:
             read_measurement(SAMPLE, (run,), base=CORPUS)
@@ -33,6 +35,9 @@ def test_file_of_the_corpus(case: dict[str, Any]) -> None:
     assert (measurement.sigma is None) == ("sigma_J_molK" not in case)
     if measurement.sigma is not None:
         assert_allclose(measurement.sigma, case["sigma_J_molK"], rtol=1e-12)
+    assert [each.label for each in measurement.readings] == case.get("labels", [Path(case["file"]).stem])
+    assert measurement.run.tolist() == case.get("run", [0] * measurement.run.size)
+    assert [why or "" for why in measurement.set_aside] == case.get("set_aside", [])
     assert [_line(repair.line) + repair.message for repair in measurement.repairs] == case["repairs"]
 
 
@@ -47,14 +52,14 @@ def test_every_file_is_expected_and_says_that_it_is_invented() -> None:
     assert len(files) >= 60
     for name in files:
         data = (CORPUS / name).read_bytes().replace(b"\x00", b"")
-        assert b"invented data" in data or name.endswith(".xlsx"), name
+        assert b"invented data" in data or name.endswith((".xlsx", ".ods")), name
 
 
 @pytest.mark.parametrize("case", [case for case in CASES if "refused" not in case], ids=lambda case: case["file"])
 def test_reading_is_repeated_by_its_settings(case: dict[str, Any]) -> None:
     """The settings of a reading read the file again in the same way, to the last bit."""
-    run = RunSettings(case["file"], **case.get("options", {}))
+    run = RunSettings(case["file"], **checked(case.get("options", {}), RUN))
     first = read_measurement(SAMPLE, (run,), base=CORPUS)
     again = read_measurement(SAMPLE, (first.readings[0].settings,), base=CORPUS)
-    for name in ("temperature", "heat_capacity", "line", "readings"):
+    for name in ("temperature", "heat_capacity", "line", "run", "set_aside", "readings"):
         assert repr(getattr(again, name)) == repr(getattr(first, name))

@@ -158,7 +158,10 @@ WRONG = [
     (RUN + "[addenda]\nmass = '1 mg'\n", '[addenda] has no file; add file = "..."'),
     (RUN + "[[addenda]]\nfile = 'b.csv'\nmas = '1 mg'\n", "[[addenda]] 1 has no key 'mas'; did you mean 'mass'?"),
     ("addenda = 3\n" + RUN, "addenda must be a table [addenda] or several [[addenda]], not 3"),
-    (RUN + "split_by = true\n", "[[run]] split_by must be a header in quotes or a column number from 1 on, not true or false"),
+    (
+        RUN + "split_by = true\n",
+        "[[run]] split_by must be a header in quotes or a column number from 1 on, not true or false",
+    ),
     (RUN + "mask_lines = '9:3'\n", "[[run]] mask_lines: lines '9:3' must be FIRST:LAST, counted from 1"),
     (RUN + "replicates = 'mean'\n", "[[run]] replicates cannot be 'mean': known are average, drop-first and keep"),
     (RUN + "[sample]\ndensity = \"1 g/cm3\"\n", "[sample] density is not available in this version; remove it"),
