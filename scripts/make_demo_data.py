@@ -7,6 +7,7 @@ writes data/demo/*.csv and data/demo/truth.toml; the same seeds give the same fi
 
 from __future__ import annotations
 
+import codecs
 from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
@@ -98,6 +99,7 @@ class Demo:
     noise: float
     seed: int
     write: Callable[[np.ndarray, np.ndarray, np.ndarray, float], list[str]]
+    utf16: bool = False
 
 
 def with_sigma(T: np.ndarray, C: np.ndarray, sigma: np.ndarray, molar_mass: float) -> list[str]:
@@ -115,6 +117,12 @@ def per_gram(T: np.ndarray, C: np.ndarray, sigma: np.ndarray, molar_mass: float)
     """Semicolons, decimal commas, J/(g K)."""
     rows = [f"{t:.3f};{c / molar_mass:.6g}".replace(".", ",") for t, c in zip(T, C, strict=True)]
     return ["T (K);cp (J/(g K))", *rows]
+
+
+def per_gram_below_units(T: np.ndarray, C: np.ndarray, sigma: np.ndarray, molar_mass: float) -> list[str]:
+    """Semicolons, decimal commas, the units in a row below the names, J/(g K)."""
+    rows = [f"{t:.3f};{c / molar_mass:.6g}".replace(".", ",") for t, c in zip(T, C, strict=True)]
+    return ["T;cp", "K;J/(g K)", *rows]
 
 
 DEMOS = (
@@ -204,6 +212,31 @@ DEMOS = (
         104,
         with_sigma,
     ),
+    Demo(
+        "sjelite",
+        "Sjelite, powder SJ-2, a hydrate",
+        "an insulator, all modes below 500 K as no real water has; per gram, no uncertainties stated",
+        "He4Ne4*2H2O",
+        model_truth(
+            "debye + einstein",
+            "nernst-lindemann",
+            14,
+            {
+                "debye_theta": 205.0,
+                "debye_modes": 26.0,
+                "einstein_theta": 430.0,
+                "einstein_modes": 16.0,
+                "nernst_lindemann_coefficient": 2.0e-7,
+            },
+        ),
+        2.2,
+        310.0,
+        130,
+        0.006,
+        105,
+        per_gram_below_units,
+        utf16=True,
+    ),
 )
 
 
@@ -243,17 +276,22 @@ def truth_text() -> str:
     return f"# invented data: the exact solids behind the demo files. {LABORATORY}.\n" + tomli_w.dumps(facts)
 
 
-def files() -> dict[str, str]:
-    """Every file's name and text."""
-    texts = {f"{demo.name}.csv": "\n".join(lines(demo)) + "\n" for demo in DEMOS}
-    return {**texts, "truth.toml": truth_text()}
+def files() -> dict[str, bytes]:
+    """Every file's name and content."""
+    texts = {f"{demo.name}.csv": encoded("\n".join(lines(demo)) + "\n", demo.utf16) for demo in DEMOS}
+    return {**texts, "truth.toml": encoded(truth_text())}
+
+
+def encoded(text: str, utf16: bool = False) -> bytes:
+    """The bytes of a file: UTF-8, or UTF-16 with a byte order mark."""
+    return codecs.BOM_UTF16_LE + text.encode("utf-16-le") if utf16 else text.encode("utf-8")
 
 
 def main() -> None:
     """Write the files."""
     FOLDER.mkdir(parents=True, exist_ok=True)
-    for name, text in files().items():
-        (FOLDER / name).write_text(text, encoding="utf-8", newline="\n")
+    for name, content in files().items():
+        (FOLDER / name).write_bytes(content)
         print(f"wrote data/demo/{name}")
 
 

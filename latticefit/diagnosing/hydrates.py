@@ -74,31 +74,34 @@ def molar_mass_slips(measurement: Measurement, basis: UnitBasis) -> Iterator[Sli
     ratio = stated / formula.molar_mass
     if isclose(ratio, 1.0, rel_tol=_SAME_MASS):
         return
-    words = f"the molar mass {1e3 * stated:.6g} g/mol where {shown(formula)} has {1e3 * formula.molar_mass:.6g}"
     remedy = f"give --formula '{shown(formula)}' without --molar-mass"
     missing = (formula.molar_mass - stated) / parse_formula("H2O").molar_mass
-    waters = round(2 * missing) / 2
-    if 0.5 <= abs(waters) <= _WATERS[-1] and abs(missing - waters) < _SAME_WATER:
-        its = "its" if waters <= _parts(formula)[1] else "the"
-        words = f"a molar mass without {its} {waters:g} H2O"
-        if waters < 0:
-            hydrate = _with_waters(formula, _parts(formula)[1] - waters)
-            yield Slip(
-                "hydrate-water",
-                f"a formula without the {-waters:g} H2O of its molar mass",
-                1 - _ATOMS * waters / formula.atoms,
-                f"give --formula '{hydrate}' without --molar-mass",
-                0.0,
-            )
-            words = f"a molar mass with {-waters:g} H2O that the sample does not hold"
+    own = _parts(formula)[1]
+    waters = next((each for each in _WATERS if abs(abs(missing) - each) < _SAME_WATER), None)
+    if waters is not None and missing < 0:
+        yield Slip(
+            "hydrate-water",
+            f"a formula without the {waters:g} H2O of its molar mass",
+            1 + _ATOMS * waters / formula.atoms,
+            f"give --formula '{_with_waters(formula, own + waters)}' without --molar-mass",
+            0.0,
+        )
+        words = f"a molar mass with {waters:g} H2O that the sample does not hold"
         yield Slip("hydrate-water", words, ratio, remedy, 0.0)
-        return
+    elif waters is not None and waters <= own:
+        yield Slip("hydrate-water", f"a molar mass without its {waters:g} H2O", ratio, remedy, 0.0)
+    else:
+        yield Slip("molar-mass", _other_molar_mass(formula, stated), ratio, remedy, 0.0)
+
+
+def _other_molar_mass(formula: Formula, stated: float) -> str:
+    """What a stated molar mass is instead of the one of the formula, in words."""
     for whole in (2, 3, 4):
-        if isclose(ratio, whole, rel_tol=_SAME_MASS):
-            words = f"the molar mass of {whole} {shown(formula)}"
-        if isclose(ratio, 1 / whole, rel_tol=_SAME_MASS):
-            words = f"the molar mass of 1/{whole} {shown(formula)}"
-    yield Slip("molar-mass", words, ratio, remedy, 0.0)
+        if isclose(stated, whole * formula.molar_mass, rel_tol=_SAME_MASS):
+            return f"the molar mass of {whole} {shown(formula)}"
+        if isclose(whole * stated, formula.molar_mass, rel_tol=_SAME_MASS):
+            return f"the molar mass of 1/{whole} {shown(formula)}"
+    return f"the molar mass {1e3 * stated:.6g} g/mol where {shown(formula)} has {1e3 * formula.molar_mass:.6g}"
 
 
 def water_slips(measurement: Measurement, basis: UnitBasis, warmest: float) -> Iterator[Slip]:
@@ -129,7 +132,7 @@ def water_slips(measurement: Measurement, basis: UnitBasis, warmest: float) -> I
         if formula is not None:
             words = f"a formula without its {waters:g} H2O"
             remedy = f"give --formula '{_with_waters(formula, _parts(formula)[1] + waters)}'"
-        doubt = 2.0 + 0.1 * waters + (2.0 if waters % 1 else 0.0)
+        doubt = 2.0 + 0.3 * waters + (2.0 if waters % 1 else 0.0)
         yield Slip("hydrate-water", words, _changed(sample.atoms, mass, waters), remedy, doubt)
         if warmest < _COLD and not waters % 1:
             words += ", whose O-H vibrations are not excited"

@@ -239,7 +239,7 @@ def _cost(level: _Level, slip: Slip) -> float | None:
     if factor * level.ratio[-1] > _SANE or not ((theta >= _LOWEST_THETA) & (theta <= _HIGHEST_THETA)).any():
         return None
     found = level.rough_sum
-    if found is not None:
+    if found is not None and found[0] > 0:
         off = log(factor * found[0]) / hypot(found[1] / found[0], 0.005)
         return off * off + slip.doubt if abs(off) <= _EXPLAINS else None
     # too low for a count: theta must be that of a solid at every point, and one that hardly changes is the likelier

@@ -12,7 +12,7 @@ from ..functions import debye_heat_capacity, einstein_heat_capacity
 from ..models import Model, Parametrisation, build_model, heat_capacity, theta_debye_moment, total_modes
 from ..records import FloatArray, PreparedData
 
-__all__ = ["ModeCount", "count_modes"]
+__all__ = ["ModeCount", "count_modes", "shape_uncertainty"]
 
 _MODEL = ("debye + einstein", "anharmonic")
 _FEWEST, _NARROWEST = 6, 2.0  # points, and the factor in T that they must span
@@ -56,6 +56,17 @@ class _Points:
     sigma: FloatArray
 
 
+def shape_uncertainty(theta: float, top: float) -> float:
+    """Relative u of a count of modes by a few Debye and Einstein terms, for real spectra are none of these.
+
+    Parameters
+    ----------
+    theta, top : float
+        theta_D[m=2] and the highest temperature, K.
+    """
+    return _U_SHAPE * max(1.0, theta / top) ** 2
+
+
 def count_modes(prepared: PreparedData) -> ModeCount | None:
     """Count the modes that the data show, by a fit of debye + einstein with both mode counts free.
 
@@ -68,7 +79,7 @@ def count_modes(prepared: PreparedData) -> ModeCount | None:
     Returns
     -------
     ModeCount or None
-        None for fewer than 6 points, or where they span less than a factor of 2 in T.
+        None for fewer than 6 points, where they span less than a factor of 2 in T, or where no fit succeeds.
     """
     sample, quantity = prepared.measurement.sample, prepared.measurement.quantity
     T, C = np.asarray(prepared.temperature), np.asarray(prepared.heat_capacity)
@@ -81,6 +92,8 @@ def count_modes(prepared: PreparedData) -> ModeCount | None:
     model = build_model(*_MODEL)
     first = _first(model, points)
     theta = _theta(model, first)
+    if not (np.isfinite(theta) and np.isfinite(first.chi_square)):
+        return None
     held = _held(first, dilation[0] / theta)
     points = _robust(model, held, points)
     fits = [_fit(_held(held, (dilation[0] + z * spread) / theta), points) for z in _NODES[: 5 if spread else 1]]
@@ -92,7 +105,8 @@ def _gamma(T: FloatArray, C: FloatArray) -> float | None:
     if (T <= _COLD * T[-1]).sum() < 3:
         return None
     low = T <= max(2 * T[0], T[3])
-    intercept = np.polyfit(T[low] ** 2, C[low] / T[low], 1)[1]
+    line = np.column_stack([np.ones(low.sum()), (T[low] / T[0]) ** 2])
+    intercept = np.linalg.lstsq(line, C[low] / T[low], rcond=None)[0][0]
     gamma = max(0.0, min(float(intercept), float((C / T).min())))
     return gamma if gamma * T[-1] <= _LARGEST_GAMMA * C[-1] else None
 
@@ -150,7 +164,8 @@ def _data(points: _Points) -> tuple[FloatArray, FloatArray, FloatArray]:
 
 
 def _theta(model: Model, solution: Solution) -> float:
-    found = theta_debye_moment(2, model, np.asarray(solution.values))
+    values = np.asarray(solution.values)
+    found = theta_debye_moment(2, model, values) if total_modes(model, values) > 0 else None
     return float("nan") if found is None else found
 
 
@@ -186,5 +201,5 @@ def _average(model: Model, fits: list[Solution], points: _Points) -> ModeCount:
     mean, theta = float(weight @ modes), float(weight @ thetas)
     variance = float(weight @ (np.array(noise) * per_freedom + (modes - mean) ** 2))
     top = float(points.T[-1])
-    shape = _U_SHAPE * mean * max(1.0, theta / top) ** 2
+    shape = mean * shape_uncertainty(theta, top)
     return ModeCount(mean, float(np.hypot(np.sqrt(variance), shape)), theta, top)

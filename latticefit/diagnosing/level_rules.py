@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
-from math import inf
+from dataclasses import dataclass, replace
+from math import hypot, inf
 
 import numpy as np
 
@@ -13,14 +13,17 @@ from ..models import Model, Parametrisation, total_modes
 from ..records import FitRecord, FloatArray, Level, NamedWarning
 from .case import Case
 from .level import LEVEL_IMPOSSIBLE, explain_mode_sum
+from .level_fit import shape_uncertainty
 from .level_words import explained, mode_sum_text
 from .reach import theta_debye_two
+from .stiff import stiff_share
 from .verdict import MISFIT, blame
 
 __all__ = ["above_classical_limit", "implausible_level", "mode_sum"]
 
 _CLASSICAL = 1.02  # times 3nR that a harmonic lattice does not pass
-_NOTED, _WARNED, _SURE = 0.01, 0.02, 2.0  # of the mode sum, and standard uncertainties that it must be off beside
+_NOTED, _WARNED = 0.01, 0.02  # of the mode sum
+_SURE = 2.0  # standard uncertainties that it must be off beside: of the fit for a note, in all for a warning
 _HALF = 2.0  # theta over Tmax above which freed modes mean nothing
 _DILATION = 0.06  # excess that a missing Cp - Cv can make
 
@@ -71,27 +74,33 @@ def mode_sum(case: Case) -> NamedWarning | None:
         return None
     counted = _counted(case)
     if counted is not None:
-        return _against_three(case, *counted)
+        return _against_three(case, counted)
     if case.level.verdict != "suspicious" or case.level.mode_sum_ratio is None:
         return None
     return _warning("warn", case.level.sentence, case.level.mode_sum_ratio)
 
 
-def _against_three(case: Case, ratio: float, u: float) -> NamedWarning | None:
-    off = abs(ratio - 1)
-    if off <= max(_NOTED, _SURE * u):
+def _against_three(case: Case, counted: _Counted) -> NamedWarning | None:
+    off = abs(counted.ratio - 1)
+    level: Level = "warn" if off > max(_WARNED, _SURE * counted.u) else "note"
+    if off <= max(_NOTED, _SURE * counted.u_fit):
         return None
-    text = mode_sum_text(ratio, u)
+    text = mode_sum_text(counted.ratio, counted.u)
     message = f"the fitted modes add up to {text} of the three per atom of the formula"
     if case.fit.mode_sum == "fixed":
         message = f"with its modes freed the model wants {text} of the three per atom at which they are held"
-    level: Level = "warn" if off > _WARNED else "note"
-    if case.prepared.measurement.quantity == "Cp" and case.model.cp_cv.parameter is None and 1 < ratio < 1 + _DILATION:
-        return _warning(level, f"{message}; so much can be the Cp-Cv that the model does not have", ratio)
-    explanations = explain_mode_sum(case.prepared, ratio, u) if level == "warn" else ()
-    if explanations:
-        message += f"; {explained(explanations, ratio)}"
-    return _warning(level, message, ratio)
+    sample, top = case.prepared.measurement.sample, float(case.prepared.temperature[-1])
+    stiff = stiff_share(sample, top)
+    dilated = case.prepared.measurement.quantity == "Cp" and case.model.cp_cv.parameter is None
+    if dilated and 1 < counted.ratio < 1 + _DILATION:
+        message += "; so much can be the Cp-Cv that the model does not have"
+    elif 0 < 1 - counted.ratio <= stiff + _SURE * counted.u and stiff > 0:
+        level, message = "note", f"{message}; so many modes of light atoms may not be excited yet"
+    elif level == "note":
+        message += "; so much a few terms can miss of a real spectrum"
+    elif explanations := explain_mode_sum(case.prepared, counted.ratio, counted.u):
+        message += f"; {explained(explanations, counted.ratio)}"
+    return _warning(level, message, counted.ratio)
 
 
 def _warning(level: Level, message: str, ratio: float) -> NamedWarning:
@@ -106,15 +115,25 @@ def _warning(level: Level, message: str, ratio: float) -> NamedWarning:
     )
 
 
-def _counted(case: Case) -> tuple[float, float] | None:
-    """Modes of the model over 3n with their u, freed by one more fit where they are held; None where they are not seen.
+@dataclass(frozen=True)
+class _Counted:
+    """Modes of a model over 3n; `u_fit` is from the covariance, `u` allows for a real spectrum beside it."""
+
+    ratio: float
+    u_fit: float
+    u: float
+
+
+def _counted(case: Case) -> _Counted | None:
+    """Modes of the model over 3n, freed by one more fit where they are held; None where they are not seen.
 
     The fit starts from the one that is reported. Not seen: the data end below theta/2, a mode count is not determined,
     or the model describes the data neither way.
     """
+    top = float(case.prepared.temperature[-1])
     if case.fit.mode_sum == "free":
-        return _over_three(case.model, case.fit, np.asarray(case.fit.values), np.asarray(case.fit.covariance))
-    if theta_debye_two(case.model, case.fit) > _HALF * float(case.prepared.temperature[-1]):
+        return _over_three(case.model, case.fit, top, np.asarray(case.fit.values), np.asarray(case.fit.covariance))
+    if theta_debye_two(case.model, case.fit) > _HALF * top:
         return None
     par = _freed(case.model, case.fit)
     if not set(case.model.modes) & set(par.free.tolist()):
@@ -136,15 +155,16 @@ def _counted(case: Case) -> tuple[float, float] | None:
         return None
     scale = reduced if case.fit.covariance_kind == "scaled" else 1.0
     fit = replace(case.fit, scale_factor=reduced)
-    return _over_three(case.model, fit, np.asarray(solution.values), scale * found.matrix)
+    return _over_three(case.model, fit, top, np.asarray(solution.values), scale * found.matrix)
 
 
-def _over_three(model: Model, fit: FitRecord, values: FloatArray, matrix: FloatArray) -> tuple[float, float]:
+def _over_three(model: Model, fit: FitRecord, top: float, values: FloatArray, matrix: FloatArray) -> _Counted:
     modes = 3 * (fit.atoms or 1.0)
     picked = np.array([float(i in model.modes) for i in range(values.size)])
     inflation = max(1.0, fit.scale_factor) if fit.covariance_kind == "absolute" else 1.0
-    u = float(np.sqrt(max(picked @ matrix @ picked * inflation, 0.0)))
-    return total_modes(model, values) / modes, u / modes
+    ratio = total_modes(model, values) / modes
+    u_fit = float(np.sqrt(max(picked @ matrix @ picked * inflation, 0.0))) / modes
+    return _Counted(ratio, u_fit, hypot(u_fit, ratio * shape_uncertainty(theta_debye_two(model, fit), top)))
 
 
 def _freed(model: Model, fit: FitRecord) -> Parametrisation:

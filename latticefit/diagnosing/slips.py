@@ -69,7 +69,7 @@ def _other_units(text: str) -> Iterator[tuple[str, float]]:
     for each, power in _PREFIXES.items():
         step = abs(power - _PREFIXES[prefix])
         if 0 < step <= 6:
-            yield f"{each}{energy}/{per}", 0.5 if step == 3 else 1.5
+            yield f"{each}{energy}/{per}", 0.5 if step == 3 and each != "k" else 1.5
     yield f"{prefix}{'cal' if energy == 'J' else 'J'}/{per}", 1.0
     yield from ((f"{prefix}{energy}/{each}", 1.0) for each in _DENOMINATORS if each != per)
     if per in ("(mol K)", "(mol-atom K)"):
