@@ -13,6 +13,7 @@ from ..errors import InputError
 from ..records import AddendaSettings, Measurement, Repair, RunSettings, SampleSettings
 from ..sample import build_sample, sample_notes
 from .run import RunData, read_run
+from .temperature_scale import on_its90
 from .wording import quoted
 
 __all__ = ["read_measurement"]
@@ -52,7 +53,7 @@ def read_measurement(
     named = _labelled(runs)
     built = build_sample(sample, Path(runs[0].file).stem)
     folder = Path() if base is None else base
-    parts = [read_run(built, run, folder / run.file, index) for index, run in enumerate(named)]
+    parts = [on_its90(read_run(built, run, folder / run.file, index)) for index, run in enumerate(named)]
     _refuse_unlike(parts)
     stated = [part.sigma for part in parts if part.sigma is not None]
     return Measurement(
