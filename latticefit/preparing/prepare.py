@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from ..errors import InputError
 from ..records import FloatArray, Measurement, PreparedData, SigmaKind
+from .addenda import measured_total, with_addenda
 from .scatter import pooled_scatter
 
 __all__ = ["prepare"]
@@ -38,7 +39,8 @@ def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Seq
     -------
     PreparedData
         By ascending temperature, equal temperatures in file order. Without a stated sigma one relative sigma is
-        estimated from the local scatter of the points used, the same for every model that is fitted to them.
+        estimated from the local scatter of the points used, the same for every model that is fitted to them. Where
+        addenda were taken off, sigma is that of the measured total and of the addenda together.
 
     Raises
     ------
@@ -58,7 +60,8 @@ def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Seq
         sigma, text = measurement.sigma[index], f"stated: {measurement.sigma_text}"
     else:
         kind = "estimated"
-        sigma, text = _estimated(temperature, heat_capacity, measurement.run[index])
+        sigma, text = _estimated(temperature, measured_total(measurement)[index], measurement.run[index])
+    sigma, text = with_addenda(measurement, index, sigma, text)
     return PreparedData(
         measurement=measurement,
         temperature=temperature,

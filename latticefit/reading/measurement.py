@@ -12,6 +12,7 @@ import numpy as np
 from ..errors import InputError
 from ..records import AddendaSettings, Measurement, Repair, RunSettings, SampleSettings
 from ..sample import build_sample, sample_notes
+from .addenda import take_off
 from .run import RunData, read_run
 from .temperature_scale import on_its90
 from .wording import quoted
@@ -53,10 +54,10 @@ def read_measurement(
     named = _labelled(runs)
     built = build_sample(sample, Path(runs[0].file).stem)
     folder = Path() if base is None else base
-    parts = [on_its90(read_run(built, run, folder / run.file, index)) for index, run in enumerate(named)]
+    parts = [read_run(built, run, folder / run.file, index) for index, run in enumerate(named)]
     _refuse_unlike(parts)
     stated = [part.sigma for part in parts if part.sigma is not None]
-    return Measurement(
+    measurement = Measurement(
         sample=built,
         temperature=np.concatenate([part.temperature for part in parts]),
         heat_capacity=np.concatenate([part.heat_capacity for part in parts]),
@@ -74,7 +75,9 @@ def read_measurement(
         ),
         excluded=tuple(row for part in parts for row in part.excluded),
         sample_settings=sample,
-        addenda_settings=tuple(addenda),
+    )
+    return take_off(
+        on_its90(measurement), addenda, folder, lambda run: read_measurement(SampleSettings(atoms=1), (run,), folder)
     )
 
 

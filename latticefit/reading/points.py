@@ -1,30 +1,34 @@
-"""Which points of a run its settings keep out of a fit, before anything is prepared."""
+"""Which points of a measurement are kept out of a fit by what was asked, before anything is prepared."""
 
 from __future__ import annotations
+
+from collections.abc import Iterable
 
 import numpy as np
 from numpy.typing import NDArray
 
-from .run import RunData
+from ..records import FloatArray, Measurement
 
 __all__ = ["kept_out"]
 
 
-def kept_out(part: RunData) -> NDArray[np.bool_]:
-    """Say for each point whether a window, a mask or masked lines of its run keep it out, shape (n,).
+def kept_out(measurement: Measurement) -> NDArray[np.bool_]:
+    """Say for each point whether the window or a mask of its run, or a reason set aside, keeps it out, shape (n,).
 
     Corrections need not cover such a point.
     """
-    settings = part.reading.settings
-    out = np.zeros(part.temperature.shape, dtype=bool)
-    if settings.window:
-        out |= ~_inside_any(part.temperature, settings.window)
-    return out | _inside_any(part.temperature, settings.mask) | _inside_any(part.line, settings.mask_lines)
+    out = np.zeros(measurement.temperature.shape, dtype=bool)
+    for number, reading in enumerate(measurement.readings):
+        mine, settings = measurement.run == number, reading.settings
+        if settings.window:
+            out |= mine & ~_inside_any(measurement.temperature, settings.window)
+        out |= mine & _inside_any(measurement.temperature, settings.mask)
+    if measurement.set_aside:
+        out |= np.array([why is not None for why in measurement.set_aside])
+    return out
 
 
-def _inside_any(
-    values: NDArray[np.float64] | NDArray[np.intp], intervals: tuple[tuple[float, float], ...]
-) -> NDArray[np.bool_]:
+def _inside_any(values: FloatArray, intervals: Iterable[tuple[float, float]]) -> NDArray[np.bool_]:
     inside = np.zeros(values.shape, dtype=bool)
     for low, high in intervals:
         inside |= (values >= low) & (values <= high)

@@ -17,9 +17,8 @@ from numpy.polynomial import polynomial
 from numpy.typing import NDArray
 
 from ..errors import InputError
-from ..records import ExcludedRow, FloatArray, Repair
+from ..records import ExcludedRow, FloatArray, Measurement, Repair
 from .points import kept_out
-from .run import RunData
 from .wording import counted, shown_name
 
 __all__ = ["on_its90", "scale_difference", "scale_slope"]
@@ -55,17 +54,17 @@ def scale_slope(temperature: FloatArray) -> FloatArray:
     return np.asarray(np.where(temperature < _JOIN, cold, warm))
 
 
-def on_its90(part: RunData) -> RunData:
-    """Convert a run that is declared to be on IPTS-68; any other is returned as it is.
+def on_its90(measurement: Measurement) -> Measurement:
+    """Convert the runs that are declared to be on IPTS-68; all others stay as they are.
 
     Parameters
     ----------
-    part : RunData
-        As read. Points below 13.81 K stay as they are, and so do points above 903.75 K that the settings keep out.
+    measurement : Measurement
+        As read. Points below 13.81 K stay as they are, and so do points above 903.75 K that are not to be fitted.
 
     Returns
     -------
-    RunData
+    Measurement
         T, C and sigma on ITS-90, with the size of the conversion among the repairs.
 
     Raises
@@ -73,33 +72,44 @@ def on_its90(part: RunData) -> RunData:
     InputError
         If a point that may be fitted lies above 903.75 K.
     """
-    if part.reading.settings.temperature_scale != "IPTS-68":
-        return part
-    T, file = part.temperature, part.reading.file
-    covered = (T >= _LOWEST) & (T <= _HIGHEST)
-    beyond = np.flatnonzero((T > _HIGHEST) & ~kept_out(part))
-    if beyond.size:
-        where = f"{T[beyond[0]]:g} K in line {part.line[beyond[0]]}"
-        raise InputError(
-            f"{shown_name(file)}: {where} lies above {_HIGHEST:g} K, where the conversion from IPTS-68 ends; leave out "
-            "such rows, or convert the file beforehand"
-        )
-    factor = np.where(covered, 1 / (1 + scale_slope(T)), 1.0)
+    declared = np.array([each.settings.temperature_scale == "IPTS-68" for each in measurement.readings])
+    if not declared.any():
+        return measurement
+    T, concerned = measurement.temperature, declared[measurement.run]
+    _refuse_above(measurement, concerned)
+    inside = concerned & (T >= _LOWEST) & (T <= _HIGHEST)
+    factor = np.where(inside, 1 / (1 + scale_slope(T)), 1.0)
+    notes = [
+        Repair(reading.file, None, note)
+        for number, reading in enumerate(measurement.readings)
+        for note in _notes(T[concerned & (measurement.run == number)])
+    ]
     return replace(
-        part,
-        temperature=T + np.where(covered, scale_difference(T), 0.0),
-        heat_capacity=part.heat_capacity * factor,
-        sigma=None if part.sigma is None else part.sigma * factor,
-        repairs=(*(Repair(file, None, note) for note in _notes(T, covered)), *part.repairs),
-        excluded=tuple(_converted_row(row) for row in part.excluded),
+        measurement,
+        temperature=T + np.where(inside, scale_difference(T), 0.0),
+        heat_capacity=measurement.heat_capacity * factor,
+        sigma=None if measurement.sigma is None else measurement.sigma * factor,
+        repairs=(*measurement.repairs, *notes),
+        excluded=tuple(_converted(row) if declared[row.run] else row for row in measurement.excluded),
     )
 
 
-def _converted_row(row: ExcludedRow) -> ExcludedRow:
-    T = np.array([row.temperature])
+def _refuse_above(measurement: Measurement, concerned: NDArray[np.bool_]) -> None:
+    above = np.flatnonzero(concerned & (measurement.temperature > _HIGHEST) & ~kept_out(measurement))
+    if above.size:
+        i = int(above[0])
+        file = shown_name(measurement.readings[measurement.run[i]].file)
+        raise InputError(
+            f"{file}: {measurement.temperature[i]:g} K in line {measurement.line[i]} lies above {_HIGHEST:g} K, where "
+            "the conversion from IPTS-68 ends; leave out such rows, or convert the file beforehand"
+        )
+
+
+def _converted(row: ExcludedRow) -> ExcludedRow:
     if not _LOWEST <= row.temperature <= _HIGHEST:
         return row
-    factor = float(1 / (1 + scale_slope(T)[0]))
+    T = np.array([row.temperature])
+    factor = 1 / (1 + float(scale_slope(T)[0]))
     return replace(
         row,
         temperature=row.temperature + float(scale_difference(T)[0]),
@@ -108,10 +118,12 @@ def _converted_row(row: ExcludedRow) -> ExcludedRow:
     )
 
 
-def _notes(T: FloatArray, covered: NDArray[np.bool_]) -> list[str]:
+def _notes(T: FloatArray) -> list[str]:
+    """Say how the temperatures of one run (K, on IPTS-68) and their heat capacities change."""
     notes = []
-    if covered.any():
-        shift, percent = scale_difference(T[covered]), 100 * np.abs(scale_slope(T[covered]))
+    inside = T[(T >= _LOWEST) & (T <= _HIGHEST)]
+    if inside.size:
+        shift, percent = scale_difference(inside), 100 * np.abs(scale_slope(inside))
         notes.append(
             f"temperatures converted from IPTS-68 to ITS-90: by {shift.min():+.3f} to {shift.max():+.3f} K, heat "
             f"capacities by up to {percent.max():.2g} %"

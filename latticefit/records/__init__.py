@@ -19,7 +19,7 @@ from .base import (
     SigmaKind,
     TemperatureScale,
 )
-from .data import ExcludedRow, Measurement, PreparedData, Reading, Repair, Sample
+from .data import AddendaShare, ExcludedRow, Measurement, PreparedData, Reading, Repair, Sample
 from .derived import (
     Analysis,
     Derived,
@@ -46,6 +46,7 @@ from .request import AddendaSettings, ModelSettings, ReportSettings, RunSettings
 
 __all__ = [
     "AddendaSettings",
+    "AddendaShare",
     "Analysis",
     "Basis",
     "Candidate",

@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from .base import Basis, FloatArray, Frozen, Quantity, SigmaKind
 from .request import AddendaSettings, RunSettings, SampleSettings
 
-__all__ = ["ExcludedRow", "Measurement", "PreparedData", "Reading", "Repair", "Sample"]
+__all__ = ["AddendaShare", "ExcludedRow", "Measurement", "PreparedData", "Reading", "Repair", "Sample"]
 
 
 _UNITS: Mapping[Basis, str] = {"mol": "J/(mol K)", "gram": "J/(g K)", "sample": "J/K"}
@@ -80,6 +80,20 @@ class Reading:
     settings: RunSettings
 
 
+@dataclass(frozen=True)
+class AddendaShare:
+    """What one known heat capacity makes of a measurement, over the `points` that it was taken off.
+
+    Its share of the measured total, lowest and highest, and its standard uncertainty (k = 1) as a part of what is left.
+    """
+
+    points: int
+    lowest: float
+    highest: float
+    u_lowest: float
+    u_highest: float
+
+
 @dataclass(frozen=True, eq=False, repr=False)
 class Measurement(Frozen):
     """Measured heat capacity of one sample, in file order, unusable rows omitted.
@@ -101,9 +115,9 @@ class Measurement(Frozen):
         None for the others. Empty where no point is set aside.
     addenda, addenda_u : ndarray, shape (n,), or None
         The known heat capacity that was taken off at each point, and its standard uncertainty (k = 1), which is not in
-        `sigma`; unit as `heat_capacity`. None where nothing was taken off.
-    addenda_readings : tuple of Reading
-        How the files of known heat capacities were read, one for each of `addenda_settings`.
+        `sigma`; unit as `heat_capacity`, and with it the measured total. None where nothing was taken off.
+    addenda_readings, addenda_shares : tuple of Reading, tuple of AddendaShare
+        How the files of known heat capacities were read, and what each makes up, one for each of `addenda_settings`.
     """
 
     sample: Sample
@@ -124,6 +138,7 @@ class Measurement(Frozen):
     addenda_u: FloatArray | None = None
     addenda_settings: tuple[AddendaSettings, ...] = ()
     addenda_readings: tuple[Reading, ...] = ()
+    addenda_shares: tuple[AddendaShare, ...] = ()
 
     def _facts(self) -> dict[str, str]:
         """What a notebook shows of it; names stand in quotes, with whatever does not print escaped."""
@@ -137,6 +152,11 @@ class Measurement(Frozen):
             "range": f"{T.min():.4g} to {T.max():.4g} K" if T.size else "none",
             "quantity": f"{self.quantity} in {_UNITS[self.basis]}",
             "sigma": repr(self.sigma_text) if self.sigma_text else "none stated",
+            **(
+                {"addenda": ", ".join(repr(each.file) for each in self.addenda_readings)}
+                if self.addenda_readings
+                else {}
+            ),
         }
 
     def __repr__(self) -> str:

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from ..preparing.addenda import with_addenda
 from ..records import Analysis, FloatArray, Frozen
 
 __all__ = ["MeasuredPoints", "measured_points"]
@@ -55,8 +56,8 @@ def measured_points(analysis: Analysis) -> MeasuredPoints:
     model = diagnosis.model_all
     residual = measurement.heat_capacity - model
     percent = 100 * np.divide(residual, model, out=np.full_like(residual, np.nan), where=model != 0)
-    stated = measurement.sigma is not None
-    sigma = np.array(measurement.sigma) if stated else np.full_like(residual, np.nan)
+    stated = np.full_like(residual, np.nan) if measurement.sigma is None else np.array(measurement.sigma)
+    sigma, _ = with_addenda(measurement, np.arange(residual.size), stated, "")
     normalised = residual / sigma
     for column, fitted in (
         (residual, diagnosis.residual),

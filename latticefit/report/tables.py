@@ -44,11 +44,13 @@ def _known(value: float) -> float | None:
 
 def _measured_rows(analysis: Analysis) -> list[tuple[int, dict[str, Any]]]:
     points, theta = measured_points(analysis), analysis.derived.pointwise_theta
+    addenda = analysis.measurement.addenda
     rows = [
         _place(analysis, int(points.run[i]), int(points.line[i]))
         | {
             "temperature_K": _known(points.temperature[i]),
             "heat_capacity_J_mol_K": _known(points.heat_capacity[i]),
+            **({} if addenda is None else {"addenda_J_mol_K": _known(addenda[i])}),
             "sigma_J_mol_K": _known(points.sigma[i]),
             "model_J_mol_K": _known(points.model[i]),
             "residual_J_mol_K": _known(points.residual[i]),
@@ -72,6 +74,7 @@ def _excluded_rows(analysis: Analysis) -> list[tuple[int, dict[str, Any]]]:
         | {
             "temperature_K": _known(each.temperature),
             "heat_capacity_J_mol_K": _known(each.heat_capacity),
+            **({} if analysis.measurement.addenda is None else {"addenda_J_mol_K": None}),
             "sigma_J_mol_K": _known(each.sigma),
             "model_J_mol_K": None,
             "residual_J_mol_K": None,
