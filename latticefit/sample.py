@@ -10,10 +10,19 @@ from functools import lru_cache
 from typing import Final
 
 from .errors import InputError
-from .records import Sample, SampleSettings
-from .units import parse_quantity
+from .records import Measurement, Sample, SampleSettings
+from .units import heat_capacity_unit, parse_quantity
 
-__all__ = ["Formula", "WrittenNumber", "build_sample", "parse_formula", "parse_mass", "sample_notes", "written_number"]
+__all__ = [
+    "Formula",
+    "WrittenNumber",
+    "build_sample",
+    "converted_by_mass",
+    "parse_formula",
+    "parse_mass",
+    "sample_notes",
+    "written_number",
+]
 
 _LONGEST_FORMULA = 200
 _NOTED_DIFFERENCE = 1e-3  # rounding of a molar mass is below 0.1 %
@@ -243,3 +252,14 @@ def sample_notes(settings: SampleSettings) -> tuple[str, ...]:
             own = f"{formula.molar_mass * 1000:.6g} g/mol"
             notes.append(f"molar mass {stated * 1000:.6g} g/mol as stated, although {formula.text!r} has {own}")
     return tuple(notes)
+
+
+def converted_by_mass(measurement: Measurement) -> tuple[str, ...]:
+    """Return the labels of the runs in J/K that the mass of the sample made per mole.
+
+    An error of the mass is a scale error of everything that comes from them.
+    """
+    if measurement.basis != "mol":
+        return ()
+    readings = measurement.readings
+    return tuple(each.label for each in readings if heat_capacity_unit(each.heat_capacity_unit).basis == "sample")

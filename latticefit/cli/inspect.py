@@ -35,7 +35,10 @@ def run(arguments: argparse.Namespace) -> int:
     if any(options.is_sheet(file) for file in arguments.files):
         raise InputError("inspect reads data files; a run sheet is read by latticefit fit")
     sample = options.sample_settings(arguments)
-    measurements = [read_measurement(sample, (options.run_settings(arguments, file),)) for file in arguments.files]
+    addenda = options.addenda_settings(arguments)
+    measurements = [
+        read_measurement(sample, (options.run_settings(arguments, file),), None, addenda) for file in arguments.files
+    ]
     if arguments.json:
         print_json(json_text({"files": [inspection_record(each) for each in measurements]}))
     else:

@@ -6,13 +6,14 @@ from collections.abc import Callable, Mapping
 from types import MappingProxyType
 
 from ..records import NamedWarning
-from . import data_rules, fit_rules, range_rules
+from . import correction_rules, data_rules, fit_rules, range_rules
 from .case import Case
 
 __all__ = ["RULES", "find_warnings"]
 
 _RULES: dict[str, Callable[[Case], NamedWarning | None]] = {
     "implausible-level": range_rules.implausible_level,
+    "addenda-share": correction_rules.addenda_share,
     "low-temperature-reach": range_rules.reach_down,
     "high-temperature-reach": range_rules.reach_up,
     "above-classical-limit": range_rules.above_classical_limit,
@@ -32,6 +33,8 @@ _RULES: dict[str, Callable[[Case], NamedWarning | None]] = {
     "sigma-overstated": data_rules.sigma_overstated,
     "sigma-assumed": data_rules.sigma_assumed,
     "few-points": data_rules.few_points,
+    "addenda-uncertainty": correction_rules.addenda_uncertainty,
+    "mass-uncertainty": correction_rules.mass_uncertainty,
 }
 
 RULES: Mapping[str, Callable[[Case], NamedWarning | None]] = MappingProxyType(_RULES)

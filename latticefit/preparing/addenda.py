@@ -11,9 +11,9 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from ..records import FloatArray, Measurement
+from ..records import FloatArray, Measurement, PreparedData
 
-__all__ = ["measured_total", "with_addenda"]
+__all__ = ["measured_total", "sigma_of_all", "with_addenda"]
 
 
 def measured_total(measurement: Measurement) -> FloatArray:
@@ -42,3 +42,20 @@ def with_addenda(
     return np.hypot(
         sigma, measurement.addenda_u[index]
     ), f"{text}, addenda included; and the uncertainty of the addenda"
+
+
+def sigma_of_all(prepared: PreparedData) -> FloatArray:
+    """Return the sigma of every measured point, also of those that are not fitted, shape (n,), J/(mol K).
+
+    Where it was estimated, it is the same fraction of the measured total everywhere.
+    """
+    measurement, first = prepared.measurement, int(prepared.index[0])
+    if measurement.sigma is not None:
+        sigma = np.asarray(measurement.sigma)
+    else:
+        total, known = measured_total(measurement), measurement.addenda_u
+        own = float(prepared.sigma[0]) ** 2 - (0.0 if known is None else float(known[first]) ** 2)
+        sigma = total * (max(own, 0.0) ** 0.5 / float(total[first]))
+    found = np.array(with_addenda(measurement, np.arange(sigma.size), sigma, "")[0])
+    found[prepared.index] = prepared.sigma
+    return found

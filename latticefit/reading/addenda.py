@@ -32,6 +32,7 @@ from ..records import (
     Repair,
     RunSettings,
 )
+from ..rounding import percent_range
 from ..units import heat_capacity_unit
 from .addenda_file import Known, read_known
 from .points import kept_out
@@ -265,8 +266,8 @@ def _notes(entry: Known, taken: _Taken, share: AddendaShare, whole: Measurement)
     of = f" ({entry.amount.words})" if entry.amount.words and not of else of
     runs = f" run {' and '.join(map(quoted, entry.settings.runs))}" if entry.settings.runs else ""
     notes = [
-        f"addenda {entry.shown}{of}, column {column}, taken off{runs}: {_range(share.lowest, share.highest)} of "
-        f"the measured heat capacity, u {_range(share.u_lowest, share.u_highest)} of the sample's"
+        f"addenda {entry.shown}{of}, column {column}, taken off{runs}: {percent_range(share.lowest, share.highest)} of "
+        f"the measured heat capacity, u {percent_range(share.u_lowest, share.u_highest)} of the sample's"
     ]
     if entry.curve.excess is not None:
         notes.append(
@@ -284,9 +285,3 @@ def _notes(entry: Known, taken: _Taken, share: AddendaShare, whole: Measurement)
             "the temperature scale of the addenda is not declared, that of the run is IPTS-68; taken as ITS-90"
         )
     return [*entry.file.repairs, *(Repair(file, None, note) for note in notes)]
-
-
-def _range(low: float, high: float) -> str:
-    """Return shares as ``12 to 71 %``."""
-    texts = [f"{100 * share:.0f}" if share >= 0.1 else f"{100 * share:.2g}" for share in (low, high)]
-    return f"{texts[0]} %" if texts[0] == texts[1] else f"{texts[0]} to {texts[1]} %"

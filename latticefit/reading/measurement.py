@@ -11,7 +11,7 @@ import numpy as np
 
 from ..errors import InputError
 from ..records import AddendaSettings, Measurement, Repair, RunSettings, SampleSettings
-from ..sample import build_sample, sample_notes
+from ..sample import build_sample, converted_by_mass, sample_notes
 from .addenda import take_off
 from .run import RunData, read_run
 from .temperature_scale import on_its90
@@ -77,8 +77,20 @@ def read_measurement(
         sample_settings=sample,
     )
     return take_off(
-        on_its90(measurement), addenda, folder, lambda run: read_measurement(SampleSettings(atoms=1), (run,), folder)
+        on_its90(_with_mass_note(measurement)),
+        addenda,
+        folder,
+        lambda run: read_measurement(SampleSettings(atoms=1), (run,), folder),
     )
+
+
+def _with_mass_note(measurement: Measurement) -> Measurement:
+    """Say so where the uncertainty of a mass is stated and the mass converts nothing."""
+    unused = measurement.sample.mass_u is not None and measurement.basis != "sample"
+    if not unused or converted_by_mass(measurement):
+        return measurement
+    note = Repair("sample", None, "the mass and its uncertainty are not used: no run is in J/K")
+    return replace(measurement, repairs=(note, *measurement.repairs))
 
 
 def _labelled(runs: Sequence[RunSettings]) -> list[RunSettings]:

@@ -14,6 +14,7 @@ from ..models import build_model
 from ..records import Analysis, DerivedValue, ParameterValue, ThermodynamicTable
 from ..rounding import percent_text
 from ..wording import harmless
+from .corrections import correction_words, mass_words
 from .wording import concise, plain_number, plus_minus, shown_unit, significant
 
 __all__ = [
@@ -97,7 +98,7 @@ def measured_rows(analysis: Analysis) -> tuple[Row, ...]:
         f"{harmless(each.heat_capacity_column)!r} in {each.heat_capacity_unit}"
         for each in measurement.readings
     ]
-    about += [] if sample.mass is None else [f"mass {plain_number(1e6 * sample.mass, 6)} mg"]
+    about += [] if sample.mass is None else [mass_words(measurement)]
     about += [] if sample.melting_point is None else [f"melting point {plain_number(sample.melting_point, 6)} K"]
     left_out = [f"{count} not fitted ({reason})" for reason, count in reasons.items()]
     left_out += [f"{len(measurement.excluded)} rows left out at reading"] if measurement.excluded else []
@@ -108,6 +109,7 @@ def measured_rows(analysis: Analysis) -> tuple[Row, ...]:
         Row("points", points, "; ".join(left_out)),
         Row("range fitted", _range(prepared.temperature[0], prepared.temperature[-1])),
         Row("sigma", prepared.sigma_text, f"the covariance is {analysis.fit.covariance_kind}"),
+        *(Row(*each) for each in correction_words(measurement)),
     )
 
 
@@ -303,7 +305,10 @@ def provenance_rows(analysis: Analysis) -> tuple[Row, ...]:
     """Say which version made the result, when, from which bytes, with what."""
     provenance = analysis.provenance
     packages = ", ".join(f"{name} {version}" for name, version in provenance.packages.items())
-    files = tuple(Row("sha256", each.sha256, each.file) for each in analysis.measurement.readings)
+    measurement = analysis.measurement
+    files = tuple(
+        Row("sha256", each.sha256, each.file) for each in (*measurement.readings, *measurement.addenda_readings)
+    )
     return (
         Row("latticefit", provenance.version, packages),
         Row("made", provenance.created, f"random seed {provenance.random_seed}"),

@@ -16,6 +16,7 @@ from ..records import (
     ResidualStatistics,
     ThermodynamicTable,
 )
+from .corrections import addenda_record
 from .ranking import comparison_record
 
 __all__ = ["SCHEMA", "json_text", "result_record", "thermodynamic_rows"]
@@ -104,6 +105,8 @@ def _sample(analysis: Analysis) -> dict[str, Any]:
         "atoms_per_formula_unit": _number(sample.atoms),
         "molar_mass_g_mol": _number(molar_mass),
         "melting_point_K": _number(sample.melting_point),
+        "mass_mg": _number(None if sample.mass is None else round(1e6 * sample.mass, 9)),
+        "mass_u_mg": _number(None if sample.mass_u is None else round(1e6 * sample.mass_u, 9)),
     }
 
 
@@ -111,6 +114,7 @@ def _data(analysis: Analysis) -> dict[str, Any]:
     measurement, prepared = analysis.measurement, analysis.prepared
     return {
         "sources": [{"file": each.file, "sha256": each.sha256, "label": each.label} for each in measurement.readings],
+        "addenda": addenda_record(measurement),
         "quantity": measurement.quantity,
         "points_read": int(measurement.temperature.size),
         "points_fitted": int(prepared.temperature.size),
