@@ -23,7 +23,7 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 from scipy.interpolate import CubicSpline
-from scipy.special import logsumexp, ndtr, stdtrit
+from scipy.special import logsumexp
 
 from ..errors import InputError
 from ..records import FloatArray
@@ -211,8 +211,9 @@ def _excess(problem: _Spectral) -> float | None:
 def _weighed(problem: _Spectral, known: bool) -> tuple[FloatArray, FloatArray]:
     """Return mean and variance of ln C at the places, all strengths weighed by their restricted likelihood.
 
-    With `known` the variance of unit weight is 1, as the weights say; else it is estimated, and u carries the factor of
-    Student's t that keeps 68 %.
+    With `known` the variance of unit weight is 1, as the weights say; else it is estimated, and u is the standard
+    deviation of the t-distribution that follows (JCGM 101:2008, 6.4.9; number of the clause from memory), with three
+    degrees of freedom where there are fewer.
     """
     rho, log_loss, squares = _strengths(problem)
     freedom = problem.z.size
@@ -225,5 +226,5 @@ def _weighed(problem: _Spectral, known: bool) -> tuple[FloatArray, FloatArray]:
     inner = rho[:, None] * problem.prior - (rho[:, None] * shrunk) @ np.square(problem.gain).T + problem.spread
     variance = weight @ (s2[:, None] * np.maximum(inner, 0.0) + np.square(means - mean))
     if not known:
-        variance = variance * float(stdtrit(freedom, ndtr(1.0))) ** 2
+        variance = variance * (max(freedom, 3) / (max(freedom, 3) - 2))
     return problem.level + mean, variance

@@ -22,14 +22,11 @@ def mass_words(measurement: Measurement) -> str:
 
 def correction_words(measurement: Measurement) -> tuple[tuple[str, str, str], ...]:
     """Return label, statement and remark of each correction; empty where there was none."""
-    found = [
-        (
-            "addenda",
-            f"{reading.file}: {percent_range(share.lowest, share.highest)} of the measured heat capacity taken off",
-            f"{_amount(settings)}{share.points} points, u {percent_range(share.u_lowest, share.u_highest)} of the sample's",
-        )
-        for settings, reading, share in _entries(measurement)
-    ]
+    found = []
+    for settings, reading, share in _entries(measurement):
+        part = f"{percent_range(share.lowest, share.highest)} of the measured heat capacity taken off"
+        u = f"{share.points} points, u {percent_range(share.u_lowest, share.u_highest)} of the sample's"
+        found.append(("addenda", f"{reading.file}: {part}", f"{_amount(settings)}{u}"))
     old = [each.label for each in measurement.readings if each.settings.temperature_scale == "IPTS-68"]
     if old:
         found.append(("temperature scale", "ITS-90", f"T and C of {', '.join(old)} converted from IPTS-68"))
