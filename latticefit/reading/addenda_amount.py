@@ -78,7 +78,10 @@ def amount_of(entry: AddendaSettings, basis: Basis, unit: str) -> Amount:
         key = "fraction" if entry.mass is None else "mass"
         raise InputError(f"the addenda {shown} are in {unit}, all of it; leave {key} out, or give a file per gram")
     if entry.mass is not None:
-        mass, u = parse_mass(entry.mass, f"mass of the addenda {shown},")
+        try:
+            mass, u = parse_mass(entry.mass)
+        except InputError as error:
+            raise InputError(f"the addenda {shown}: {error}") from None
         return Amount(1e3 * mass, 1e3 * (u or 0.0), False, " ".join(entry.mass.split()))
     return _fraction(str(entry.fraction), shown)
 
@@ -94,4 +97,6 @@ def _fraction(text: str, shown: str) -> Amount:
     if not 0 < number.value * unit < 1:
         hint = f"; for a percentage write '{text.strip()}%'" if not number.rest and number.value < 100 else ""
         raise InputError(f"{where} must be above 0 and below 1{hint}")
+    if number is not plain and not 0 < number.uncertainty < number.value:
+        raise InputError(f"{where}: its uncertainty must be above 0 and below the fraction itself")
     return Amount(number.value * unit, number.uncertainty * unit, True, " ".join(text.split()))
