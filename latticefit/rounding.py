@@ -11,6 +11,8 @@ _PLAIN_FIGURES = 6  # of a value without a usable uncertainty
 _DOUBLE_FIGURES = 15  # decimal figures that a double holds
 _CONTEXT = Context(prec=1000, Emin=-2000, Emax=2000)  # room for any two doubles side by side
 
+_SMALLEST_PART = 1e-5  # 0.001 %: less is rounding
+
 
 def percent_text(percent: float) -> str:
     """Return a percentage to two figures, never as a power of ten: ``"0.46 %"``, ``"more than 1000 %"``."""
@@ -23,7 +25,10 @@ def percent_text(percent: float) -> str:
 
 
 def percent_range(low: float, high: float) -> str:
-    """Return two parts of a whole as percentages to two figures: ``"12 to 71 %"``."""
+    """Return two parts of a whole as percentages to two figures: ``"12 to 71 %"``, ``"below 0.001 %"``."""
+    if high < _SMALLEST_PART:
+        return "below 0.001 %"
+    low = 0.0 if low < _SMALLEST_PART else low
     first, last = percent_text(100 * low), percent_text(100 * high)
     return last if first == last else f"{first.removesuffix(' %')} to {last}"
 

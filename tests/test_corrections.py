@@ -229,7 +229,7 @@ def test_points_beyond_the_addenda_are_refused(tmp_path: Path) -> None:
     with pytest.raises(InputError) as caught:
         read(tmp_path, BLANK)
     assert str(caught.value) == (
-        "run.csv: 2 K in line 3 and 2 more lies outside the addenda file blank.csv, 2.5-310 K; measure the addenda "
+        "run.csv: 2 K in line 3 (and 2 more) lies outside the addenda file blank.csv, 2.5-310 K; measure the addenda "
         "there, or leave such points out by --window, --mask or --mask-lines"
     )
 
@@ -299,7 +299,7 @@ REFUSED: dict[str, tuple[dict[str, str], AddendaSettings, SampleSettings, str]] 
         BLANK,
         SAMPLE,
         "blank.csv cannot be taken off run 'run', which is in J/(mol K): a heat capacity per mole or per mass has its "
-        "addenda off already; name the runs that it concerns by runs in its [[addenda]], or leave it out",
+        "addenda off already; leave it out, or name by runs = [...] in its [[addenda]] the runs that it concerns",
     ),
     "unknown run": (
         {},

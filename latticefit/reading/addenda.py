@@ -98,8 +98,8 @@ def _points_of(entry: Known, measurement: Measurement) -> NDArray[np.bool_]:
         if not entry.amount.of_sample and heat_capacity_unit(unit).basis != "sample":
             raise InputError(
                 f"{entry.shown} cannot be taken off run {run}, which is in {unit}: a heat capacity per mole or per "
-                "mass has its addenda off already; name the runs that it concerns by runs in its [[addenda]], or leave "
-                "it out"
+                "mass has its addenda off already; leave it out, or name by runs = [...] in its [[addenda]] the runs "
+                "that it concerns"
             )
         entry.amount.refuse_lacking(measurement, entry.shown, run)
     return np.isin(measurement.run, chosen)
@@ -117,7 +117,7 @@ def _covered(
         missed = np.flatnonzero(beyond & ~aside)
         if missed.size:
             i = int(missed[0])
-            more = f" and {missed.size - 1} more" if missed.size > 1 else ""
+            more = f" (and {missed.size - 1} more)" if missed.size > 1 else ""
             raise InputError(
                 f"{shown_name(measurement.readings[measurement.run[i]].file)}: {T[i]:g} K in line "
                 f"{measurement.line[i]}{more} lies outside the addenda file {entry.shown}, {low}-{high} K; measure the "
