@@ -123,8 +123,9 @@ def build_sample(settings: SampleSettings, fallback_name: str) -> Sample:
     Parameters
     ----------
     settings : SampleSettings
-        Formula, and quantities with unit as text. An explicit number of atoms or molar mass stands above the formula
-        (an enriched or non-stoichiometric sample); `sample_notes` lists where they differ.
+        Formula, and quantities with unit as text, the mass also with its uncertainty. An explicit number of atoms or
+        molar mass stands above the formula (an enriched or non-stoichiometric sample); `sample_notes` lists where
+        they differ.
     fallback_name : str
         The name of a sample that has none.
 

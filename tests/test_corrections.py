@@ -276,6 +276,28 @@ def test_column_named_addenda_is_found(tmp_path: Path) -> None:
         read_measurement(SAMPLE, (RunSettings("blank.csv"),), tmp_path)
 
 
+def test_two_claims_to_be_the_addenda_are_refused(tmp_path: Path) -> None:
+    """A blank with a column of the sample and one of the addenda says which of them is meant by its sheet only."""
+    both = table("T (K),Sample HC (J/K),Addenda HC (J/K)", T, 0.1 * blank(T), blank(T))
+    write(tmp_path, run=run_text(), blank=both)
+    with pytest.raises(InputError) as caught:
+        read(tmp_path, BLANK)
+    assert str(caught.value) == (
+        "blank.csv: columns 'Sample HC (J/K)' and 'Addenda HC (J/K)' may each be the addenda; choose one by "
+        "heat_capacity = 'Addenda HC (J/K)' in its [[addenda]] in a run sheet"
+    )
+    assert_allclose(read(tmp_path, replace(BLANK, heat_capacity=3)).heat_capacity, molar(T), rtol=2e-3)
+
+
+def test_addenda_beside_the_total_in_one_file(tmp_path: Path) -> None:
+    """The file of a run may hold its addenda in another column; the very column of the run is refused."""
+    write(tmp_path, run=table("T (K),Total HC (J/K),Addenda (J/K)", T, AMOUNT * molar(T) + blank(T), blank(T)))
+    own = AddendaSettings("run.csv", heat_capacity="Addenda (J/K)")
+    assert_allclose(read(tmp_path, own).heat_capacity, molar(T), rtol=2e-3)
+    with pytest.raises(InputError, match="the addenda are the heat capacity of run 'run' itself; name another file"):
+        read(tmp_path, replace(own, heat_capacity="Total HC (J/K)"))
+
+
 def test_settings_of_the_record_read_the_same_again(tmp_path: Path) -> None:
     """The entry with every choice made gives the same numbers to the last bit."""
     write(tmp_path, run=run_text(), blank=blank_text(noise=0.01).replace("C (J/K)", "Addenda (J/K)"))

@@ -102,6 +102,9 @@ def _points_of(entry: Known, measurement: Measurement) -> NDArray[np.bool_]:
                 "that it concerns"
             )
         entry.amount.refuse_lacking(measurement, entry.shown, run)
+        own = entry.file.readings[0]
+        if (own.sha256, own.heat_capacity_column) == (readings[k].sha256, readings[k].heat_capacity_column):
+            raise InputError(f"{entry.shown}: the addenda are the heat capacity of run {run} itself; name another file")
     return np.isin(measurement.run, chosen)
 
 

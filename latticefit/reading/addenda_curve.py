@@ -34,7 +34,8 @@ FEWEST: Final = 4
 """Fewest temperatures that make a curve: three for the parabola, and one to see how far points lie from it."""
 
 MARGIN: Final = 0.005
-"""How far beyond its points a curve is continued, as a part of T: repeats of one set point differ by as much."""
+"""How far beyond its points a curve is continued, as a part of T: repeats of one set point differ by as much (common
+practice, no source)."""
 
 _REPEAT: Final = math.log(1.003)  # points closer than this in ln T are averaged
 _MOST: Final = 250  # averages: the eigenvalue problem grows with their cube

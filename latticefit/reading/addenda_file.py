@@ -11,10 +11,10 @@ from typing import TYPE_CHECKING
 from ..errors import InputError
 from ..records import AddendaSettings, Measurement, RunSettings
 from .addenda_amount import Amount, amount_of
-from .headers import describe_columns, is_uncertainty_of_anything, normal_name
+from .headers import Column, describe_columns, is_uncertainty_of_anything, normal_name
 from .table import find_table
 from .text import load_text
-from .wording import shown_name
+from .wording import listed, quoted, shown_name
 
 if TYPE_CHECKING:
     from .addenda_curve import AddendaCurve
@@ -89,30 +89,32 @@ def read_known(entry: AddendaSettings, folder: Path, read: Callable[[RunSettings
 
 
 def _read(run: RunSettings, folder: Path, read: Callable[[RunSettings], Measurement]) -> Measurement:
+    """Read the file; a column named addenda, which in no other file is the heat capacity, has a claim to be it here."""
+    named = [] if run.heat_capacity is not None else _addenda_columns(run, folder)
     try:
-        return read(run)
+        file = read(run)
     except InputError as error:
-        column = _addenda_column(run, folder) if run.heat_capacity is None else None
-        if column is None:
+        if len(named) != 1:
             raise InputError(_by_key(str(error))) from None
-    try:
-        return read(replace(run, heat_capacity=column))
-    except InputError as error:
-        raise InputError(_by_key(str(error))) from None
+        return _read(replace(run, heat_capacity=named[0].index + 1), folder, read)
+    labels = [column.label for column in named]
+    chosen = file.readings[0].heat_capacity_column
+    if labels and chosen not in labels:
+        raise InputError(
+            f"{shown_name(run.file)}: columns {listed([chosen, *labels])} may each be the addenda; choose one by "
+            f"heat_capacity = {quoted(labels[0])} in its [[addenda]] in a run sheet"
+        )
+    return file
 
 
-def _addenda_column(run: RunSettings, folder: Path) -> int | None:
-    """Return the number of the one column that is named addenda, which in no other file is the heat capacity."""
+def _addenda_columns(run: RunSettings, folder: Path) -> list[Column]:
     try:
         table = find_table(load_text(folder / run.file, run.file))
-    except InputError:
-        return None
-    named = [
-        column
-        for column in describe_columns(table.headers or [None] * table.width)
-        if "addenda" in normal_name(column.name) and not is_uncertainty_of_anything(column)
-    ]
-    return named[0].index + 1 if len(named) == 1 else None
+    except InputError:  # reading it says so
+        return []
+    columns = describe_columns(table.headers or [None] * table.width)
+    free = [column for column in columns if not is_uncertainty_of_anything(column)]
+    return [column for column in free if "addenda" in normal_name(column.name)]
 
 
 def _by_key(message: str) -> str:
