@@ -14,7 +14,7 @@ from ._version import __version__
 
 if TYPE_CHECKING:
     from . import functions, models
-    from .calls import Fit, Saved, fit, load, rank, read
+    from .calls import Fit, Saved, fit, load, rank, read, write_measurement
     from .errors import FitError, InputError, LatticefitError
     from .records import Measurement
 
@@ -32,6 +32,7 @@ __all__ = [
     "models",
     "rank",
     "read",
+    "write_measurement",
 ]
 
 _HOME = {
@@ -45,6 +46,7 @@ _HOME = {
     "rank": "calls",
     "fit": "calls",
     "read": "calls",
+    "write_measurement": "calls",
 }
 
 

@@ -28,7 +28,7 @@ from .records import (
 if TYPE_CHECKING:
     import pandas as pd
 
-__all__ = ["Fit", "Saved", "fit", "load", "rank", "read"]
+__all__ = ["Fit", "Saved", "fit", "load", "rank", "read", "write_measurement"]
 
 _DEFAULTS = ModelSettings()
 _LONGEST_ARGUMENT = 60
@@ -293,6 +293,37 @@ def load(path: str | Path) -> Saved:
     if not isinstance(path, (str, Path)):
         raise wrong("path", "the path of a result.json or a report folder", path)
     return Saved(read_result(Path(path)))
+
+
+def write_measurement(measurement: Measurement, path: str | Path, *, replace: bool = False) -> Path:
+    """Write a measurement, as converted and corrected, to a CSV file that reads back to the last bit.
+
+    Parameters
+    ----------
+    measurement : Measurement
+        From `read`.
+    path : path
+        The file to be. Read it with ``split_by="run"`` where there are several runs, and with
+        ``require="used = yes"`` where points are set aside.
+    replace : bool
+        Whether a file that is there may be replaced; a file that was read for the measurement never is.
+
+    Returns
+    -------
+    Path
+
+    Raises
+    ------
+    InputError
+        If the file exists already, cannot be written, or the measurement cannot be read back from a file.
+    """
+    from .report import write_measurement_file
+
+    if not isinstance(measurement, Measurement):
+        raise wrong("measurement", "a Measurement from latticefit.read", measurement)
+    if not isinstance(path, (str, Path)) or not str(path).strip():
+        raise wrong("path", "the path of the file to write", path)
+    return write_measurement_file(measurement, Path(path), replace)
 
 
 def _request(

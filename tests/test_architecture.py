@@ -121,6 +121,7 @@ def test_public_names_of_the_package() -> None:
         "models",
         "rank",
         "read",
+        "write_measurement",
     }
     for name in latticefit.__all__:
         assert getattr(latticefit, name) is not None

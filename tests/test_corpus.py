@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import tomllib
+from pathlib import Path
 from typing import Any
 
 import pytest
@@ -33,6 +34,9 @@ def test_file_of_the_corpus(case: dict[str, Any]) -> None:
     assert (measurement.sigma is None) == ("sigma_J_molK" not in case)
     if measurement.sigma is not None:
         assert_allclose(measurement.sigma, case["sigma_J_molK"], rtol=1e-12)
+    assert [each.label for each in measurement.readings] == case.get("labels", [Path(case["file"]).stem])
+    assert measurement.run.tolist() == case.get("run", [0] * measurement.run.size)
+    assert [why or "" for why in measurement.set_aside] == case.get("set_aside", [])
     assert [_line(repair.line) + repair.message for repair in measurement.repairs] == case["repairs"]
 
 
@@ -53,7 +57,7 @@ def test_every_file_is_expected_and_says_that_it_is_invented() -> None:
     assert len(files) >= 60
     for name in files:
         data = (CORPUS / name).read_bytes().replace(b"\x00", b"")
-        assert b"invented data" in data or name.endswith(".xlsx"), name
+        assert b"invented data" in data or name.endswith((".xlsx", ".ods")), name
 
 
 @pytest.mark.parametrize("case", [case for case in CASES if "refused" not in case], ids=lambda case: case["file"])
@@ -61,5 +65,5 @@ def test_reading_is_repeated_by_its_settings(case: dict[str, Any]) -> None:
     """The settings of a reading read the file again in the same way, to the last bit."""
     first = _read(case)
     again = read_measurement(SAMPLE, (first.readings[0].settings,), CORPUS, first.addenda_settings)
-    for name in ("temperature", "heat_capacity", "line", "readings", "addenda", "addenda_readings"):
+    for name in ("temperature", "heat_capacity", "line", "run", "set_aside", "readings", "addenda", "addenda_readings"):
         assert repr(getattr(again, name)) == repr(getattr(first, name))

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import io
 import os
+import zipfile
 from pathlib import Path
 from typing import Any
 
@@ -22,6 +24,17 @@ CORPUS = ROOT / "tests" / "corpus"
 VALID = [
     *("preamble.csv", "unit_row_wide.txt", "letters.txt", "series_blanks.txt", "utf16_le.txt", "cp1252_micro.csv"),
     *("common_power.csv", "repeated_header_and_units.txt", "thin_spaces.csv", "sheet.xlsx", "sheet_among_others.xlsx"),
+    *("require_decimal_comma.csv", "split_field.csv", "split_run.csv", "sheet.ods", "worksheets.ods"),
+]
+CHOICES: list[dict[str, Any]] = [
+    {},
+    {"require": ("3 > 0.5",)},
+    {"require": ("2 != 1", "1 < 1e9")},
+    {"split_by": 3},
+    {"split_by": "series", "mask_lines": ((2, 3),)},
+    {"split_by": "run", "require": ("run != x",)},
+    {"mask_lines": ((1, 4),), "require": ("Field (T) = 0",)},
+    {"worksheet": "2"},
 ]
 HEADERS = [
     ("T/K", "Cp/(J/(mol\u00b7K))", None),
@@ -108,52 +121,85 @@ def _written(
     removed=st.integers(0, 12),
     kept=st.floats(0, 1.5),
     bit=st.integers(0, 7),
+    choices=st.sampled_from(CHOICES),
 )
 def test_damaged_file_of_the_corpus(
-    tmp_path: Path, name: str, start: float, junk: bytes, removed: int, kept: float, bit: int
+    tmp_path: Path,
+    name: str,
+    start: float,
+    junk: bytes,
+    removed: int,
+    kept: float,
+    bit: int,
+    choices: dict[str, Any],
 ) -> None:
     """Bytes put in or cut out, a flipped bit, a truncated file: possible values or one line of words, never more."""
     data = bytearray((CORPUS / name).read_bytes())
+    if name.endswith(".ods"):  # damage the table itself, which lies packed in the file
+        with zipfile.ZipFile(CORPUS / name) as archive:
+            data = bytearray(archive.read("content.xml"))
     place = int(start * (len(data) - 1))
     data[place] ^= 1 << bit
     data[place : place + removed] = junk
-    _read_or_refused(tmp_path, name, bytes(data[: int(kept * len(data))]))
+    damaged = bytes(data[: int(kept * len(data))])
+    _read_or_refused(tmp_path, name, _packed(damaged) if name.endswith(".ods") else damaged, choices)
+
+
+def _packed(content: bytes) -> bytes:
+    stream = io.BytesIO()
+    with zipfile.ZipFile(stream, "w") as archive:
+        archive.writestr("content.xml", content)
+    return stream.getvalue()
 
 
 @several
 @given(
     data=st.binary(max_size=300),
-    head=st.sampled_from([b"", b"PK\x03\x04", b"\xff\xfe", b"\xef\xbb\xbf", b"T/K;Cp/R\n"]),
+    head=st.sampled_from([b"", b"PK\x03\x04", b"\xff\xfe", b"\xef\xbb\xbf", b"T/K;Cp/R\n", b"T/K;Cp/R;run\n1;2;a\n"]),
+    choices=st.sampled_from(CHOICES),
 )
-def test_random_bytes(tmp_path: Path, data: bytes, head: bytes) -> None:
+def test_random_bytes(tmp_path: Path, data: bytes, head: bytes, choices: dict[str, Any]) -> None:
     """Any bytes at all are read or refused in one line of words."""
-    _read_or_refused(tmp_path, "run.csv", head + data)
+    _read_or_refused(tmp_path, "run.csv", head + data, choices)
 
 
 @several
 @given(
     text=st.text(
         alphabet="0123456789.,;\t ()[]\u00b1e-+\n#\"'%k=_/TKCpJmolSeries*\u2020\u2212\u00d7\u2009\u00b5", max_size=120
-    )
+    ),
+    head=st.sampled_from(["", "T/K;Cp/R;run\n1;2;3\n4;5;6\n"]),
+    choices=st.sampled_from(CHOICES),
 )
-def test_random_text(tmp_path: Path, text: str) -> None:
+def test_random_text(tmp_path: Path, text: str, head: str, choices: dict[str, Any]) -> None:
     """Any text made of the signs of measurement files is read or refused in one line of words."""
-    _read_or_refused(tmp_path, "run.csv", text.encode())
+    _read_or_refused(tmp_path, "run.csv", (head + text).encode(), choices)
 
 
-def _read_or_refused(folder: Path, name: str, data: bytes) -> None:
+@several
+@given(text=st.text(alphabet="qr <>=!\u2264'\"0123.,e-x\x1b", max_size=14), mask=st.integers(1, 6))
+def test_random_conditions(tmp_path: Path, text: str, mask: int) -> None:
+    """Any text at all as a condition chooses rows or is refused in one line of words."""
+    choices = {"require": (text,), "mask_lines": ((1, mask),)}
+    _read_or_refused(tmp_path, "run.csv", b"T/K;Cp/R;q;r\n1;2;3;x\n4;5;6;q\n7;8;;'1'\n", choices)
+
+
+def _read_or_refused(folder: Path, name: str, data: bytes, choices: dict[str, Any]) -> None:
     (folder / name).write_bytes(data)
     try:
-        measurement = read_measurement(SAMPLE, (RunSettings(name),), base=folder)
+        measurement = read_measurement(SAMPLE, (RunSettings(name, **choices),), base=folder)
     except InputError as error:
         sentence = str(error)
     else:
         assert measurement.temperature.size
         assert np.all(np.isfinite(measurement.temperature) & (measurement.temperature > 0))
         assert np.all(np.isfinite(measurement.heat_capacity) & (measurement.heat_capacity > 0))
+        assert set(measurement.run.tolist()) == set(range(len(measurement.readings)))
+        assert not measurement.set_aside or None in measurement.set_aside
+        assert all(repair.message.isprintable() for repair in measurement.repairs)
         return
     assert sentence.isprintable()
-    assert sentence.startswith(name)
+    assert sentence.startswith((name, "condition ", "two runs"))
 
 
 @pytest.mark.parametrize("mark", ["", "Series 2"])

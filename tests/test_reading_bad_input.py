@@ -27,7 +27,10 @@ FILES = [
     (b"\x7fELF\x00\x01", "run.csv: is a binary file, not text; save the table as CSV"),
     (bytes(range(1, 32)) * 9, "run.csv: is a binary file, not text; save the table as CSV"),
     (b"PK\x03\x04 xl", "run.csv: the spreadsheet is damaged (BadZipFile); save it once more, or as CSV"),
-    (b"\xd0\xcf\x11\xe0 old", "run.csv: is an old binary spreadsheet or document; save the table as .xlsx or CSV"),
+    (
+        b"\xd0\xcf\x11\xe0 old",
+        "run.csv: is an old binary spreadsheet or document, or one with a password; save the table as .xlsx or CSV",
+    ),
     (GOOD.encode("utf-16")[:-1], "run.csv: is UTF-16 text, damaged at byte 45; save it once more as UTF-8"),
     (b"T_K\nC_\xc2\xb5J_K,\xb5\n", "run.csv: line 2: byte 0xb5 is not UTF-8 text; save the file as UTF-8"),
     (b"T_K\n\x81,\n", "run.csv: line 2: byte 0x81 is neither UTF-8 nor cp1252 text; save the file as UTF-8"),

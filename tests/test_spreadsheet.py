@@ -11,6 +11,7 @@ import openpyxl
 import pytest
 from reading_helpers import messages, read_text
 
+import latticefit
 from latticefit.cli import main
 from latticefit.errors import InputError
 from latticefit.reading import spreadsheet, text
@@ -82,7 +83,7 @@ def test_entities_are_refused(tmp_path: Path) -> None:
 
 @pytest.mark.parametrize(
     ("rows", "words"),
-    [([[1.0] * 1001, [2.0] * 1001], "row 1 has more than the 1000 columns"), ([["x"]], "no sheet holds")],
+    [([[1.0] * 1001, [2.0] * 1001], "row 1 has more than the 1000 columns"), ([["x"]], "no worksheet holds")],
 )
 def test_sheet_without_a_readable_table(rows: list[list[Any]], words: str, tmp_path: Path) -> None:
     """Too many columns, or no numbers, are refused in words."""
@@ -124,7 +125,7 @@ def test_sheet_is_named_where_there_are_several(tmp_path: Path) -> None:
         sheet.append(row)
     stream = io.BytesIO()
     workbook.save(stream)
-    assert "read from sheet 'run 1', the only one of 2 that holds a table" in messages(
+    assert "read from worksheet 'run 1', the only one of 2 that holds a table" in messages(
         read_text(tmp_path, stream.getvalue())
     )
 
@@ -136,3 +137,151 @@ def test_inspect_says_that_it_read_a_spreadsheet(tmp_path: Path, capsys: pytest.
     text_shown = capsys.readouterr().out
     assert "a spreadsheet" in text_shown
     assert "separated by" not in text_shown
+
+
+# ------------------------------------------------------------------------------------------------ OpenDocument, .ods
+
+NAMESPACES = " ".join(
+    f'xmlns:{name}="urn:oasis:names:tc:opendocument:xmlns:{whole}:1.0"'
+    for name, whole in {"office": "office", "table": "table", "text": "text", "draw": "drawing"}.items()
+)
+
+
+def ods(*sheets: str) -> bytes:
+    """An .ods file of sheets, each given by its rows as XML."""
+    tables = "".join(
+        f'<table:table table:name="{name}">{rows}</table:table>' for name, rows in zip("abc", sheets, strict=False)
+    )
+    body = f"<office:body><office:spreadsheet>{tables}</office:spreadsheet></office:body>"
+    stream = io.BytesIO()
+    with zipfile.ZipFile(stream, "w", zipfile.ZIP_DEFLATED) as archive:
+        archive.writestr("mimetype", "application/vnd.oasis.opendocument.spreadsheet")
+        archive.writestr("content.xml", f"<office:document-content {NAMESPACES}>{body}</office:document-content>")
+    return stream.getvalue()
+
+
+def row(*cells: str | float, more: str = "") -> str:
+    """A row; a text that is XML already stands as it is."""
+    return f"<table:table-row {more}>{''.join(map(cell, cells))}</table:table-row>"
+
+
+def cell(value: str | float, more: str = "") -> str:
+    if isinstance(value, str):
+        text = f'<table:table-cell office:value-type="string" {more}><text:p>{value}</text:p></table:table-cell>'
+        return value if value.startswith("<table") else text
+    return f'<table:table-cell office:value-type="float" office:value="{value!r}" {more}/>'
+
+
+HEAD = row("T (K)", "Cp (J/(mol K))")
+EMPTY = "<table:table-cell/>"
+
+
+def test_ods_lines_are_rows_and_repeats_are_unfolded(tmp_path: Path) -> None:
+    """Empty rows count, a repeated row stands twice, and the emptiness to the last row of a sheet is not unfolded."""
+    tail = row('<table:table-cell table:number-columns-repeated="16384"/>', more='table:number-rows-repeated="1048000"')
+    rows = HEAD + row(EMPTY, more='table:number-rows-repeated="3"') + row(1.5, 2.25)
+    rows += row(3.0, 4.5, more='table:number-rows-repeated="2"') + tail
+    measurement = read_text(tmp_path, ods(rows))
+    assert list(measurement.line) == [5, 6, 7]
+    assert list(measurement.temperature) == [1.5, 3.0, 3.0]
+    assert measurement.readings[0].encoding == "spreadsheet"
+
+
+def test_ods_cell_is_read_without_notes_drawings_and_blanks(tmp_path: Path) -> None:
+    """Words of a note or a drawing in a cell, of the record of changes and of a table in a cell are not the cell's."""
+    note = "<office:annotation><text:p>99</text:p></office:annotation>"
+    drawing = "<draw:frame><draw:text-box><text:p>88</text:p></draw:text-box></draw:frame>"
+    inner = f"<table:table table:name='x'>{row(7.0, 7.0)}</table:table>"
+    first = (
+        f'<table:table-cell office:value-type="string">{note}<text:p>T<text:s/>(K)</text:p>{drawing}</table:table-cell>'
+    )
+    changes = f"<table:tracked-changes>{row(5.0, 6.0)}</table:tracked-changes>"
+    number = f'<table:table-cell office:value-type="float" office:value="2.25">{note}{inner}</table:table-cell>'
+    rows = changes + row(first, "Cp<text:tab/><text:span>(J/(mol K))</text:span>") + row(1.5, number) + row(3.0, 4.5)
+    measurement = read_text(tmp_path, ods(rows))
+    assert measurement.readings[0].temperature_column == "T (K)"
+    assert list(measurement.heat_capacity) == [2.25, 4.5]
+
+
+def test_ods_value_is_the_stored_one(tmp_path: Path) -> None:
+    """Full precision comes from the stored value, not from the shown text; a formula is not evaluated."""
+    typed = '<table:table-cell {} office:value-type="float" office:value="{}"><text:p>2</text:p></table:table-cell>'
+    formula, precise = typed.format('table:formula="of:=1+1"', 7.5), typed.format("", "1.23456789012345")
+    measurement = read_text(tmp_path, ods(HEAD + row(precise, formula) + row(3.0, 8.0)))
+    assert (measurement.temperature[0], measurement.heat_capacity[0]) == (1.23456789012345, 7.5)
+
+
+REPEATED = 'table:number-columns-repeated="{}"'
+
+
+@pytest.mark.parametrize(
+    ("rows", "words"),
+    [
+        (HEAD + row(1.5, 2.5, more='table:number-rows-repeated="900000000"'), "more than the 2000000 cells that are"),
+        (HEAD + row(cell(1.5, REPEATED.format(999_999_999))), "row 2 has more than the 1000 columns that are read"),
+        (row(EMPTY, more='table:number-rows-repeated="999999999"') + row(1.5, 2.5), "more than the 2000000 cells"),
+        (HEAD + row(f"<table:table-cell {REPEATED.format(9999)}/>", 1.5), "row 2 has more than the 1000 columns"),
+        (row(cell(1.5, REPEATED.format("9" * 30))), r"the spreadsheet is damaged \(ValueError\)"),
+        (row(cell(1.5, REPEATED.format(-1))), r"the spreadsheet is damaged \(ValueError\)"),
+        (row("x") * 3, "no worksheet holds two columns of numbers"),
+        ("<table:table-row>", r"the spreadsheet is damaged \(ValueError\)"),
+        (row('<table:table-cell office:value-type="float" office:value="1_000"/>', 2.0), "the spreadsheet is damaged"),
+        ('<!DOCTYPE x [<!ENTITY a "aaaaaaaa">]>', "defines XML entities"),
+    ],
+)
+def test_ods_that_would_fill_the_memory_or_is_damaged(rows: str, words: str, tmp_path: Path) -> None:
+    """Cells, columns and rows that repeat without end are refused before one is repeated, damage in one sentence."""
+    with pytest.raises(InputError, match=words):
+        read_text(tmp_path, ods(rows))
+
+
+def test_ods_without_the_library_for_xlsx(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """An .ods file needs nothing beyond the standard library, and its content counts, not its name."""
+    monkeypatch.setitem(__import__("sys").modules, "openpyxl", None)
+    (tmp_path / "run.xlsx").write_bytes(ods(HEAD + row(1.5, 2.25) + row(3.0, 4.5)))
+    assert latticefit.read(tmp_path / "run.xlsx").temperature.tolist() == [1.5, 3.0]
+
+
+def test_worksheet_that_is_not_chosen_is_not_unfolded(tmp_path: Path) -> None:
+    """Limits count for the sheet that is read: a huge one beside it does not matter once the choice is made."""
+    huge = HEAD + row(1.5, 2.5, more='table:number-rows-repeated="900000000"')
+    data = ods(huge, HEAD + row(1.5, 2.25) + row(3.0, 4.5))
+    assert list(read_text(tmp_path, data, worksheet="b").temperature) == [1.5, 3.0]
+    with pytest.raises(InputError, match="2000000 cells"):
+        read_text(tmp_path, data)
+
+
+def books(*titles: str) -> bytes:
+    """A spreadsheet whose sheets hold one row more each."""
+    workbook = openpyxl.Workbook()
+    workbook.remove(workbook.active)
+    for number, title in enumerate(titles, start=2):
+        sheet = workbook.create_sheet(title)
+        for line in (TABLE[1], *([float(k), 2.0] for k in range(number))):
+            sheet.append(line)
+    stream = io.BytesIO()
+    workbook.save(stream)
+    return stream.getvalue()
+
+
+@pytest.mark.parametrize(("worksheet", "rows"), [("2", 3), ("3", 4), (" run ", 2), ("4", 5), ("run", 2)])
+def test_worksheet_by_name_goes_before_its_number(worksheet: str, rows: int, tmp_path: Path) -> None:
+    """A sheet that is called 3 is read for "3", be it the second or the third; any other number counts from 1."""
+    measurement = read_text(tmp_path, books("run", "x", "3", " "), worksheet=worksheet)
+    assert measurement.readings[0].rows == rows
+    settings = measurement.readings[0].settings
+    again = read_text(tmp_path, books("run", "x", "3", " "), **{"worksheet": settings.worksheet})
+    assert again.readings == measurement.readings
+
+
+def test_worksheet_that_is_not_there(tmp_path: Path) -> None:
+    """The nearest name is offered, or all of them; names with control characters are escaped."""
+    data = with_part(books("cooling", "heating"), "xl/workbook.xml", lambda xml: xml.replace(b"heating", b"h&#x202e;t"))
+    with pytest.raises(InputError, match=r"no worksheet 'coolin'; did you mean 'cooling'\?"):
+        read_text(tmp_path, data, worksheet="coolin")
+    for wrong in ("x", "0", "3"):
+        with pytest.raises(InputError, match=r"'cooling' and 'h\\u202et'") as caught:
+            read_text(tmp_path, data, worksheet=wrong)
+        assert str(caught.value).isprintable()
+    with pytest.raises(InputError, match=r"worksheets 'cooling' and 'h\\u202et' all hold numbers; choose one by"):
+        read_text(tmp_path, data)

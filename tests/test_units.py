@@ -94,6 +94,27 @@ def test_factor_is_the_published_definition(text: str, factor: float, basis: str
     assert (unit.factor, unit.basis) == (factor, basis)
 
 
+# NIST Special Publication 811 (2008), appendix B.8, "Heat capacity and entropy" and "Specific heat capacity and
+# specific entropy", in J/K and J/(kg K), seven digits as printed there (from memory). Its Btu and calories without
+# index are not used: a bare Btu is the International Table one here, a bare calorie the thermochemical one.
+PRINTED = [
+    ("Btu/degF", 1.899101e3, 1.0),
+    ("Btu/degR", 1.899101e3, 1.0),
+    ("Btu/(lb degF)", 4.1868e3, 1e-3),
+    ("Btu/(lb degR)", 4.1868e3, 1e-3),
+    ("cal_IT/(g degC)", 4.1868e3, 1e-3),
+    ("cal_IT/(g K)", 4.1868e3, 1e-3),
+    ("cal_th/(g degC)", 4.184e3, 1e-3),
+    ("cal_th/(g K)", 4.184e3, 1e-3),
+]
+
+
+@pytest.mark.parametrize(("text", "printed", "per_gram"), PRINTED)
+def test_factor_is_the_one_that_is_printed(text: str, printed: float, per_gram: float) -> None:
+    """Conversion factors agree with a published table to all its digits."""
+    assert heat_capacity_unit(text).factor == pytest.approx(printed * per_gram, rel=5e-7)
+
+
 def test_definitions_agree_with_a_general_library() -> None:
     """The calorie, Btu, pound and degrees agree with scipy.constants (CODATA and legal definitions)."""
     assert heat_capacity_unit("cal/K").factor == constants.calorie_th

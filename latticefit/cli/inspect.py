@@ -1,13 +1,20 @@
-"""``latticefit inspect``: what was read from files, before any fit; writes nothing."""
+"""``latticefit inspect``: what was read from files, before any fit; writes nothing but the sheet that is asked for."""
 
 from __future__ import annotations
 
 import argparse
+import sys
+from pathlib import Path
+from typing import TYPE_CHECKING
 
 from ..errors import InputError
 from . import options
 from .parsing import CommandParser
+from .request import request
 from .streams import print_json
+
+if TYPE_CHECKING:
+    from ..records import Measurement, Sheet
 
 __all__ = ["parser", "run"]
 
@@ -16,31 +23,51 @@ def parser() -> CommandParser:
     """Return the command's parser."""
     made = CommandParser(
         "inspect",
-        "Show what was read from files: columns, units, points, range, repairs. Writes nothing.",
-        "latticefit inspect run.csv --formula Al2O3",
+        "Show what was read from files: columns, units, points, range, repairs, level. Writes nothing without "
+        "--save-sheet.",
+        "latticefit inspect run.csv --formula Al2O3 --save-sheet",
     )
-    made.add_argument("files", nargs="+", metavar="FILE", help="files of temperature and heat capacity")
+    made.add_argument("files", nargs="+", metavar="FILE|SHEET", help="files of one sample, or one run sheet (.toml)")
     options.add_sample_options(made)
     options.add_column_options(made)
+    options.add_point_options(made)
+    made.add_argument("--allow-outside", action="store_true", help="let a sheet name files outside its own folder")
+    made.add_argument(
+        "--save-sheet",
+        action="store_true",
+        help="write NAME_sheet.toml beside the file: everything that was recognised",
+    )
     made.add_argument("--json", action="store_true", help="print everything that was read as JSON")
     return made
 
 
 def run(arguments: argparse.Namespace) -> int:
     """Print what was read from each file."""
-    from ..reading import read_measurement
     from ..report.inspection import inspection_record, inspection_text
     from ..report.result import json_text
+    from ..report.sheet_file import recognised_sheet, save_sheet
 
-    if any(options.is_sheet(file) for file in arguments.files):
-        raise InputError("inspect reads data files; a run sheet is read by latticefit fit")
-    sample = options.sample_settings(arguments)
-    addenda = options.addenda_settings(arguments)
-    measurements = [
-        read_measurement(sample, (options.run_settings(arguments, file),), None, addenda) for file in arguments.files
-    ]
+    if arguments.save_sheet and any(options.is_sheet(file) for file in arguments.files):
+        raise InputError("--save-sheet writes the sheet of data files; a run sheet was given")
+    sheet, base, _ = request(arguments, parser())
+    measurements = _read(sheet, base)
+    if arguments.save_sheet:
+        path = save_sheet(recognised_sheet(measurements))
+        print(f"latticefit: wrote {str(path)!r}", file=sys.stderr)
     if arguments.json:
         print_json(json_text({"files": [inspection_record(each) for each in measurements]}))
     else:
         print("\n".join(inspection_text(each) for each in measurements), end="")
     return 0
+
+
+def _read(sheet: Sheet, base: Path) -> list[Measurement]:
+    """Read every file for itself, with the known heat capacities that concern it."""
+    from ..reading import read_measurement
+
+    found = []
+    for run in sheet.runs:
+        label = run.label or Path(run.file).stem
+        addenda = tuple(known for known in sheet.addenda if not known.runs or label in known.runs)
+        found.append(read_measurement(sheet.sample, (run,), base, addenda))
+    return found

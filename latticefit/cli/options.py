@@ -238,7 +238,9 @@ def report_settings(arguments: argparse.Namespace, before: ReportSettings | None
     return replace(before or ReportSettings(), **checked(given, REPORT, _option))
 
 
-_WITH_A_SHEET = {"files", "grid", "out", "replace", "figures", "random_seed", "json", "quiet", "allow_outside"}
+_WITH_A_SHEET = {
+    *("files", "grid", "out", "replace", "figures", "random_seed", "json", "quiet", "allow_outside", "save_sheet"),
+}
 
 
 def given_options(arguments: argparse.Namespace, parser: CommandParser) -> list[str]:

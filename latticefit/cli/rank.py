@@ -6,8 +6,8 @@ import argparse
 import sys
 
 from . import options
-from .fit import request
 from .parsing import CommandParser
+from .request import request
 
 __all__ = ["parser", "run"]
 

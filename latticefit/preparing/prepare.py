@@ -92,7 +92,11 @@ def _refuse_other_basis(measurement: Measurement) -> None:
 def _reasons(measurement: Measurement, window: Sequence[Interval], mask: Sequence[Interval]) -> tuple[str | None, ...]:
     by_run = [(reading.settings.window, reading.settings.mask) for reading in measurement.readings]
     reasons: list[str | None] = []
-    for temperature, run in zip(measurement.temperature.tolist(), measurement.run.tolist(), strict=True):
+    points = zip(measurement.temperature.tolist(), measurement.run.tolist(), strict=True)
+    for i, (temperature, run) in enumerate(points):
+        if measurement.set_aside and measurement.set_aside[i] is not None:
+            reasons.append(measurement.set_aside[i])
+            continue
         run_window, run_mask = by_run[run]
         masked = next((interval for interval in (*run_mask, *mask) if _inside(temperature, interval)), None)
         if not _in_any(temperature, run_window):

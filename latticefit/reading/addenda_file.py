@@ -109,7 +109,7 @@ def _read(run: RunSettings, folder: Path, read: Callable[[RunSettings], Measurem
 
 def _addenda_columns(run: RunSettings, folder: Path) -> list[Column]:
     try:
-        table = find_table(load_text(folder / run.file, run.file))
+        table = find_table(load_text(folder / run.file, run.file, run.worksheet))
     except InputError:  # reading it says so
         return []
     columns = describe_columns(table.headers or [None] * table.width)

@@ -31,11 +31,12 @@ class Row(NamedTuple):
 
 
 class Parts(NamedTuple):
-    """The headers with the units of a row of units, the rows of data, and what was left out, line by line."""
+    """The headers with the units of a row of units, the rows of data, what was left out, and where series begin."""
 
     headers: tuple[str, ...] | None
     rows: list[Row]
     repairs: tuple[tuple[int | None, str], ...]
+    series: tuple[tuple[int, str], ...]
 
 
 Split = Callable[[Row, int], tuple[str, ...] | None]
@@ -224,8 +225,8 @@ def _body(
     units: tuple[str, ...] | None,
     reader: _Reader,
     repairs: list[tuple[int | None, str]],
-) -> tuple[list[Row], tuple[tuple[int | None, str], ...]]:
-    """Return the rows of data, and the repairs with those of the lines between and below them added."""
+) -> tuple[list[Row], tuple[tuple[int | None, str], ...], tuple[tuple[int, str], ...]]:
+    """Return the rows of data, the repairs with those of the lines between and below them added, and the series."""
     last = max((i for i, row in enumerate(rows) if _numbers(row)), default=-1)
     kept = []
     for i, row in enumerate(rows):
@@ -236,7 +237,16 @@ def _body(
             repairs.append((row.line, note))
     if not kept:
         raise InputError(f"{reader.shown}: no data follow the header")
-    return kept, tuple(repairs)
+    series = [(row.line, words) for row in rows if (words := _series(row, reader)) is not None]
+    return kept, tuple(repairs), tuple(series)
+
+
+def _series(row: Row, reader: _Reader) -> str | None:
+    """Return the words of a line that begins a series, None for any other."""
+    words = " ".join(cell for cell in row.cells if cell)
+    filled = sum(map(bool, row.cells))
+    alone = filled == 1 or (reader.delimiter == "blank" and filled == 2)
+    return words if alone and not is_number(row.cells[0]) and _SERIES.fullmatch(words) else None
 
 
 def _what_it_is(
@@ -246,8 +256,7 @@ def _what_it_is(
     if is_number(row.cells[0]):
         return None
     words = " ".join(cell for cell in row.cells if cell)
-    filled = sum(map(bool, row.cells))
-    if _SERIES.fullmatch(words) and (filled == 1 or (reader.delimiter == "blank" and filled == 2)):
+    if _series(row, reader) is not None:
         return f"a series begins: {quoted(words)}"
     if headers is not None:
         cells = reader.split(row, len(headers))

@@ -19,7 +19,7 @@ from .headers import (
 )
 from .wording import listed, offered, quoted
 
-__all__ = ["choose_columns", "find_column"]
+__all__ = ["choose_columns", "chosen_column", "find_column"]
 
 
 def choose_columns(
@@ -41,8 +41,8 @@ def choose_columns(
     InputError
         If a column is not there, cannot be recognised, or two have an equal claim.
     """
-    t_chosen = None if temperature is None else _chosen(columns, temperature, "--temperature", shown)
-    c_chosen = None if heat_capacity is None else _chosen(columns, heat_capacity, "--heat-capacity", shown)
+    t_chosen = None if temperature is None else chosen_column(columns, temperature, "--temperature", shown)
+    c_chosen = None if heat_capacity is None else chosen_column(columns, heat_capacity, "--heat-capacity", shown)
     if all(column.header is None for column in columns):
         t_chosen, c_chosen = _without_headers(columns, t_chosen, c_chosen, shown)
     t_column = t_chosen or _recognise(columns, c_chosen, _TEMPERATURE, shown)
@@ -91,7 +91,14 @@ def find_column(columns: tuple[Column, ...], wanted: str | int, shown: str) -> C
     return columns[number - 1]
 
 
-def _chosen(columns: tuple[Column, ...], wanted: str | int, option: str, shown: str) -> Column:
+def chosen_column(columns: tuple[Column, ...], wanted: str | int, option: str, shown: str) -> Column:
+    """Return the column that `option` asks for, as `find_column` finds it.
+
+    Raises
+    ------
+    InputError
+        If there is none; the nearest header is offered.
+    """
     column = find_column(columns, wanted, shown)
     if column is None:
         headers = [found.header for found in columns if found.header]

@@ -10,7 +10,7 @@ from pathlib import Path
 import numpy as np
 
 from ..errors import InputError
-from ..records import AddendaSettings, Measurement, Repair, RunSettings, SampleSettings
+from ..records import AddendaSettings, Measurement, Reading, Repair, RunSettings, SampleSettings
 from ..sample import build_sample, converted_by_mass, sample_notes
 from .addenda import take_off
 from .run import RunData, read_run
@@ -54,20 +54,23 @@ def read_measurement(
     named = _labelled(runs)
     built = build_sample(sample, Path(runs[0].file).stem)
     folder = Path() if base is None else base
-    parts = [read_run(built, run, folder / run.file, index) for index, run in enumerate(named)]
+    parts: list[RunData] = []
+    for run in named:
+        parts.append(read_run(built, run, folder / run.file, sum(len(part.division.names) for part in parts)))
     _refuse_unlike(parts)
+    aside = tuple(why for part in parts for why in part.set_aside)
     stated = [part.sigma for part in parts if part.sigma is not None]
     measurement = Measurement(
         sample=built,
         temperature=np.concatenate([part.temperature for part in parts]),
         heat_capacity=np.concatenate([part.heat_capacity for part in parts]),
         sigma=np.concatenate(stated) if stated else None,
-        run=np.repeat(np.arange(len(parts), dtype=np.intp), [part.line.size for part in parts]),
+        run=np.concatenate([part.run for part in parts]),
         line=np.concatenate([part.line for part in parts]),
         quantity=parts[0].quantity,
         basis=parts[0].basis,
         sigma_text=_sigma_text(parts),
-        readings=tuple(part.reading for part in parts),
+        readings=_readings(parts),
         repairs=(
             *(Repair("sample", None, note) for note in sample_notes(sample)),
             *_same_content(parts),
@@ -75,6 +78,7 @@ def read_measurement(
         ),
         excluded=tuple(row for part in parts for row in part.excluded),
         sample_settings=sample,
+        set_aside=aside if any(why is not None for why in aside) else (),
     )
     return take_off(
         on_its90(_with_mass_note(measurement)),
@@ -108,6 +112,19 @@ def _labelled(runs: Sequence[RunSettings]) -> list[RunSettings]:
         used.add(label)
         labelled.append(replace(run, label=label))
     return labelled
+
+
+def _readings(parts: Sequence[RunData]) -> tuple[Reading, ...]:
+    """Return how each run was read; those of one file, divided by a column, differ in label and rows alone."""
+    readings = []
+    for part in parts:
+        labels = part.division.labels(part.reading.label, len(parts) == 1)
+        rows = np.bincount(part.division.of_row, minlength=len(labels)).tolist()
+        readings += [replace(part.reading, label=label, rows=n) for label, n in zip(labels, rows, strict=True)]
+    label, count = Counter(each.label for each in readings).most_common(1)[0]
+    if count > 1:
+        raise InputError(f"two runs would carry the label {quoted(label)}; give their files labels of their own")
+    return tuple(readings)
 
 
 def _refuse_unlike(parts: Sequence[RunData]) -> None:

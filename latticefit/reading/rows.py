@@ -18,7 +18,15 @@ from .table import Table
 from .values import Decimal, Number, is_plain, mixed_decimals, parse_number, spelling
 from .wording import quoted
 
-__all__ = ["Cells", "place", "read_cells", "reasons_against", "refuse_bad_sigma", "refuse_too_few"]
+__all__ = [
+    "Cells",
+    "decimal_of",
+    "place",
+    "read_cells",
+    "reasons_against",
+    "refuse_bad_sigma",
+    "refuse_too_few",
+]
 
 
 @dataclass(frozen=True)
@@ -38,16 +46,19 @@ class Cells:
     repairs: tuple[tuple[int | None, str], ...]
 
 
-def read_cells(table: Table, columns: Sequence[Column], shown: str) -> Cells:
+def read_cells(table: Table, columns: Sequence[Column], shown: str, aside: Sequence[str | None] | None = None) -> Cells:
     """Read the cells of the chosen columns: temperature, heat capacity, and sigma where there is one.
+
+    A row that is set aside need not be readable: `aside` says why it is, None for the others.
 
     Raises
     ------
     InputError
         If a cell is no number, or decimal points and commas are mixed.
     """
-    decimal = _decimal(table, columns, shown)
-    numbers = [_numbers(table, column, decimal, shown) for column in columns]
+    fitted = [why is None for why in aside or [None] * len(table.rows)]
+    decimal = decimal_of(table.where(fitted), columns, shown)
+    numbers = [_numbers(table, column, decimal, fitted, shown) for column in columns]
     written = [math.nan if number.uncertainty is None else number.uncertainty for number in numbers[1]]
     arrays = [np.array([number.value for number in column]) for column in numbers]
     return Cells(
@@ -87,7 +98,14 @@ def _respelt(table: Table, columns: Sequence[Column]) -> list[tuple[int | None, 
     return repairs
 
 
-def _decimal(table: Table, columns: Sequence[Column], shown: str) -> Decimal:
+def decimal_of(table: Table, columns: Sequence[Column], shown: str) -> Decimal:
+    """Return the decimal sign that columns share.
+
+    Raises
+    ------
+    InputError
+        If they have both.
+    """
     cells = (table.cell(row, column.index) for row in table.rows for column in columns)
     decimal, with_point, with_comma = mixed_decimals(cells)
     if with_point is not None and with_comma is not None:
@@ -106,11 +124,13 @@ def _whereabouts(table: Table, columns: Sequence[Column], cell: str) -> str:
     return quoted(cell)
 
 
-def _numbers(table: Table, column: Column, decimal: Decimal, shown: str) -> list[Number]:
+def _numbers(table: Table, column: Column, decimal: Decimal, fitted: Sequence[bool], shown: str) -> list[Number]:
     numbers = []
-    for row in table.rows:
+    for row, needed in zip(table.rows, fitted, strict=True):
         cell = table.cell(row, column.index)
         number = parse_number(cell, decimal)
+        if number is None and not needed:
+            number = Number(math.nan, None)
         if number is None:
             raise InputError(f"{place(shown, row, column)}: {quoted(cell)} cannot be read as a number")
         numbers.append(number)
@@ -155,13 +175,16 @@ def reasons_against(
     return reasons
 
 
-def refuse_too_few(reasons: Sequence[str | None], table: Table, shown: str) -> None:
-    """Raise InputError if fewer than half of the rows can be used."""
-    left_out = [i for i, reason in enumerate(reasons) if reason is not None]
-    if 2 * len(left_out) > len(reasons):
-        used, first = len(reasons) - len(left_out), left_out[0]
+def refuse_too_few(
+    reasons: Sequence[str | None], table: Table, shown: str, aside: Sequence[str | None] | None = None
+) -> None:
+    """Raise InputError if fewer than half of the rows can be used, those that are set aside not counted."""
+    asked = [i for i, why in enumerate(aside or [None] * len(reasons)) if why is None]
+    left_out = [i for i in asked if reasons[i] is not None]
+    if 2 * len(left_out) > len(asked):
+        used, first = len(asked) - len(left_out), left_out[0]
         raise InputError(
-            f"{shown}: only {used} of {len(reasons)} rows can be used; the first one left out is line "
+            f"{shown}: only {used} of {len(asked)} rows can be used; the first one left out is line "
             f"{table.rows[first].line} ({reasons[first]})"
         )
 

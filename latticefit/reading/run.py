@@ -13,19 +13,27 @@ from ..errors import InputError
 from ..records import Basis, ExcludedRow, FloatArray, Quantity, Reading, Repair, RunSettings, Sample
 from ..units import HeatCapacityUnit, TemperatureUnit, heat_capacity_unit, temperature_unit
 from .columns import choose_columns
+from .conditions import reasons_to_leave_out, set_aside
+from .division import Division, divide_rows, order_notes
 from .headers import Column, describe_columns, names_temperature, power_of_ten, quantity_of, unit_unread
 from .rows import Cells, read_cells, reasons_against, refuse_bad_sigma, refuse_too_few
 from .sigma_source import SigmaSource, find_sigma_source
 from .table import Table, find_table
 from .text import TextFile, load_text
-from .wording import counted, quoted, shown_name
+from .wording import quoted, shown_name
 
 __all__ = ["RunData", "read_run"]
+
+_Values = tuple[FloatArray, FloatArray, FloatArray | None]
 
 
 @dataclass(frozen=True)
 class RunData:
-    """What one file gave: arrays of the usable rows in file order, and the facts about the rest."""
+    """What one file gave: arrays of the usable rows in file order, and the facts about the rest.
+
+    `set_aside` says why a usable row is not to be fitted, None for the others; `division` says which rows are which
+    run, `run` which run of the measurement each usable row belongs to.
+    """
 
     reading: Reading
     temperature: FloatArray
@@ -37,6 +45,9 @@ class RunData:
     sigma_text: str
     repairs: tuple[Repair, ...]
     excluded: tuple[ExcludedRow, ...]
+    set_aside: tuple[str | None, ...]
+    division: Division
+    run: NDArray[np.intp]
 
 
 @dataclass(frozen=True)
@@ -70,32 +81,31 @@ def read_run(sample: Sample, run: RunSettings, path: Path, index: int) -> RunDat
     path : Path
         Where the file is; `run.file` is what messages call it.
     index : int
-        Position of the run in the measurement.
+        Position of the run, or of the first of its runs, in the measurement.
 
     Raises
     ------
     InputError
         If the file or a choice is wrong, with line, column and value where there is one.
     """
-    source = load_text(path, run.file)
+    source = load_text(path, run.file, run.worksheet)
     shown = shown_name(run.file)
     table = find_table(source)
-    choice = _choose(table, run, shown)
-    cells = read_cells(table, choice.columns, shown)
-    factor, basis = _to_basis(choice.heat_capacity_unit, sample, shown)
-    temperature = (cells.temperature + choice.temperature_unit.offset) * choice.temperature_unit.factor
-    heat_capacity = cells.heat_capacity * factor
-    sigma = _sigma(choice, cells, (temperature, heat_capacity), sample, shown)
-    unit = choice.heat_capacity_unit.text
-    reasons = reasons_against(temperature, heat_capacity, sigma, cells.heat_capacity, unit)
-    refuse_too_few(reasons, table, shown)
+    columns = describe_columns(table.headers or [None] * table.width)
+    choice = _choose(columns, run, shown)
+    aside, aside_notes = set_aside(table, columns, choice.columns, run, source.last_line, shown)
+    cells = read_cells(table, choice.columns, shown, aside)
+    values = _converted(choice, cells, sample, shown)
+    temperature, heat_capacity, sigma = values
+    reasons = _reasons(values, cells, choice, table, aside, shown)
     keep = np.array([reason is None for reason in reasons])
-    if sigma is not None:
-        refuse_bad_sigma(sigma, keep, table, choice.columns[-1], shown)
     lines = np.array([row.line for row in table.rows], dtype=np.intp)
-    order = _order_notes(temperature[keep], lines[keep])
+    division = divide_rows(table, columns, choice.columns, run.split_by, (keep, aside), shown)
+    order = order_notes(temperature[keep], lines[keep], division.of_row[keep], division.names)
     notes = (*table.notes, *choice.notes, *choice.sigma.notes, *_written_notes(choice, cells), *order)
+    notes = (*notes, *division.notes, *aside_notes)
     left_out = [(i, reason) for i, reason in enumerate(reasons) if reason is not None]
+    of_row = index + division.of_row
     return RunData(
         reading=_reading(source, table, choice, cells, run),
         temperature=temperature[keep],
@@ -103,18 +113,44 @@ def read_run(sample: Sample, run: RunSettings, path: Path, index: int) -> RunDat
         sigma=None if sigma is None else sigma[keep],
         line=lines[keep],
         quantity=choice.quantity,
-        basis=basis,
+        basis=_to_basis(choice.heat_capacity_unit, sample, shown)[1],
         sigma_text="" if sigma is None else choice.sigma.text,
         repairs=(
             *(Repair(run.file, None, note) for note in notes),
             *(Repair(run.file, line, note) for line, note in _by_line(table.repairs, cells.repairs)),
             *(Repair(run.file, int(lines[i]), f"row left out: {reason}") for i, reason in left_out),
         ),
-        excluded=tuple(
-            ExcludedRow(index, int(lines[i]), float(temperature[i]), float(heat_capacity[i]), _at(sigma, i), reason)
-            for i, reason in left_out
-        ),
+        excluded=tuple(ExcludedRow(int(of_row[i]), int(lines[i]), *_row(values, i), reason) for i, reason in left_out),
+        set_aside=tuple(why for why, kept in zip(aside, keep, strict=True) if kept),
+        division=division,
+        run=of_row[keep],
     )
+
+
+def _converted(choice: _Choice, cells: Cells, sample: Sample, shown: str) -> _Values:
+    """Return temperature, heat capacity and sigma of every row in the units of the measurement."""
+    temperature = (cells.temperature + choice.temperature_unit.offset) * choice.temperature_unit.factor
+    heat_capacity = cells.heat_capacity * _to_basis(choice.heat_capacity_unit, sample, shown)[0]
+    return temperature, heat_capacity, _sigma(choice, cells, (temperature, heat_capacity), sample, shown)
+
+
+def _reasons(
+    values: _Values, cells: Cells, choice: _Choice, table: Table, aside: list[str | None], shown: str
+) -> list[str | None]:
+    """Say for each row why it is left out of the arrays, None where it is not; refuse what cannot be."""
+    sigma = values[2]
+    reasons = reasons_against(*values, cells.heat_capacity, choice.heat_capacity_unit.text)
+    refuse_too_few(reasons, table, shown, aside)
+    reasons = reasons_to_leave_out(reasons, aside, sigma)
+    if sigma is not None:
+        usable = np.array([reason is None for reason in reasons])
+        refuse_bad_sigma(sigma, usable, table, choice.columns[-1], shown)
+    return reasons
+
+
+def _row(values: _Values, i: int) -> tuple[float, float, float]:
+    temperature, heat_capacity, sigma = values
+    return float(temperature[i]), float(heat_capacity[i]), math.nan if sigma is None else float(sigma[i])
 
 
 def _by_line(*repairs: tuple[tuple[int | None, str], ...]) -> list[tuple[int | None, str]]:
@@ -122,26 +158,10 @@ def _by_line(*repairs: tuple[tuple[int | None, str], ...]) -> list[tuple[int | N
     return sorted((each for part in repairs for each in part), key=lambda repair: repair[0] or 0)
 
 
-def _order_notes(temperature: FloatArray, lines: NDArray[np.intp]) -> list[str]:
-    """Say where the temperatures do not rise; the order of the file is kept all the same."""
-    falls = np.flatnonzero(np.diff(temperature) < 0)
-    if not falls.size:
-        return []
-    if falls.size == temperature.size - 1:
-        return ["the temperatures fall from row to row"] if falls.size > 1 else []
-    fall = counted(falls.size, "fall")
-    return [f"the temperatures are not in order: {fall}, the first in line {lines[falls[0] + 1]}"]
-
-
-def _at(sigma: FloatArray | None, i: int) -> float:
-    return math.nan if sigma is None else float(sigma[i])
-
-
 # ------------------------------------------------------------------------------------------------ columns and units
 
 
-def _choose(table: Table, run: RunSettings, shown: str) -> _Choice:
-    described = describe_columns(table.headers or [None] * table.width)
+def _choose(described: tuple[Column, ...], run: RunSettings, shown: str) -> _Choice:
     t_column, c_column = choose_columns(described, run.temperature, run.heat_capacity, shown)
     t_unit, t_notes = _temperature_unit(t_column, run.temperature_unit, shown)
     c_unit, c_notes = _heat_capacity_unit(c_column, run.heat_capacity_unit, shown)
@@ -304,6 +324,7 @@ def _reading(source: TextFile, table: Table, choice: _Choice, cells: Cells, run:
         coverage_factor=choice.sigma.coverage_factor,
         temperature_unit=choice.temperature_unit.text,
         heat_capacity_unit=choice.heat_capacity_unit.text,
+        worksheet=source.worksheet,
     )
     return Reading(
         path=source.path,

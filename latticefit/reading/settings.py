@@ -14,6 +14,7 @@ from types import MappingProxyType
 from typing import Any, Final
 
 from ..errors import InputError, nearest
+from .conditions import check_condition
 from .options import (
     HIGHEST_TEMPERATURE,
     MAX_GRID_POINTS,
@@ -167,8 +168,9 @@ def _intervals(value: Any, where: str) -> tuple[tuple[float, float], ...]:
 
 
 def _lines(value: Any, where: str) -> tuple[tuple[int, int], ...]:
-    alone = isinstance(value, str) or _whole(value) is not None
-    several = [value] if alone else value
+    # (40, 45) is an interval, as (2, 300) is one of temperatures; [40, 45] is two lines
+    alone = isinstance(value, tuple) and any(_whole(side) is not None for side in value)
+    several = [value] if alone or isinstance(value, str) or _whole(value) is not None else value
     if not isinstance(several, (list, tuple)) or not several:
         raise wrong(where, 'a text such as "40:45" or a list of them', value)
     found = []
@@ -193,6 +195,13 @@ def _texts(example: str) -> Converter:
         return tuple(_text(each, where) for each in several)
 
     return convert
+
+
+def _conditions(value: Any, where: str) -> tuple[str, ...]:
+    try:
+        return tuple(check_condition(text) for text in _texts("quality >= 0.9")(value, where))
+    except InputError as error:
+        raise InputError(str(error) if str(error).startswith(where) else f"{where}: {error}") from None
 
 
 def _interval(each: Any, where: str, value: Any) -> tuple[float, float]:
@@ -302,7 +311,7 @@ RUN: Final[Mapping[str, Converter]] = MappingProxyType(
         "mask": _intervals,
         "worksheet": _text,
         "temperature_scale": _one_of("ITS-90", "IPTS-68"),
-        "require": _texts("quality >= 0.9"),
+        "require": _conditions,
         "mask_lines": _lines,
         "replicates": _one_of("keep", "average", "drop-first"),
         "split_by": _column,

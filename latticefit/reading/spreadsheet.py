@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 import io
+import re
 import warnings
 import zipfile
-from collections.abc import Iterator
+from collections.abc import Callable, Collection, Iterator
 from typing import Any, Final
 
-from ..errors import InputError
-from .wording import listed
+from ..errors import InputError, nearest
+from .opendocument import read_ods
+from .wording import listed, quoted, shown_name
 
 __all__ = ["MAX_CELLS", "MAX_SHEET_COLUMNS", "MAX_UNPACKED", "spreadsheet_lines"]
 
@@ -24,56 +26,133 @@ _ENTITY_MARKS: Final = tuple(
 )
 
 
-def spreadsheet_lines(data: bytes, shown: str) -> tuple[list[str], tuple[str, ...]]:
-    """Return the one worksheet that holds numbers, a line a row, cells separated by tabs, and what is to be noted.
+def spreadsheet_lines(
+    data: bytes, shown: str, worksheet: str | None = None
+) -> tuple[list[str], tuple[str, ...], str | None]:
+    """Return one worksheet as lines of text.
+
+    Parameters
+    ----------
+    data : bytes
+        An .xlsx or .ods file.
+    shown : str
+        The file as messages name it.
+    worksheet : str, optional
+        Name or 1-based number of the sheet; the only one that holds numbers when left out.
+
+    Returns
+    -------
+    lines : list of str
+        A line a row, cells separated by tabs.
+    notes : tuple of str
+    title : str or None
+        What names the sheet again; None in a file that has no other.
 
     Raises
     ------
     InputError
-        If it is no .xlsx file, is damaged or too large when unpacked, or several worksheets hold numbers.
+        If it is no such file, is damaged or too large when unpacked, there is no such sheet, or several hold numbers.
     """
-    _check_archive(data, shown)
+    try:
+        with zipfile.ZipFile(io.BytesIO(data)) as archive:
+            read = _sheets_of(archive, data, shown)
+            titles = list(read(lambda number, title: False)) if worksheet is not None else []
+            chosen = None if worksheet is None else _chosen(titles, worksheet, shown)
+            sheets = read(lambda number, title: chosen in (None, number))
+    except InputError:
+        raise
+    except Exception as error:  # neither archives nor the library have a single exception for a damaged file
+        raise InputError(
+            f"{shown}: the spreadsheet is damaged ({type(error).__name__}); save it once more, or as CSV"
+        ) from None
+    if chosen is None:
+        return _only_table(sheets, shown)
+    title = titles[chosen]
+    return _lines(sheets[title]), (), _name_again(title, titles)
+
+
+_Wanted = Callable[[int, str], bool]
+
+
+def _sheets_of(archive: zipfile.ZipFile, data: bytes, shown: str) -> Callable[[_Wanted], dict[str, list[list[str]]]]:
+    """Return what reads the sheets, once it is known that they will not fill the memory."""
+    parts = archive.infolist()
+    unpacked = sum(part.file_size for part in parts)
+    if len(parts) > MAX_PARTS or unpacked > MAX_UNPACKED:
+        raise InputError(
+            f"{shown}: the spreadsheet unpacks to {unpacked / 1e6:.0f} MB in {len(parts)} parts, more than the "
+            f"{MAX_UNPACKED / 1e6:.0f} MB in {MAX_PARTS} parts that are read; save the table as CSV"
+        )
+    names = {part.filename for part in parts}
+    if "content.xml" in names and "[Content_Types].xml" not in names:
+        return _ods(archive, names, shown)
+    if "[Content_Types].xml" not in names or not any(name.startswith("xl/") for name in names):
+        raise InputError(f"{shown}: is an archive but no .xlsx or .ods spreadsheet; save the table as CSV")
+    for part in parts:
+        if not part.filename.startswith("xl/media/"):
+            _refuse_entities(archive, part, shown)
+    return _xlsx(data, shown)
+
+
+def _ods(archive: zipfile.ZipFile, names: set[str], shown: str) -> Callable[[_Wanted], dict[str, list[list[str]]]]:
+    manifest = "META-INF/manifest.xml"
+    if manifest in names and b"encryption-data" in archive.read(manifest):
+        raise InputError(f"{shown}: the spreadsheet is protected by a password; save it without, or as CSV")
+    _refuse_entities(archive, archive.getinfo("content.xml"), shown)
+
+    def refuse(row: int, what: str) -> InputError:
+        return _too_many_columns(row, shown) if what == "columns" else _too_many_cells(shown)
+
+    def read(wanted: _Wanted) -> dict[str, list[list[str]]]:
+        with archive.open("content.xml") as content:
+            sheets = read_ods(content, wanted, (MAX_SHEET_COLUMNS, MAX_CELLS), refuse)
+        if not sheets:
+            raise InputError(f"{shown}: is an OpenDocument file but no spreadsheet; save the table as CSV")
+        return sheets
+
+    return read
+
+
+def _xlsx(data: bytes, shown: str) -> Callable[[_Wanted], dict[str, list[list[str]]]]:
     try:
         import openpyxl
     except ImportError:
         raise InputError(f"{shown}: is a spreadsheet; install openpyxl to read it, or save the table as CSV") from None
-    try:
+
+    def read(wanted: _Wanted) -> dict[str, list[list[str]]]:
         with warnings.catch_warnings():
             warnings.simplefilter("ignore")  # the library warns of styles and validations, which are not read
             book = openpyxl.load_workbook(io.BytesIO(data), read_only=True, data_only=True)
-            sheets = {sheet.title: list(_rows(sheet, shown)) for sheet in book.worksheets}
-    except InputError:
-        raise
-    except Exception as error:  # the library has no single exception for a damaged file
-        raise InputError(
-            f"{shown}: the spreadsheet is damaged ({type(error).__name__}); save it once more, or as CSV"
-        ) from None
-    return _only_table(sheets, shown)
+            return {
+                sheet.title: list(_rows(sheet, shown)) if wanted(number, sheet.title) else []
+                for number, sheet in enumerate(book.worksheets)
+            }
+
+    return read
 
 
-def _check_archive(data: bytes, shown: str) -> None:
-    """Refuse what is no .xlsx file and what would fill the memory, before anything is parsed."""
-    try:
-        with zipfile.ZipFile(io.BytesIO(data)) as archive:
-            parts = archive.infolist()
-            unpacked = sum(part.file_size for part in parts)
-            if len(parts) > MAX_PARTS or unpacked > MAX_UNPACKED:
-                raise InputError(
-                    f"{shown}: the spreadsheet unpacks to {unpacked / 1e6:.0f} MB in {len(parts)} parts, more than the "
-                    f"{MAX_UNPACKED / 1e6:.0f} MB in {MAX_PARTS} parts that are read; save the table as CSV"
-                )
-            names = {part.filename for part in parts}
-            if "[Content_Types].xml" not in names or not any(name.startswith("xl/") for name in names):
-                raise InputError(f"{shown}: is an archive but no .xlsx spreadsheet; save the table as .xlsx or CSV")
-            for part in parts:
-                if not part.filename.startswith("xl/media/"):
-                    _refuse_entities(archive, part, shown)
-    except InputError:
-        raise
-    except Exception as error:  # a damaged archive fails in many ways
-        raise InputError(
-            f"{shown}: the spreadsheet is damaged ({type(error).__name__}); save it once more, or as CSV"
-        ) from None
+def _chosen(titles: list[str], worksheet: str, shown: str) -> int:
+    """Return the 0-based number of the sheet of this name, or of this 1-based number where none has the name."""
+    wanted = worksheet.strip()
+    if worksheet in titles:
+        return titles.index(worksheet)
+    named = [number for number, title in enumerate(titles) if title.strip() == wanted]
+    if len(named) == 1:
+        return named[0]
+    if re.fullmatch(r"\d{1,6}", wanted, re.ASCII) is None:
+        hint = nearest(wanted, map(shown_name, titles))
+        hint = hint if hint.startswith("did you mean") else f"there are {listed(titles)}"
+        raise InputError(f"{shown}: there is no worksheet {quoted(worksheet)}; {hint}")
+    if not 1 <= int(wanted) <= len(titles):
+        raise InputError(f"{shown}: there is no worksheet {wanted}; the file has {len(titles)}: {listed(titles)}")
+    return int(wanted) - 1
+
+
+def _name_again(title: str, titles: Collection[str]) -> str | None:
+    """Return the name of a sheet, or its number where the name is blank; None where there is no other sheet."""
+    if len(titles) == 1:
+        return None
+    return title if title.strip() else str(list(titles).index(title) + 1)
 
 
 def _refuse_entities(archive: zipfile.ZipFile, part: zipfile.ZipInfo, shown: str) -> None:
@@ -92,12 +171,20 @@ def _rows(sheet: Any, shown: str) -> Iterator[list[str]]:
         number = next((cell.row for cell in row if getattr(cell, "row", None)), last + 1)
         cells += max(len(row), 1) + number - last - 1
         if len(row) > MAX_SHEET_COLUMNS and row[-1].value is not None:
-            raise InputError(f"{shown}: row {number} has more than the {MAX_SHEET_COLUMNS} columns that are read")
+            raise _too_many_columns(number, shown)
         if cells > MAX_CELLS:
-            raise InputError(f"{shown}: has more than the {MAX_CELLS} cells that are read; save the table as CSV")
+            raise _too_many_cells(shown)
         yield from ([] for _ in range(number - last - 1))
         last = number
         yield [_text(cell) for cell in row]
+
+
+def _too_many_columns(row: int, shown: str) -> InputError:
+    return InputError(f"{shown}: row {row} has more than the {MAX_SHEET_COLUMNS} columns that are read")
+
+
+def _too_many_cells(shown: str) -> InputError:
+    return InputError(f"{shown}: has more than the {MAX_CELLS} cells that are read; save the table as CSV")
 
 
 def _text(cell: Any) -> str:
@@ -110,19 +197,22 @@ def _text(cell: Any) -> str:
     return " ".join(str(value).split())
 
 
-def _only_table(sheets: dict[str, list[list[str]]], shown: str) -> tuple[list[str], tuple[str, ...]]:
+def _only_table(sheets: dict[str, list[list[str]]], shown: str) -> tuple[list[str], tuple[str, ...], str | None]:
     with_numbers = {
         title: rows for title, rows in sheets.items() if any(_numbers(row) >= 2 for row in rows) and len(rows) > 1
     }
     if len(with_numbers) > 1:
-        raise InputError(f"{shown}: sheets {listed(with_numbers)} all hold numbers; keep the one to read in the file")
+        raise InputError(f"{shown}: worksheets {listed(with_numbers)} all hold numbers; choose one by --worksheet")
     if not with_numbers:
-        raise InputError(f"{shown}: no sheet holds two columns of numbers")
+        raise InputError(f"{shown}: no worksheet holds two columns of numbers")
     title, rows = next(iter(with_numbers.items()))
-    notes = (
-        () if len(sheets) == 1 else (f"read from sheet {title!r}, the only one of {len(sheets)} that holds a table",)
-    )
-    return ["\t".join(row) for row in rows], notes
+    again = _name_again(title, sheets)
+    note = f"read from worksheet {quoted(title)}, the only one of {len(sheets)} that holds a table"
+    return _lines(rows), (() if again is None else (note,)), again
+
+
+def _lines(rows: list[list[str]]) -> list[str]:
+    return ["\t".join(row) for row in rows] or [""]
 
 
 def _numbers(row: list[str]) -> int:

@@ -4,8 +4,9 @@ from __future__ import annotations
 
 import csv
 import re
+from collections.abc import Iterable
 from contextlib import suppress
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final, NamedTuple
 
 from ..errors import InputError
@@ -23,7 +24,10 @@ _DELIMITERS: Final[dict[str, str | None]] = {"tab": "\t", "semicolon": ";", "com
 
 @dataclass(frozen=True)
 class Table:
-    """The table of a file; `headers` is None where no line names the columns, else one header a column."""
+    """The table of a file; `headers` is None where no line names the columns, else one header a column.
+
+    `series` holds the lines that begin a series, and their words.
+    """
 
     delimiter: str
     headers: tuple[str, ...] | None
@@ -31,6 +35,11 @@ class Table:
     rows: tuple[Row, ...]
     notes: tuple[str, ...]
     repairs: tuple[tuple[int | None, str], ...]
+    series: tuple[tuple[int, str], ...] = ()
+
+    def where(self, keep: Iterable[bool]) -> Table:
+        """Return the table with some of its rows."""
+        return replace(self, rows=tuple(row for row, kept in zip(self.rows, keep, strict=True) if kept))
 
     def cell(self, row: Row, column: int) -> str:
         """Return a cell, empty where the line ends before it."""
@@ -77,7 +86,7 @@ def find_table(source: TextFile) -> Table:
     width = max(len(row.cells) for row in rows) if headers is None else len(headers)
     if width < 2:
         raise InputError(f"{shown}: has one column; temperature and heat capacity are needed side by side")
-    return Table(delimiter, headers, width, tuple(rows), notes, parts.repairs)
+    return Table(delimiter, headers, width, tuple(rows), notes, parts.repairs, parts.series)
 
 
 def _refuse_wide(lines: list[str], shown: str) -> None:

@@ -29,6 +29,7 @@ class TextFile:
     """A text file: the name shown in messages, its resolved path, sha256 of its bytes, encoding and lines.
 
     `delimiter` is that of the table where the kind of file settles it, as a spreadsheet does; else it is found.
+    `worksheet` is the name of the one that was read, None where there is no other.
     """
 
     name: str
@@ -38,9 +39,15 @@ class TextFile:
     lines: list[str]
     notes: tuple[str, ...]
     delimiter: str | None = None
+    worksheet: str | None = None
+
+    @property
+    def last_line(self) -> int:
+        """The number of lines; what follows the last end of a line is none."""
+        return len(self.lines) - (not self.lines[-1])
 
 
-def load_text(path: Path, name: str) -> TextFile:
+def load_text(path: Path, name: str, worksheet: str | None = None) -> TextFile:
     """Read a file of text, or the table of a spreadsheet as lines of text.
 
     UTF-8 with or without byte order mark and UTF-16 with one are read as they are. Other bytes are taken as the 8-bit
@@ -52,6 +59,8 @@ def load_text(path: Path, name: str) -> TextFile:
         Where it is.
     name : str
         What the user called it.
+    worksheet : str, optional
+        Name or 1-based number of the sheet of a spreadsheet; the only one that holds a table when left out.
 
     Raises
     ------
@@ -62,16 +71,19 @@ def load_text(path: Path, name: str) -> TextFile:
     data = _bytes_of(path, shown)
     if not data.strip():
         raise InputError(f"{shown}: the file is empty")
-    delimiter = None
+    delimiter, title = None, None
     if data.startswith(b"PK\x03\x04"):
-        lines, notes = spreadsheet_lines(data, shown)
+        lines, notes, title = spreadsheet_lines(data, shown, worksheet)
         encoding, delimiter = "spreadsheet", "tab"
+    elif worksheet is not None:
+        raise InputError(f"{shown}: is a text file and has no worksheet {quoted(worksheet)}; leave --worksheet out")
     else:
         text, encoding, notes = _decoded(data, shown)
         lines = _lines_of(text, shown)
         if path.suffix.lower() in _SPREADSHEET_ENDINGS:
             notes = (*notes, f"read as text, which it is, although its name ends in {path.suffix!r}")
-    return TextFile(name, str(path.resolve()), hashlib.sha256(data).hexdigest(), encoding, lines, notes, delimiter)
+    sha256 = hashlib.sha256(data).hexdigest()
+    return TextFile(name, str(path.resolve()), sha256, encoding, lines, notes, delimiter, title)
 
 
 def _lines_of(text: str, shown: str) -> list[str]:
@@ -153,7 +165,9 @@ def _not_opened(error: OSError | ValueError, shown: str) -> InputError:
 
 def _refuse_binary(data: bytes, shown: str) -> None:
     if data.startswith(b"\xd0\xcf\x11\xe0"):
-        raise InputError(f"{shown}: is an old binary spreadsheet or document; save the table as .xlsx or CSV")
+        raise InputError(
+            f"{shown}: is an old binary spreadsheet or document, or one with a password; save the table as .xlsx or CSV"
+        )
     head = data[:65536]
     if b"\x00" in data or len(head) - len(head.translate(None, _CONTROL)) > len(head) // 10:
         raise InputError(f"{shown}: is a binary file, not text; save the table as CSV")

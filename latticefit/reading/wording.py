@@ -6,7 +6,7 @@ from collections.abc import Iterable, Sequence
 
 from ..errors import nearest
 
-__all__ = ["counted", "listed", "offered", "quoted", "shown_name"]
+__all__ = ["bare", "counted", "listed", "offered", "quoted", "shown_name"]
 
 _LONGEST = 60
 
@@ -14,6 +14,11 @@ _LONGEST = 60
 def quoted(text: str) -> str:
     """Return a cell, header or option in quotes, shortened, with control characters escaped."""
     return repr(text if len(text) <= _LONGEST else text[: _LONGEST - 3] + "...")
+
+
+def bare(text: str) -> str:
+    """Return a name or a number without quotes where it is short and prints, else as `quoted`."""
+    return text if text.isprintable() and len(text) <= _LONGEST else quoted(text)
 
 
 def shown_name(name: str) -> str:

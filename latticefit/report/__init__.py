@@ -21,6 +21,7 @@ if TYPE_CHECKING:
         warnings_frame,
     )
     from .html import html_report, html_summary
+    from .measurement_file import measurement_csv, write_measurement_file
     from .ranking import comparison_record, ranking_text
     from .result import json_text, result_record
     from .saved import evaluate, read_result
@@ -43,6 +44,7 @@ __all__ = [
     "html_report",
     "html_summary",
     "json_text",
+    "measurement_csv",
     "parameters_frame",
     "parameters_of",
     "ranking_frame",
@@ -56,6 +58,7 @@ __all__ = [
     "table_csv",
     "text_report",
     "warnings_frame",
+    "write_measurement_file",
     "write_report",
 ]
 
@@ -76,6 +79,7 @@ _HOMES = {
     "ranking": ("comparison_record", "ranking_text"),
     "saved": ("evaluate", "read_result"),
     "html": ("html_report", "html_summary"),
+    "measurement_file": ("measurement_csv", "write_measurement_file"),
     "result": ("json_text", "result_record"),
     "tables": ("residuals_csv", "table_csv"),
     "text": ("summary_text", "text_report"),

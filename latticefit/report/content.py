@@ -91,7 +91,11 @@ def measured_rows(analysis: Analysis) -> tuple[Row, ...]:
         for each in measurement.readings
     ]
     kind = "constant volume (Cv)" if measurement.quantity == "Cv" else "constant pressure (Cp)"
-    reasons = Counter(each for each in prepared.reasons if each is not None)
+    set_aside = measurement.set_aside or (None,) * len(prepared.reasons)
+    aside = sum(each is not None for each in set_aside)
+    reasons = Counter(
+        each for each, why in zip(prepared.reasons, set_aside, strict=True) if each is not None and why is None
+    )
     points = f"{prepared.temperature.size} fitted of {measurement.temperature.size} read"
     how = [
         f"T from {harmless(each.temperature_column)!r} in {each.temperature_unit}, heat capacity from "
@@ -101,6 +105,7 @@ def measured_rows(analysis: Analysis) -> tuple[Row, ...]:
     about += [] if sample.mass is None else [mass_words(measurement)]
     about += [] if sample.melting_point is None else [f"melting point {plain_number(sample.melting_point, 6)} K"]
     left_out = [f"{count} not fitted ({reason})" for reason, count in reasons.items()]
+    left_out += [f"{aside} set aside by line or by condition, as the repairs say"] if aside else []
     left_out += [f"{len(measurement.excluded)} rows left out at reading"] if measurement.excluded else []
     return (
         Row("sample", headline(analysis), ", ".join(about)),
@@ -306,9 +311,9 @@ def provenance_rows(analysis: Analysis) -> tuple[Row, ...]:
     provenance = analysis.provenance
     packages = ", ".join(f"{name} {version}" for name, version in provenance.packages.items())
     measurement = analysis.measurement
-    files = tuple(
-        Row("sha256", each.sha256, each.file) for each in (*measurement.readings, *measurement.addenda_readings)
-    )
+    every = (*measurement.readings, *measurement.addenda_readings)
+    read = dict.fromkeys((each.sha256, each.file) for each in every)
+    files = tuple(Row("sha256", sha256, file) for sha256, file in read)
     return (
         Row("latticefit", provenance.version, packages),
         Row("made", provenance.created, f"random seed {provenance.random_seed}"),

@@ -233,8 +233,13 @@ def _portable_sheet(analysis: Analysis, names: list[str], held: str | None, figu
     measurement = analysis.measurement
     readings = measurement.readings
     runs = tuple(
-        # The label is kept: a copy may have another name than the file had.
-        replace(reading.settings, file=f"inputs/{name}", label=reading.label)
+        # The label is kept: a copy may have another name than the file had. Runs that one file was divided into have
+        # labels of their own, and its label stands in the settings that they share.
+        replace(
+            reading.settings,
+            file=f"inputs/{name}",
+            label=reading.label if reading.settings.split_by is None else reading.settings.label,
+        )
         for reading, name in zip(readings, names, strict=False)
     )
     copies = names[len(readings) :]
@@ -244,7 +249,7 @@ def _portable_sheet(analysis: Analysis, names: list[str], held: str | None, figu
     )
     return replace(
         analysis.sheet,
-        runs=runs,
+        runs=tuple(dict.fromkeys(runs)),
         addenda=addenda,
         model=replace(analysis.sheet.model, fix_from=None if held is None else f"inputs/{held}"),
         report=replace(analysis.sheet.report, out=None, figures=figures),  # type: ignore[arg-type]

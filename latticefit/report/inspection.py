@@ -56,6 +56,7 @@ def inspection_text(measurement: Measurement) -> str:
     unit = _UNITS[measurement.basis][0]
     T, C = np.asarray(measurement.temperature), np.asarray(measurement.heat_capacity)
     order = np.argsort(T, kind="stable")
+    rows = sum(each.rows for each in measurement.readings)  # of all runs of one file
     lines = [
         harmless(reading.file),
         f"  written     {_written(reading)}",
@@ -63,7 +64,7 @@ def inspection_text(measurement: Measurement) -> str:
         f"  {measurement.quantity}          {harmless(reading.heat_capacity_column)}, in {reading.heat_capacity_unit}"
         + ("" if reading.heat_capacity_unit == unit else f", converted to {unit}"),
         f"  sigma       {harmless(measurement.sigma_text) or 'none stated; fit estimates it from the local scatter'}",
-        f"  points      {T.size} of {reading.rows} rows, {T.min():.4g} to {T.max():.4g} K",
+        f"  points      {T.size} of {rows} rows, {T.min():.4g} to {T.max():.4g} K",
         f"  spread      {_per_decade(T)}",
         f"  repeats     {_repeats(T)}",
         f"  level       {_level(measurement) or 'not judged: give --formula, or --atoms and --molar-mass'}",
