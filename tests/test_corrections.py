@@ -502,6 +502,40 @@ def test_python_and_the_command_line_take_addenda(tmp_path: Path, capsys: pytest
     assert len(json.loads(capsys.readouterr().out)["data"]["addenda"]) == 1
 
 
+def test_inspect_of_a_sheet_takes_off_what_concerns_each_file(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """Files of a sheet are shown one by one, each with its own addenda, although an entry may name runs of others."""
+    write(tmp_path, a=run_text(), b=run_text(), c=table(IN_J_K, T, AMOUNT * molar(T)), blank=blank_text())
+    runs = "".join(f'[[run]]\nfile = "{name}.csv"\n' for name in "abc")
+    sheet = '[sample]\nformula = "Al2O3"\nmass = "10 mg"\n' + runs
+    sheet += '[[addenda]]\nfile = "blank.csv"\nruns = ["a", "b"]\n'
+    (tmp_path / "sheet.toml").write_text(sheet, encoding="utf-8")
+    assert main(["inspect", str(tmp_path / "sheet.toml"), "--json"]) == 0
+    for shown in json.loads(capsys.readouterr().out)["files"]:
+        assert_allclose(shown["measurement"]["heat_capacity_J_mol_K"], molar(T), rtol=2e-3)
+
+
+def test_points_set_aside_need_no_addenda(tmp_path: Path) -> None:
+    """Masked lines may lie beyond the addenda: they are left out with the reason, as outside a window."""
+    write(tmp_path, run=run_text(), blank=blank_text(np.geomspace(2.5, 310, 50)))
+    found = read(tmp_path, BLANK, mask_lines=((3, 5), (10, 10)))
+    assert [row.line for row in found.excluded] == [3, 4, 5]
+    assert [line for line, why in zip(found.line, found.set_aside, strict=True) if why is not None] == [10]
+
+
+def test_addenda_of_some_runs_of_a_divided_file(tmp_path: Path) -> None:
+    """Runs that a column divides a file into are named by their labels."""
+    total = AMOUNT * molar(T)
+    both = np.concatenate([total + blank(T), total])
+    text = table("T (K),C (J/K),field (T)", np.tile(T, 2), both, np.repeat([0.0, 5.0], T.size))
+    write(tmp_path, run=text, blank=blank_text())
+    labels = [each.label for each in read(tmp_path, split_by="field (T)").readings]
+    assert len(labels) == 2
+    found = read(tmp_path, replace(BLANK, runs=(labels[0],)), split_by="field (T)")
+    assert_allclose(found.heat_capacity, np.tile(molar(T), 2), rtol=2e-3)
+
+
 def test_a_mass_that_converts_nothing_is_told(tmp_path: Path) -> None:
     """Beside data per mole the mass is not used: its uncertainty is no scale error, and one line says so."""
     write(tmp_path, run=MOLAR)

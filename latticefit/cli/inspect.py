@@ -63,11 +63,14 @@ def run(arguments: argparse.Namespace) -> int:
 
 def _read(sheet: Sheet, base: Path) -> list[Measurement]:
     """Read every file for itself, with the known heat capacities that concern it."""
+    from dataclasses import replace
+
     from ..reading import read_measurement
 
     found = []
     for run in sheet.runs:
         label = run.label or Path(run.file).stem
-        addenda = tuple(known for known in sheet.addenda if not known.runs or label in known.runs)
+        # named runs of other files are not there when a file is read for itself
+        addenda = tuple(replace(known, runs=()) for known in sheet.addenda if not known.runs or label in known.runs)
         found.append(read_measurement(sheet.sample, (run,), base, addenda))
     return found

@@ -78,8 +78,10 @@ def inspection_text(measurement: Measurement) -> str:
         sigma = "" if measurement.sigma is None else significant(float(measurement.sigma[i]), 2)
         lines.append(f"  {float(T[i]):>12.6g} {float(C[i]):>18.6g} {sigma:>12}")
     lines += ["", "  repairs     " + ("none" if not measurement.repairs else "")]
+    known = {each.file for each in measurement.addenda_readings}
     for each in measurement.repairs:
         where = "whole file" if each.line is None else f"line {each.line}"
+        where = f"{harmless(each.file)}, {where}" if each.file in known else where
         lines.append(f"    {where}: {harmless(each.message)}")
     return "\n".join(lines).rstrip() + "\n"
 
