@@ -12,11 +12,21 @@ from pathlib import Path
 from ._version import __version__
 from .comparing import compare
 from .deriving import derive
-from .diagnosing import diagnose
+from .diagnosing import diagnose, examine_prepared_level
+from .errors import InputError
 from .held import resolve_held
 from .preparing import prepare
 from .reading import parse_grid
-from .records import Analysis, Comparison, Measurement, NamedWarning, Provenance, Sheet
+from .records import (
+    Analysis,
+    Comparison,
+    LevelFinding,
+    Measurement,
+    NamedWarning,
+    PreparedData,
+    Provenance,
+    Sheet,
+)
 
 __all__ = ["analyse", "ranked"]
 
@@ -44,12 +54,19 @@ def analyse(
         Called with a few words as each stage begins.
     base : Path, optional
         Folder that the path of a saved result in the sheet starts from; the current one by default.
+
+    Raises
+    ------
+    InputError
+        For data or a request that cannot be fitted, a heat capacity whose level is impossible among them unless the
+        sample says `accept_level`.
     """
     tell = progress or (lambda words: None)
     settings, held = resolve_held(sheet.model, base or Path(), measurement.quantity)
     prepared = prepare(measurement)
+    level = _possible_level(prepared)
     compared = compare(prepared, settings, sheet.report.random_seed, held, tell)
-    diagnosis = diagnose(prepared, compared.fit)
+    diagnosis = diagnose(prepared, compared.fit, level)
     tell("deriving thermodynamic functions")
     grid = parse_grid(sheet.report.grid) if sheet.report.grid else None
     derived = derive(prepared, compared.fit, diagnosis.describes, grid)
@@ -63,6 +80,7 @@ def analyse(
         warnings=_gravest_first((*diagnosis.warnings, *derived.warnings)),
         comparison=compared.comparison,
         provenance=_provenance(sheet.report.random_seed, command),
+        level=level,
     )
 
 
@@ -74,7 +92,17 @@ def ranked(
 ) -> Comparison:
     """Compare the candidates of the ladder; parameters as `analyse`."""
     settings, held = resolve_held(replace(sheet.model, terms=None), base or Path(), measurement.quantity)
-    return compare(prepare(measurement), settings, sheet.report.random_seed, held, progress).comparison
+    prepared = prepare(measurement)
+    _possible_level(prepared)
+    return compare(prepared, settings, sheet.report.random_seed, held, progress).comparison
+
+
+def _possible_level(prepared: PreparedData) -> LevelFinding:
+    """What is found of the level of the points; refused where it is impossible and was not accepted (InputError)."""
+    level = examine_prepared_level(prepared)
+    if level.verdict == "impossible" and not prepared.measurement.sample_settings.accept_level:
+        raise InputError(f"{level.sentence}; or give --accept-level to fit the data as they are")
+    return level
 
 
 def _gravest_first(warnings: Iterable[NamedWarning]) -> tuple[NamedWarning, ...]:

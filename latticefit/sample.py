@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 import re
 import unicodedata
+from collections.abc import Mapping
 from dataclasses import dataclass
 from functools import lru_cache
 from typing import Final
@@ -18,6 +19,7 @@ __all__ = [
     "WrittenNumber",
     "build_sample",
     "converted_by_mass",
+    "element_counts",
     "parse_formula",
     "parse_mass",
     "sample_notes",
@@ -115,6 +117,22 @@ def _count(text: str, plain: str) -> tuple[float, float]:
     except (ParseBaseException, ValueError, KeyError, TypeError, AttributeError, RecursionError):
         # the library's own words name positions in its grammar, which help nobody
         raise InputError(f"formula {text!r} cannot be read: write it as in 'Al2O3' or 'CaSO4·2H2O'") from None
+
+
+def element_counts(text: str) -> Mapping[str, float]:
+    """Return the atoms of each element in a formula unit, by symbol (D and T apart from H).
+
+    Raises
+    ------
+    InputError
+        If it is not a formula.
+    """
+    import periodictable
+
+    counts: dict[str, float] = {}
+    for atom, count in periodictable.formula(parse_formula(text).read_as).atoms.items():
+        counts[atom.symbol] = counts.get(atom.symbol, 0.0) + float(count)
+    return counts
 
 
 def build_sample(settings: SampleSettings, fallback_name: str) -> Sample:

@@ -9,6 +9,8 @@ from ..lazy import on_first_use
 if TYPE_CHECKING:
     from .case import Case
     from .diagnosis import diagnose
+    from .level import LEVEL_IMPOSSIBLE, examine_level, examine_prepared_level
+    from .level_words import explained, level_sentence
     from .reach import (
         REACH_STOP,
         REACH_WARN,
@@ -22,6 +24,7 @@ if TYPE_CHECKING:
     from .statistics import akaike, bayes, durbin_watson, lag1_correlation, residual_statistics, runs_test
 
 __all__ = [
+    "LEVEL_IMPOSSIBLE",
     "REACH_STOP",
     "REACH_WARN",
     "RULES",
@@ -32,9 +35,13 @@ __all__ = [
     "bayes",
     "diagnose",
     "durbin_watson",
+    "examine_level",
+    "examine_prepared_level",
+    "explained",
     "find_warnings",
     "high_temperature_ratio",
     "lag1_correlation",
+    "level_sentence",
     "low_temperature_reach",
     "residual_statistics",
     "runs_test",
@@ -46,6 +53,8 @@ __getattr__ = on_first_use(
     {
         "case": ("Case",),
         "diagnosis": ("diagnose",),
+        "level": ("LEVEL_IMPOSSIBLE", "examine_level", "examine_prepared_level"),
+        "level_words": ("explained", "level_sentence"),
         "reach": (
             "REACH_STOP",
             "REACH_WARN",

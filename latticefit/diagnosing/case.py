@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from ..models import Model, harmonic_heat_capacity, heat_capacity
-from ..records import FitRecord, FloatArray, PreparedData, ResidualStatistics
+from ..records import FitRecord, FloatArray, LevelFinding, PreparedData, ResidualStatistics
 
 __all__ = ["Case"]
 
@@ -20,6 +20,7 @@ class Case:
     model: Model
     fit: FitRecord
     statistics: ResidualStatistics
+    level: LevelFinding
 
     @property
     def expected(self) -> FloatArray:

@@ -5,8 +5,9 @@ from __future__ import annotations
 import numpy as np
 
 from ..models import build_model, heat_capacity
-from ..records import Diagnosis, FitRecord, PreparedData
+from ..records import Diagnosis, FitRecord, LevelFinding, PreparedData
 from .case import Case
+from .level import examine_prepared_level
 from .rules import find_warnings
 from .statistics import residual_statistics
 from .verdict import validity_facts, verdict
@@ -14,13 +15,15 @@ from .verdict import validity_facts, verdict
 __all__ = ["diagnose"]
 
 
-def diagnose(prepared: PreparedData, fit: FitRecord) -> Diagnosis:
+def diagnose(prepared: PreparedData, fit: FitRecord, level: LevelFinding | None = None) -> Diagnosis:
     """Compare a fit with the data it was made on.
 
     Parameters
     ----------
     prepared : PreparedData
     fit : FitRecord
+    level : LevelFinding, optional
+        What was found of the level of the points before the fit; examined here where it is not given.
 
     Returns
     -------
@@ -44,5 +47,5 @@ def diagnose(prepared: PreparedData, fit: FitRecord) -> Diagnosis:
         validity=validity_facts(prepared, fit, statistics),
         describes=describes,
         verdict=sentence,
-        warnings=find_warnings(Case(prepared, model, fit, statistics)),
+        warnings=find_warnings(Case(prepared, model, fit, statistics, level or examine_prepared_level(prepared))),
     )

@@ -1,47 +1,21 @@
-"""Named warnings: how far the data reach, and whether their level is possible."""
+"""Named warnings: how far the data reach."""
 
 from __future__ import annotations
 
-from ..constants import GAS_CONSTANT
-from ..models import total_modes
 from ..records import NamedWarning
 from .case import Case
 from .reach import REACH_STOP, REACH_WARN, TOP_STOP, high_temperature_ratio, low_temperature_reach, theta_debye_two
 
 __all__ = [
-    "above_classical_limit",
     "cp_cv_from_melting_point",
     "cp_cv_missing",
     "gamma_reach",
-    "implausible_level",
-    "mode_sum",
     "reach_down",
     "reach_up",
 ]
 
-_LEVEL = 1.3  # times 3nR that no lattice reaches (common practice, no source)
-_CLASSICAL = 1.02  # times 3nR that a harmonic lattice does not pass
 _HALF = 0.5
 _COLD, _COLD_THETA = 3.0, 60.0  # K, and theta over this: where gamma can be seen
-_MODE_SUM = 0.02
-
-
-def implausible_level(case: Case) -> NamedWarning | None:
-    """The highest point is far above 3nR."""
-    if case.fit.atoms is None:
-        return None
-    top = float(case.prepared.heat_capacity[-1]) / (3 * case.fit.atoms * GAS_CONSTANT)
-    if top <= _LEVEL:
-        return None
-    return NamedWarning(
-        code="implausible-level",
-        level="stop",
-        concerns="data",
-        message=f"the heat capacity at the highest point is {top:.3g} times 3nR, which no lattice reaches",
-        found=top,
-        threshold=_LEVEL,
-        advice="check unit, mass, molar mass and formula before anything else",
-    )
 
 
 def reach_down(case: Case) -> NamedWarning | None:
@@ -80,28 +54,6 @@ def reach_up(case: Case) -> NamedWarning | None:
         found=ratio,
         threshold=TOP_STOP,
         advice="measure to higher temperatures; values above the data are extrapolated and carry no u",
-    )
-
-
-def above_classical_limit(case: Case) -> NamedWarning | None:
-    """The lattice passes 3nR where it cannot (mass, formula, an extra contribution)."""
-    if case.fit.atoms is None:
-        return None
-    limit = 3 * case.fit.atoms * GAS_CONSTANT
-    theta = theta_debye_two(case.model, case.fit)
-    cold = case.prepared.temperature < theta
-    harmonic = case.prepared.heat_capacity - case.outside_lattice
-    ratio = float(harmonic[cold].max() / limit) if cold.any() else 0.0
-    if ratio <= _CLASSICAL or float(case.prepared.heat_capacity[-1]) > _LEVEL * limit:
-        return None
-    return NamedWarning(
-        code="above-classical-limit",
-        level="warn",
-        concerns="data",
-        message=f"the lattice heat capacity reaches {ratio:.3g} times 3nR below theta_D[m=2] = {theta:.4g} K",
-        found=ratio,
-        threshold=_CLASSICAL,
-        advice="check mass, molar mass, formula and addenda; an extra contribution or Cp-Cv is the other explanation",
     )
 
 
@@ -170,22 +122,4 @@ def cp_cv_from_melting_point(case: Case) -> NamedWarning | None:
         found=last.value,
         threshold=None,
         advice="leave the melting point out and let the coefficient be fitted where the data reach above theta/2",
-    )
-
-
-def mode_sum(case: Case) -> NamedWarning | None:
-    """A free mode sum is not three per atom."""
-    if case.fit.mode_sum != "free" or case.fit.atoms is None:
-        return None
-    ratio = total_modes(case.model, case.fit.values) / (3 * case.fit.atoms)
-    if abs(ratio - 1) <= _MODE_SUM:
-        return None
-    return NamedWarning(
-        code="mode-sum",
-        level="warn",
-        concerns="modes",
-        message=f"the fitted modes add up to {ratio:.3f} times the three per atom of the formula",
-        found=ratio - 1,
-        threshold=_MODE_SUM,
-        advice="check mass, molar mass, formula, addenda and Cp-Cv; or the data end too low to show the sum",
     )

@@ -6,17 +6,17 @@ from collections.abc import Callable, Mapping
 from types import MappingProxyType
 
 from ..records import NamedWarning
-from . import correction_rules, data_rules, fit_rules, range_rules
+from . import correction_rules, data_rules, fit_rules, level_rules, range_rules
 from .case import Case
 
 __all__ = ["RULES", "find_warnings"]
 
 _RULES: dict[str, Callable[[Case], NamedWarning | None]] = {
-    "implausible-level": range_rules.implausible_level,
+    "implausible-level": level_rules.implausible_level,
     "addenda-share": correction_rules.addenda_share,
     "low-temperature-reach": range_rules.reach_down,
     "high-temperature-reach": range_rules.reach_up,
-    "above-classical-limit": range_rules.above_classical_limit,
+    "above-classical-limit": level_rules.above_classical_limit,
     "sigma-understated": data_rules.sigma_understated,
     "cp-cv-from-melting-point": range_rules.cp_cv_from_melting_point,
     "repeats-fitted-singly": data_rules.repeats,
@@ -29,7 +29,7 @@ _RULES: dict[str, Callable[[Case], NamedWarning | None]] = {
     "correlated-residuals": data_rules.correlated_residuals,
     "gamma-reach": range_rules.gamma_reach,
     "cp-cv-missing": range_rules.cp_cv_missing,
-    "mode-sum": range_rules.mode_sum,
+    "mode-sum": level_rules.mode_sum,
     "sigma-overstated": data_rules.sigma_overstated,
     "sigma-assumed": data_rules.sigma_assumed,
     "few-points": data_rules.few_points,

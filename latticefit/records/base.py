@@ -14,6 +14,7 @@ __all__ = [
     "FloatArray",
     "Frozen",
     "Level",
+    "LevelVerdict",
     "ParameterStatus",
     "Quantity",
     "ReadOnly",
@@ -30,6 +31,7 @@ SigmaKind = Literal["stated", "estimated"]
 Replicates = Literal["keep", "average", "drop-first"]
 TemperatureScale = Literal["ITS-90", "IPTS-68"]
 Level = Literal["note", "warn", "stop"]
+LevelVerdict = Literal["plausible", "suspicious", "impossible", "not judged"]
 ParameterStatus = Literal["fitted", "fixed", "tied", "at_bound", "undetermined"]
 
 Value = TypeVar("Value")

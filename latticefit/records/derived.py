@@ -8,7 +8,7 @@ from typing import Literal
 
 from .base import FloatArray, Frozen, Quantity
 from .data import Measurement, PreparedData, Sample
-from .findings import Comparison, Diagnosis, FitRecord, NamedWarning
+from .findings import Comparison, Diagnosis, FitRecord, LevelFinding, NamedWarning
 from .request import Sheet
 
 __all__ = [
@@ -141,7 +141,8 @@ class Provenance(Frozen):
 class Analysis:
     """All records of one run, from the request to the derived quantities: what reports are rendered from.
 
-    `warnings` are those of the diagnosis and of the derived quantities together, gravest first.
+    `warnings` are those of the diagnosis and of the derived quantities together, gravest first; `level` is what was
+    found of the level of the data before the fit.
     """
 
     sheet: Sheet
@@ -153,6 +154,7 @@ class Analysis:
     warnings: tuple[NamedWarning, ...]
     comparison: Comparison
     provenance: Provenance
+    level: LevelFinding | None = None
 
 
 @dataclass(frozen=True)

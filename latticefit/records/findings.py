@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Literal
 
-from .base import FloatArray, Frozen, Level, ParameterStatus
+from .base import FloatArray, Frozen, Level, LevelVerdict, ParameterStatus
 
 __all__ = [
     "Candidate",
@@ -13,6 +13,8 @@ __all__ = [
     "Diagnosis",
     "FitRecord",
     "HeldParameters",
+    "LevelExplanation",
+    "LevelFinding",
     "NamedWarning",
     "ParameterValue",
     "ResidualBand",
@@ -179,6 +181,65 @@ class Diagnosis(Frozen):
     describes: bool
     verdict: str
     warnings: tuple[NamedWarning, ...]
+
+
+@dataclass(frozen=True)
+class LevelExplanation:
+    """One slip that would explain the level of a heat capacity.
+
+    Attributes
+    ----------
+    slip : str
+        Its kind, e.g. ``"unit"``, ``"hydrate-water"``, ``"molar-mass"``.
+    words : str
+        What was slipped, e.g. ``"a molar mass without its 2 H2O"``.
+    expected : float
+        By what factor of the right one the slip changes the level; the mode sum over 3 per atom that it gives.
+    remedy : str
+        What to do where it is the reason.
+    """
+
+    slip: str
+    words: str
+    expected: float
+    remedy: str
+
+
+@dataclass(frozen=True)
+class LevelFinding:
+    """Whether the level of a heat capacity is possible for its formula, and what would explain it where it is not.
+
+    Attributes
+    ----------
+    verdict : {"plausible", "suspicious", "impossible", "not judged"}
+    reason : str or None
+        Why it cannot be judged.
+    temperature : float or None
+        The highest temperature of the points that are fitted, K.
+    ratio_to_classical : float or None
+        C there over 3nR.
+    theta_low, theta_high : float or None
+        Range of the Debye temperatures that single points have, K: of those above 50 K where there are any; None where
+        no point has one.
+    mode_sum_ratio, mode_sum_u : float or None
+        Modes that the data show by their shape, over 3 per atom, with standard uncertainty; None where the data end
+        below theta/2 or are too few.
+    explanations : tuple of LevelExplanation
+        At most three slips, the best first; empty where the level is plausible.
+    sentence : str
+        All of it in one sentence with numbers.
+    """
+
+    verdict: LevelVerdict
+    reason: str | None
+    temperature: float | None
+    ratio_to_classical: float | None
+    theta_low: float | None
+    theta_high: float | None
+    mode_sum_ratio: float | None
+    mode_sum_u: float | None
+    explanations: tuple[LevelExplanation, ...]
+    sentence: str
 
 
 @dataclass(frozen=True, eq=False)

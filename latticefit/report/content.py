@@ -15,6 +15,7 @@ from ..records import Analysis, DerivedValue, ParameterValue, ThermodynamicTable
 from ..rounding import percent_text
 from ..wording import harmless
 from .corrections import correction_words, mass_words
+from .level import level_text
 from .wording import concise, plain_number, plus_minus, shown_unit, significant
 
 __all__ = [
@@ -115,6 +116,7 @@ def measured_rows(analysis: Analysis) -> tuple[Row, ...]:
         Row("range fitted", _range(prepared.temperature[0], prepared.temperature[-1])),
         Row("sigma", prepared.sigma_text, f"the covariance is {analysis.fit.covariance_kind}"),
         *(Row(*each) for each in correction_words(measurement)),
+        *(() if analysis.level is None else (Row("level", level_text(analysis.level)),)),
     )
 
 

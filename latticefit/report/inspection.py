@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 from math import floor, log10
+from textwrap import wrap
 from typing import Any
 
 import numpy as np
 
-from ..constants import GAS_CONSTANT
+from ..diagnosing import examine_level
 from ..records import Measurement, Reading
 from ..wording import harmless
+from .level import level_is_in_doubt, level_text
 from .wording import significant
 
 __all__ = ["inspection_record", "inspection_text"]
@@ -25,6 +27,7 @@ def inspection_record(measurement: Measurement) -> dict[str, Any]:
     reading = measurement.readings[0]
     key = _UNITS[measurement.basis][1]
     sigma = None if measurement.sigma is None else measurement.sigma.tolist()
+    level = examine_level(measurement)
     return {
         "file": reading.file,
         "encoding": reading.encoding,
@@ -41,7 +44,7 @@ def inspection_record(measurement: Measurement) -> dict[str, Any]:
         "sigma": measurement.sigma_text,
         "points": int(measurement.temperature.size),
         "repairs": [{"line": each.line, "message": each.message} for each in measurement.repairs],
-        "warnings": [level] if (level := _level(measurement)) and level.startswith("implausible") else [],
+        "warnings": [level_text(level)] if level_is_in_doubt(level) else [],
         "measurement": {
             "temperature_K": measurement.temperature.tolist(),
             f"heat_capacity_{key}": measurement.heat_capacity.tolist(),
@@ -67,7 +70,7 @@ def inspection_text(measurement: Measurement) -> str:
         f"  points      {T.size} of {rows} rows, {T.min():.4g} to {T.max():.4g} K",
         f"  spread      {_per_decade(T)}",
         f"  repeats     {_repeats(T)}",
-        f"  level       {_level(measurement) or 'not judged: give --formula, or --atoms and --molar-mass'}",
+        *wrap(level_text(examine_level(measurement)), 80, initial_indent="  level       ", subsequent_indent=" " * 14),
         "",
         f"  {'T / K':>12} {measurement.quantity + ' / ' + unit:>18} {'sigma':>12}",
     ]
@@ -103,14 +106,3 @@ def _per_decade(T: np.ndarray) -> str:
 def _repeats(T: np.ndarray) -> str:
     repeated = T.size - np.unique(T).size
     return "none" if repeated == 0 else f"{repeated} points at a temperature that stands already"
-
-
-def _level(measurement: Measurement) -> str | None:
-    """The highest heat capacity against 3nR; None where atoms or molar mass are not known."""
-    atoms = measurement.sample.atoms
-    if measurement.basis != "mol" or atoms is None:
-        return None
-    top = int(np.argmax(measurement.temperature))
-    ratio = float(measurement.heat_capacity[top]) / (3 * atoms * GAS_CONSTANT)
-    text = f"{ratio:.3g} times 3nR at {measurement.temperature[top]:.4g} K"
-    return f"implausible: {text}; check unit, mass and formula" if ratio > 1.3 else text

@@ -17,6 +17,7 @@ from ..records import (
     ThermodynamicTable,
 )
 from .corrections import addenda_record
+from .level import level_record
 from .ranking import comparison_record
 
 __all__ = ["SCHEMA", "json_text", "result_record", "thermodynamic_rows"]
@@ -123,6 +124,7 @@ def _data(analysis: Analysis) -> dict[str, Any]:
         "temperature_max_K": _number(prepared.temperature[-1]),
         "sigma_kind": prepared.sigma_kind,
         "sigma_text": prepared.sigma_text,
+        "level": level_record(analysis.level),
         "repairs": [{"file": each.file, "line": each.line, "message": each.message} for each in measurement.repairs],
     }
 

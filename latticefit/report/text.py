@@ -16,6 +16,7 @@ from ..wording import harmless
 from . import content
 from .cautions import CAUTIONS
 from .content import Grid, Row
+from .level import level_is_in_doubt, level_text
 from .ranking import ranking_lines
 
 __all__ = ["WIDTH", "summary_text", "text_report"]
@@ -102,6 +103,8 @@ def summary_text(analysis: Analysis, folder: Path | None) -> str:
         *(Row(f"{each.label} at 298.15 K", each.value) for each in (keys[1], keys[2])),
         Row("residuals", f"{residuals.value}, {residuals.note}; reduced chi-square {fit_quality.value}"),
     ]
+    if analysis.level is not None and level_is_in_doubt(analysis.level):
+        rows.append(Row("level", level_text(analysis.level)))
     if analysis.warnings:
         rows.append(Row("warnings", ", ".join(f"{each.code} ({each.level})" for each in analysis.warnings)))
     if folder is not None:

@@ -1,0 +1,249 @@
+"""Whether the level of a heat capacity is possible for its formula, and which single slip would explain it if not.
+
+Three looks at it: C(Tmax) against the 3nR of Dulong and Petit (Ann. Chim. Phys. 10, 395 (1819), from memory), the
+Debye temperature that each point has, and the number of modes that the shape of the curve shows (`level_fit`).
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+from math import hypot, log
+
+import numpy as np
+from numpy.typing import NDArray
+
+from ..constants import GAS_CONSTANT
+from ..errors import InputError
+from ..functions import invert_debye
+from ..preparing import prepare
+from ..records import FloatArray, LevelExplanation, LevelFinding, LevelVerdict, Measurement, PreparedData, Sample
+from .hydrates import Slip
+from .level_fit import ModeCount, count_modes
+from .level_words import level_sentence
+from .slips import possible_slips
+from .stiff import stiff_share
+
+__all__ = ["LEVEL_IMPOSSIBLE", "examine_level", "examine_prepared_level", "explain_mode_sum"]
+
+LEVEL_IMPOSSIBLE = 1.3
+"""C(Tmax) over 3nR above which data are refused (common practice, no source)."""
+
+_LOWEST_THETA, _HIGHEST_THETA = 15.0, 2500.0  # K, of any solid (common practice, no source)
+_WARM = 50.0  # K: theta of single points is judged above
+_HOT = 400.0  # K: above, vacancies, magnetism and the way to a melting point or a transition raise C by themselves
+_HALF = 2.0  # theta over Tmax above which the modes are not counted
+_AT_QUARTER = 0.503  # C/3nR at T = theta/4 (Debye 1912): below, the level is not judged
+_COUNTED = 0.3  # C/3nR from which the modes of data that end below 50 K are counted
+_LEAST, _SURE = 0.03, 3.0  # a mode sum off by less, or by fewer standard uncertainties, is no suspicion
+_STATED_LEAST, _STATED_SURE = 0.02, 2.0  # the same where stated numbers contradict each other and explain it
+_EXPLAINS = 2.5  # standard uncertainties within which a slip explains the level
+_NEAR = 4.0  # in squares of them: slips worse than the best by more are not offered
+_MOST, _MOST_OF_A_KIND = 3, 2
+_ROUGH_TOP, _ROUGH_U = 0.4, 0.2  # Tmax/theta from which a count may still tell slips apart, with this relative u
+_SANE = 1.2  # times 3nR that a mended level may reach
+_LARGEST_U, _FEW = 0.1, 3  # relative u of a count that speaks for or against a high level; points that do
+_SPREAD = 0.3  # relative spread of theta(T) of an ordinary solid
+
+
+@dataclass(frozen=True)
+class _Level:
+    """The points against 3nR, and the count of modes over 3n."""
+
+    T: FloatArray
+    ratio: FloatArray
+    count: ModeCount | None
+    atoms: float
+
+    @property
+    def top(self) -> float:
+        return float(self.T[-1])
+
+    @property
+    def judged(self) -> NDArray[np.intp]:
+        """Positions of the points whose theta is judged: those above 50 K, or all where there are none."""
+        warm = self.T > _WARM
+        return np.flatnonzero(warm if warm.any() else np.ones_like(warm))
+
+    def theta(self, factor: float = 1.0) -> FloatArray:
+        """Debye temperature of each judged point with its level multiplied by a factor, K; NaN at or above 3nR."""
+        return np.asarray(invert_debye(factor * self.ratio[self.judged]) * self.T[self.judged])
+
+    @property
+    def mode_sum(self) -> tuple[float, float] | None:
+        """Modes over 3n and u, where the data reach theta/2."""
+        if self.count is None or self.count.theta > _HALF * self.count.top:
+            return None
+        return self.count.modes / (3 * self.atoms), self.count.u / (3 * self.atoms)
+
+    @property
+    def rough_sum(self) -> tuple[float, float] | None:
+        """The same with a generous u where they end a little lower: enough to tell slips apart."""
+        if self.mode_sum is not None or self.count is None or self.count.top < _ROUGH_TOP * self.count.theta:
+            return self.mode_sum
+        found = self.count.modes / (3 * self.atoms)
+        return found, _ROUGH_U * found
+
+
+def examine_level(measurement: Measurement) -> LevelFinding:
+    """Judge the level of the points of a measurement that would be fitted; nothing is refused here.
+
+    Parameters
+    ----------
+    measurement : Measurement
+
+    Returns
+    -------
+    LevelFinding
+        "not judged", with the reason, where atoms or amount are not known or no point is left to fit.
+    """
+    try:
+        prepared = prepare(measurement)
+    except InputError as error:
+        return _not_judged(str(error))
+    return examine_prepared_level(prepared)
+
+
+def examine_prepared_level(prepared: PreparedData) -> LevelFinding:
+    """Judge the level of the points that are fitted.
+
+    Impossible: C(Tmax) above 1.3 x 3nR (unless the mode sum is right: a solid near its melting point), or, where the
+    data reach above 50 K, the Debye temperature outside 15 to 2500 K at every point above 50 K. Suspicious: the modes
+    that the data show, counted where the data reach theta/2, miss 3 per atom by more than 3 % and 3 u; fewer are no
+    suspicion as far as stiff modes of light atoms may not be excited, unless a stated molar mass or number of atoms
+    contradicts the formula and explains it. Not judged: data that end below theta/4.
+
+    Parameters
+    ----------
+    prepared : PreparedData
+
+    Returns
+    -------
+    LevelFinding
+    """
+    measurement = prepared.measurement
+    sample = measurement.sample
+    if sample.atoms is None:
+        return _not_judged("the atoms per formula unit are not known; give --formula or --atoms")
+    T = np.asarray(prepared.temperature)
+    ratio = np.asarray(prepared.heat_capacity) / (3 * sample.atoms * GAS_CONSTANT)
+    count = count_modes(prepared) if T[-1] > _WARM or ratio[-1] > _COUNTED else None
+    level = _Level(T, ratio, count, sample.atoms)
+    slips = possible_slips(measurement, level.top)
+    verdict = _verdict(level, sample, slips)
+    explanations = _explanations(level, slips) if verdict in ("suspicious", "impossible") else ()
+    reason = f"the data end at {level.top:.4g} K, below theta/4" if verdict == "not judged" else None
+    theta = level.theta()
+    defined = theta[np.isfinite(theta)]
+    finding = LevelFinding(
+        verdict=verdict,
+        reason=reason,
+        temperature=level.top,
+        ratio_to_classical=float(ratio[-1]),
+        theta_low=float(defined.min()) if defined.size else None,
+        theta_high=float(defined.max()) if defined.size else None,
+        mode_sum_ratio=None if level.mode_sum is None else level.mode_sum[0],
+        mode_sum_u=None if level.mode_sum is None else level.mode_sum[1],
+        explanations=explanations,
+        sentence="",
+    )
+    return replace(finding, sentence=level_sentence(finding))
+
+
+def explain_mode_sum(prepared: PreparedData, ratio: float, u: float) -> tuple[LevelExplanation, ...]:
+    """Return the slips that would give a mode sum found elsewhere, over 3 per atom and with its u, the best first.
+
+    Parameters
+    ----------
+    prepared : PreparedData
+        Of a sample with known atoms.
+    ratio, u : float
+    """
+    atoms = prepared.measurement.sample.atoms or 1.0
+    T = np.asarray(prepared.temperature)
+    count = ModeCount(3 * atoms * ratio, 3 * atoms * u, 0.0, float(T[-1]))
+    level = _Level(T, np.asarray(prepared.heat_capacity) / (3 * atoms * GAS_CONSTANT), count, atoms)
+    return _explanations(level, possible_slips(prepared.measurement, level.top))
+
+
+def _not_judged(reason: str) -> LevelFinding:
+    finding = LevelFinding("not judged", reason, None, None, None, None, None, None, (), "")
+    return replace(finding, sentence=level_sentence(finding))
+
+
+# ---------------------------------------------------------------------------------------------------------- verdict
+
+
+def _verdict(level: _Level, sample: Sample, slips: Sequence[Slip]) -> LevelVerdict:
+    if _impossible(level):
+        return "impossible"
+    if _suspicious(level, sample, slips):
+        return "suspicious"
+    return "plausible" if level.ratio[-1] >= _AT_QUARTER else "not judged"
+
+
+def _impossible(level: _Level) -> bool:
+    if _too_high(level):
+        return True
+    if level.top <= _WARM:
+        return False
+    theta = level.theta()
+    return bool(np.all((theta < _LOWEST_THETA) | (theta > _HIGHEST_THETA)))
+
+
+def _too_high(level: _Level) -> bool:
+    """Whether C(Tmax) is beyond 1.3 x 3nR, for more than one odd point, and not because the solid is hot."""
+    if min(float(level.ratio[-1]), float(np.median(level.ratio[-3:]))) <= LEVEL_IMPOSSIBLE:
+        return False
+    counted = level.mode_sum
+    if counted is not None and counted[1] < _LARGEST_U:
+        return counted[0] > LEVEL_IMPOSSIBLE or (level.top <= _HOT and abs(counted[0] - 1) > _SURE * counted[1])
+    ordinary = level.ratio[(level.T > _WARM) & (level.T <= _HOT)]
+    return level.top <= _HOT or ordinary.size < _FEW or float(np.median(ordinary[-3:])) > LEVEL_IMPOSSIBLE
+
+
+def _suspicious(level: _Level, sample: Sample, slips: Sequence[Slip]) -> bool:
+    if level.mode_sum is None:
+        return False
+    found, u = level.mode_sum
+    excess = found - 1
+    deficit = 1 - stiff_share(sample, level.top) - found
+    if max(excess, deficit) > max(_LEAST, _SURE * u):
+        return True
+    # numbers that contradict each other, one of which the data bear out and the other not
+    return abs(excess) > max(_STATED_LEAST, _STATED_SURE * u) and any(
+        each.doubt == 0 and abs(found - each.expected) < _STATED_SURE * u for each in slips
+    )
+
+
+# ------------------------------------------------------------------------------------------------------ explanations
+
+
+def _explanations(level: _Level, slips: Sequence[Slip]) -> tuple[LevelExplanation, ...]:
+    """The slips that give a sane level, the best first."""
+    ranked = sorted(
+        ((cost, each) for each in slips if (cost := _cost(level, each)) is not None), key=lambda pair: pair[0]
+    )
+    kept: list[Slip] = []
+    for cost, each in ranked:
+        alike = sum(other.kind == each.kind for other in kept)
+        if cost <= ranked[0][0] + _NEAR and len(kept) < _MOST and alike < _MOST_OF_A_KIND:
+            kept.append(each)
+    return tuple(LevelExplanation(each.kind, each.words, each.expected, each.remedy) for each in kept)
+
+
+def _cost(level: _Level, slip: Slip) -> float | None:
+    """How badly a slip explains the level, in squares of standard uncertainties; None where it does not."""
+    factor = 1 / slip.expected
+    theta = level.theta(factor)
+    if factor * level.ratio[-1] > _SANE or not ((theta >= _LOWEST_THETA) & (theta <= _HIGHEST_THETA)).any():
+        return None
+    found = level.rough_sum
+    if found is not None:
+        off = log(factor * found[0]) / hypot(found[1] / found[0], 0.005)
+        return off * off + slip.doubt if abs(off) <= _EXPLAINS else None
+    # too low for a count: theta must be that of a solid at every point, and one that hardly changes is the likelier
+    known = theta[np.isfinite(theta)]
+    if known.min() < _LOWEST_THETA or known.max() > _HIGHEST_THETA or 2 * known.size < theta.size:
+        return None
+    return float(np.log(known.max() / known.min()) / _SPREAD) ** 2 + slip.doubt
