@@ -36,12 +36,14 @@ from .findings import (
     Diagnosis,
     FitRecord,
     HeldParameters,
+    LackOfFit,
     NamedWarning,
     ParameterValue,
     ResidualBand,
     ResidualStatistics,
     ValidityFact,
 )
+from .noticed import Feature, FeatureKind, RunOverlap
 from .request import AddendaSettings, ModelSettings, ReportSettings, RunSettings, SampleSettings, Sheet
 
 __all__ = [
@@ -55,10 +57,13 @@ __all__ = [
     "Diagnosis",
     "EnergyDifference",
     "ExcludedRow",
+    "Feature",
+    "FeatureKind",
     "FitRecord",
     "FloatArray",
     "Frozen",
     "HeldParameters",
+    "LackOfFit",
     "Level",
     "Measurement",
     "ModelSettings",
@@ -76,6 +81,7 @@ __all__ = [
     "ReportSettings",
     "ResidualBand",
     "ResidualStatistics",
+    "RunOverlap",
     "RunSettings",
     "Sample",
     "SampleSettings",
