@@ -138,6 +138,12 @@ def _refuse_unlike(parts: Sequence[RunData]) -> None:
             raise InputError(f"{pair} are in {units}; give --formula or --molar-mass (and --mass) to join them")
         if (part.sigma is None) != (first.sigma is None):
             silent = part if part.sigma is None else first
+            word = silent.reading.settings.sigma
+            if word is not None:
+                raise InputError(
+                    f"{pair}: one states an uncertainty and that of the other is to be estimated from {word}; state "
+                    f"one for {quoted(silent.reading.label)} too, or give both --sigma {word}"
+                )
             raise InputError(f"{pair}: only one states an uncertainty; give {quoted(silent.reading.label)} a --sigma")
 
 

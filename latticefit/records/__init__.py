@@ -37,6 +37,7 @@ from .findings import (
     Diagnosis,
     FitRecord,
     HeldParameters,
+    LackOfFit,
     LevelExplanation,
     LevelFinding,
     NamedWarning,
@@ -45,6 +46,7 @@ from .findings import (
     ResidualStatistics,
     ValidityFact,
 )
+from .noticed import Feature, FeatureKind, RunOverlap
 from .request import AddendaSettings, ModelSettings, ReportSettings, RunSettings, SampleSettings, Sheet
 
 __all__ = [
@@ -59,10 +61,13 @@ __all__ = [
     "Diagnosis",
     "EnergyDifference",
     "ExcludedRow",
+    "Feature",
+    "FeatureKind",
     "FitRecord",
     "FloatArray",
     "Frozen",
     "HeldParameters",
+    "LackOfFit",
     "Level",
     "LevelExplanation",
     "LevelFinding",
@@ -83,6 +88,7 @@ __all__ = [
     "ReportSettings",
     "ResidualBand",
     "ResidualStatistics",
+    "RunOverlap",
     "RunSettings",
     "Sample",
     "SampleSettings",

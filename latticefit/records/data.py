@@ -10,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from .base import Basis, FloatArray, Frozen, Quantity, SigmaKind
+from .noticed import RunOverlap
 from .request import AddendaSettings, RunSettings, SampleSettings
 
 __all__ = ["AddendaShare", "ExcludedRow", "Measurement", "PreparedData", "Reading", "Repair", "Sample"]
@@ -47,7 +48,10 @@ class Repair:
 
 @dataclass(frozen=True)
 class ExcludedRow:
-    """A row that the reader could not use; values are NaN where unreadable. `run` is the index of its source."""
+    """A row that the reader could not use; values are NaN where unreadable. `run` is the index of its source.
+
+    Points that were averaged stand here too; `averaged_into` is then the position of their mean in the measurement.
+    """
 
     run: int
     line: int
@@ -55,6 +59,7 @@ class ExcludedRow:
     heat_capacity: float
     sigma: float
     reason: str
+    averaged_into: int | None = None
 
 
 @dataclass(frozen=True)
@@ -186,6 +191,10 @@ class PreparedData(Frozen):
         The sigma model in force, in words.
     sigma_assumed : bool
         True where nothing was stated and nothing could be estimated: only the relative sizes of sigma mean anything.
+    flags : tuple of (str or None), length of the measurement or 0
+        How far a fitted point lies from its neighbours, where that is too far for scatter; None for the others.
+    overlaps : tuple of RunOverlap
+        Every pair of runs with a common range.
     """
 
     measurement: Measurement
@@ -198,3 +207,5 @@ class PreparedData(Frozen):
     sigma_kind: SigmaKind
     sigma_text: str
     sigma_assumed: bool = False
+    flags: tuple[str | None, ...] = ()
+    overlaps: tuple[RunOverlap, ...] = ()
