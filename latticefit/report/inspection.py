@@ -30,11 +30,28 @@ _LABEL = 14
 
 def inspection_record(measurement: Measurement) -> dict[str, Any]:
     """Return what was read from the one file of a measurement, as in the contract of ``inspect --json``."""
-    reading = measurement.readings[0]
-    key = _UNITS[measurement.basis][1]
-    sigma = None if measurement.sigma is None else measurement.sigma.tolist()
     found = examine(measurement)
-    aside = measurement.set_aside or (None,) * measurement.run.size
+    return {
+        **_how(measurement),
+        "points": int(measurement.temperature.size),
+        "rows_left_out": [{"line": each.line, "reason": each.reason} for each in measurement.excluded],
+        "repairs": [{"file": each.file, "line": each.line, "message": each.message} for each in measurement.repairs],
+        "warnings": _warnings(measurement, found),
+        "decades": [
+            {"low_K": each.low, "high_K": each.high, "points": each.points, "gaps_K": [list(gap) for gap in each.gaps]}
+            for each in found.decades
+        ],
+        "repeats": {"sets": found.repeated_sets, "points": found.repeated_points},
+        "scatter_percent": None if found.scatter is None else 100 * found.scatter,
+        "features": [_feature_record(each) for each in found.features],
+        "level": level_record(found.level),
+        "measurement": _arrays(measurement),
+    }
+
+
+def _how(measurement: Measurement) -> dict[str, Any]:
+    """How the file was read."""
+    reading = measurement.readings[0]
     return {
         "file": reading.file,
         "encoding": reading.encoding,
@@ -50,26 +67,18 @@ def inspection_record(measurement: Measurement) -> dict[str, Any]:
         "quantity": measurement.quantity,
         "sigma": measurement.sigma_text,
         "runs": [each.label for each in measurement.readings],
-        "points": int(measurement.temperature.size),
-        "rows_left_out": [{"line": each.line, "reason": each.reason} for each in measurement.excluded],
-        "repairs": [{"file": each.file, "line": each.line, "message": each.message} for each in measurement.repairs],
-        "warnings": _warnings(measurement, found),
-        "decades": [
-            {"low_K": each.low, "high_K": each.high, "points": each.points, "gaps_K": [list(gap) for gap in each.gaps]}
-            for each in found.decades
-        ],
-        "repeats": {"sets": found.repeated_sets, "points": found.repeated_points},
-        "scatter_percent": None if found.scatter is None else 100 * found.scatter,
-        "features": [_feature_record(each) for each in found.features],
-        "level": level_record(found.level),
-        "measurement": {
-            "temperature_K": measurement.temperature.tolist(),
-            f"heat_capacity_{key}": measurement.heat_capacity.tolist(),
-            f"sigma_{key}": sigma,
-            "run": [measurement.readings[i].label for i in measurement.run.tolist()],
-            "line": measurement.line.tolist(),
-            "set_aside": list(aside),
-        },
+    }
+
+
+def _arrays(measurement: Measurement) -> dict[str, Any]:
+    key = _UNITS[measurement.basis][1]
+    return {
+        "temperature_K": measurement.temperature.tolist(),
+        f"heat_capacity_{key}": measurement.heat_capacity.tolist(),
+        f"sigma_{key}": None if measurement.sigma is None else measurement.sigma.tolist(),
+        "run": [measurement.readings[i].label for i in measurement.run.tolist()],
+        "line": measurement.line.tolist(),
+        "set_aside": list(measurement.set_aside or (None,) * measurement.run.size),
     }
 
 
