@@ -6,7 +6,7 @@ from collections.abc import Callable, Mapping
 from types import MappingProxyType
 
 from ..records import NamedWarning
-from . import data_rules, fit_rules, range_rules
+from . import data_rules, fit_rules, point_rules, range_rules
 from .case import Case
 
 __all__ = ["RULES", "find_warnings"]
@@ -19,8 +19,12 @@ _RULES: dict[str, Callable[[Case], NamedWarning | None]] = {
     "sigma-understated": data_rules.sigma_understated,
     "cp-cv-from-melting-point": range_rules.cp_cv_from_melting_point,
     "repeats-fitted-singly": data_rules.repeats,
+    "replicate-spread": point_rules.replicate_spread,
+    "suspected-feature": point_rules.suspected_feature,
+    "run-overlap": point_rules.run_overlap,
     "runs-differ": data_rules.runs_differ,
     "model-misfit": fit_rules.model_misfit,
+    "lack-of-fit": point_rules.lack_of_fit,
     "undetermined-parameters": fit_rules.undetermined_parameters,
     "parameter-at-bound": fit_rules.parameter_at_bound,
     "not-unique": fit_rules.not_unique,
@@ -32,6 +36,7 @@ _RULES: dict[str, Callable[[Case], NamedWarning | None]] = {
     "sigma-overstated": data_rules.sigma_overstated,
     "sigma-assumed": data_rules.sigma_assumed,
     "few-points": data_rules.few_points,
+    "outliers": point_rules.outliers,
 }
 
 RULES: Mapping[str, Callable[[Case], NamedWarning | None]] = MappingProxyType(_RULES)

@@ -113,7 +113,7 @@ def _symbols(text: str) -> Markup:
 
 
 def _first_screen(analysis: Analysis) -> dict[str, Any]:
-    _, _, quantity, points, fit_range, _ = content.measured_rows(analysis)
+    quantity, points, fit_range = content.measured_rows(analysis)[2:5]
     return {
         "headline": content.headline(analysis),
         "under": f"{quantity.value}; {points.value}, {fit_range.value}; model {content.model_rows(analysis)[0].value}",
