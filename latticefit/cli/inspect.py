@@ -43,7 +43,8 @@ def parser() -> CommandParser:
 
 def run(arguments: argparse.Namespace) -> int:
     """Print what was read from each file."""
-    from ..report.inspection import inspection_record, inspection_text, overlap_record, overlap_text
+    from ..report.inspection import inspection_record, inspection_text, overlap_text
+    from ..report.noticed import overlap_record
     from ..report.result import json_text
     from ..report.sheet_file import recognised_sheet, save_sheet
 

@@ -62,7 +62,8 @@ def add_column_options(parser: CommandParser) -> None:
     group.add_argument(
         "--sigma",
         metavar="COLUMN|TEXT",
-        help="a column, or '0.5%%', '0.02 mJ/(mol K) + 0.3%%', '1%% below 100 K, 0.3%% above', '1 J/(mol K)'",
+        help="a column, or '0.5%%', '0.02 mJ/(mol K) + 0.3%%', '1%% below 100 K, 0.3%% above', '1 J/(mol K)', or "
+        "scatter or replicates to estimate it",
     )
     group.add_argument("--coverage-factor", metavar="K", help="k of the stated uncertainties, where they are U")
     group.add_argument("--temperature-scale", metavar="SCALE", help="ITS-90, or IPTS-68 to convert T and Cp from it")

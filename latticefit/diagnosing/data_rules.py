@@ -111,7 +111,7 @@ def repeats(case: Case) -> NamedWarning | None:
         ),
         found=float(max(sizes)),
         threshold=1.0,
-        advice="average each set into one point before the fit",
+        advice="average each set into one point before the fit: --replicates average",
     )
 
 

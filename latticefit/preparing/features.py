@@ -12,11 +12,13 @@ from ..records import Feature, FloatArray
 from .lattice_trend import lattice_functions, lattice_trend, non_negative
 from .scatter import repeat_sets
 
-__all__ = ["suspected_features"]
+__all__ = ["SIGNIFICANT", "suspected_features"]
+
+SIGNIFICANT: Final = 4.7
+"""Standard uncertainties from which a peak or a step is suspected."""
 
 _FEWEST: Final = 20  # points or sets below which a smooth curve can follow a feature
 _MOST: Final = 1000  # more points are averaged in blocks
-_SIGNIFICANT: Final = 4.7  # standard uncertainties from which a peak or a step is suspected
 _LEAST_SIZE: Final = 0.015  # of the heat capacity: what smoothing, joins and calibration do to real tables
 _LEAST_SCATTER: Final = 1e-3  # relative: no measurement follows a lattice more closely over a wide range
 _PEAK: Final = 3  # adjacent points that make a peak; fewer are glitches
@@ -213,7 +215,7 @@ def _strongest(explained: _Explained, points: _Points, kept: NDArray[np.bool_]) 
     k = int(np.argmax(np.abs(pull)))
     tried.append(_Found("step", int(place[k]), int(place[k + 1]), 2, float(amount[k]), abs(float(pull[k]))))
     best = max(tried, key=lambda each: each.significance)
-    return best if best.significance > _SIGNIFICANT else None
+    return best if best.significance > SIGNIFICANT else None
 
 
 def _believed(found: list[_Found], explained: _Explained, points: _Points, kept: NDArray[np.bool_]) -> list[_Found]:
@@ -223,7 +225,7 @@ def _believed(found: list[_Found], explained: _Explained, points: _Points, kept:
         elsewhere = pulls.steps()[0] if each.kind == "step" else pulls.peaks(each.width)[0]
         common = max(1.0, _NORMAL_MEDIAN * float(np.median(np.abs(elsewhere))))
         weighed = replace(each, significance=each.significance / common)
-        if weighed.significance > _SIGNIFICANT:
+        if weighed.significance > SIGNIFICANT:
             believed.append(weighed)
     return believed
 

@@ -15,9 +15,10 @@ from ..rounding import percent_text
 from ..wording import harmless
 from .corrections import correction_words
 from .level import level_is_in_doubt, level_record, level_text
+from .noticed import overlap_words
 from .wording import significant
 
-__all__ = ["inspection_record", "inspection_text", "overlap_record", "overlap_text"]
+__all__ = ["inspection_record", "inspection_text", "overlap_text"]
 
 _UNITS = {"mol": ("J/(mol K)", "J_mol_K"), "gram": ("J/(g K)", "J_g_K"), "sample": ("J/K", "J_K")}
 _DELIMITERS = {"comma": ",", "semicolon": ";", "tab": "\t", "blank": " "}
@@ -240,35 +241,9 @@ def _repairs(measurement: Measurement) -> list[str]:
     return [*lines, *([f"    and {more} more (--json lists all)"] if more > 0 else [])]
 
 
-def overlap_text(overlaps: Sequence[RunOverlap]) -> str:
+def overlap_text(overlaps: tuple[RunOverlap, ...]) -> str:
     """Return how runs compare where they overlap, a line each."""
     lines = []
-    for each in overlaps:
-        off = 100 * (each.ratio - 1)
-        words = (
-            f"{harmless(each.first)} over {harmless(each.second)}: {each.ratio:.4f}({_last_digits(each.u)}) "
-            f"({off:+.2f} %), {each.temperature_low:.4g}-{each.temperature_high:.4g} K, {each.points} temperatures"
-        )
-        lines += _entry("overlap", words)
+    for label, words, remark in overlap_words(overlaps):
+        lines += _entry(label, harmless(_with_remark(words, remark)))
     return "\n".join(lines) + ("\n" if lines else "")
-
-
-def _last_digits(u: float) -> str:
-    """Digits of an uncertainty in the fourth decimal."""
-    return f"{max(round(u * 1e4), 1)}"
-
-
-def overlap_record(overlaps: Sequence[RunOverlap]) -> list[dict[str, Any]]:
-    """Return the same as plain values."""
-    return [
-        {
-            "first": each.first,
-            "second": each.second,
-            "ratio": each.ratio,
-            "ratio_u": each.u,
-            "low_K": each.temperature_low,
-            "high_K": each.temperature_high,
-            "points": each.points,
-        }
-        for each in overlaps
-    ]

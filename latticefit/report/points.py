@@ -31,6 +31,8 @@ class MeasuredPoints(Frozen):
         Whether the point is fitted.
     reasons : tuple of (str or None)
         Why a point is not fitted.
+    flags : tuple of (str or None)
+        How far a point lies from its neighbours, where that is too far for scatter.
     """
 
     temperature: FloatArray
@@ -44,6 +46,7 @@ class MeasuredPoints(Frozen):
     line: NDArray[np.intp]
     used: NDArray[np.bool_]
     reasons: tuple[str | None, ...]
+    flags: tuple[str | None, ...]
 
 
 def measured_points(analysis: Analysis) -> MeasuredPoints:
@@ -80,4 +83,5 @@ def measured_points(analysis: Analysis) -> MeasuredPoints:
         line=measurement.line,
         used=used,
         reasons=prepared.reasons,
+        flags=prepared.flags or (None,) * residual.size,
     )

@@ -14,6 +14,7 @@ from .result import thermodynamic_rows
 
 __all__ = ["residual_rows", "residuals_csv", "table_csv"]
 
+_LEFT_OUT, _AVERAGED = "the row was left out at reading", "the mean of its set has one"
 _FORMULA_MARKS = ("=", "+", "-", "@")
 
 
@@ -58,6 +59,7 @@ def _measured_rows(analysis: Analysis) -> list[tuple[int, dict[str, Any]]]:
             "residual_normalised": _known(points.residual_normalised[i]),
             "used": "yes" if points.used[i] else "no",
             "reason": points.reasons[i],
+            "flag": points.flags[i],
             "theta_debye_K": _known(theta.theta[i]),
             "theta_debye_u_K": _known(theta.u[i]),
             "theta_debye_reason": theta.reasons[i],
@@ -82,9 +84,10 @@ def _excluded_rows(analysis: Analysis) -> list[tuple[int, dict[str, Any]]]:
             "residual_normalised": None,
             "used": "no",
             "reason": each.reason,
+            "flag": None,
             "theta_debye_K": None,
             "theta_debye_u_K": None,
-            "theta_debye_reason": "the row was left out at reading",
+            "theta_debye_reason": _LEFT_OUT if each.averaged_into is None else _AVERAGED,
         }
         for each in excluded
     ]

@@ -12,7 +12,7 @@ from matplotlib.lines import Line2D
 
 from ...records import Analysis
 from ...rounding import percent_text
-from ..points import measured_points
+from ..points import MeasuredPoints, measured_points
 from ..wording import plain_number
 from .drawing import PointArtists, draw_points, largest, mark_beyond
 from .report_figure import ReportFigure
@@ -32,6 +32,7 @@ class ResidualArtists:
     points: PointArtists
     band: PolyCollection
     zero: Line2D
+    flagged: Line2D | None
     beyond: Line2D | None
 
 
@@ -52,9 +53,30 @@ def plot_residuals(axes: Axes, analysis: Analysis) -> ResidualArtists:
     drawn = draw_points(axes, analysis, points, points.residual_percent, None)
     end = min(_LARGEST_PERCENT, 1.18 * max(largest(np.abs(points.residual_percent[points.used])), float(np.min(width))))
     axes.set_ylim(-end, end)
+    flagged = _ring_flagged(axes, points)
     beyond = mark_beyond(axes, points, points.residual_percent)
     axes.set_ylabel("residual / %")
-    return ResidualArtists(axes, drawn, band, zero, beyond)
+    return ResidualArtists(axes, drawn, band, zero, flagged, beyond)
+
+
+def _ring_flagged(axes: Axes, points: MeasuredPoints) -> Line2D | None:
+    """Draw a ring around every point that lies too far from its neighbours; None where there is none."""
+    chosen = np.array([flag is not None for flag in points.flags])
+    if not chosen.any():
+        return None
+    (line,) = axes.plot(
+        points.temperature[chosen],
+        points.residual_percent[chosen],
+        linestyle="none",
+        marker="o",
+        markersize=7.0,
+        markerfacecolor="none",
+        markeredgecolor="black",
+        markeredgewidth=0.7,
+        zorder=3.5,
+        label="far from neighbours",
+    )
+    return line
 
 
 def draw(figure: Figure, analysis: Analysis) -> ResidualArtists:
