@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -11,9 +12,32 @@ from scipy.stats import f as f_distribution
 from ..preparing.scatter import repeat_sets, spread_of_sets
 from ..records import FitRecord, FloatArray, LackOfFit, PreparedData
 
-__all__ = ["lack_of_fit"]
+__all__ = ["FirstOfSets", "first_of_sets", "lack_of_fit"]
 
 _FEWEST_FREEDOM: Final = 3
+_FEWEST_SETS: Final = 5
+
+
+@dataclass(frozen=True)
+class FirstOfSets:
+    """How much the first point of a set, in file order, lies above the others: mean over the sets, and its u."""
+
+    mean: float
+    u: float
+
+
+def first_of_sets(prepared: PreparedData) -> FirstOfSets | None:
+    """Compare the first point of each set of repeats with the mean of the others; None below five sets."""
+    sets, _ = _numbered(prepared)
+    C, differences = np.asarray(prepared.heat_capacity), []
+    for number in np.flatnonzero(np.bincount(sets) > 1):
+        members = np.flatnonzero(sets == number)
+        first = members[np.argmin(prepared.index[members])]
+        others = C[members[members != first]]
+        differences.append(float(C[first] / others.mean() - 1))
+    if len(differences) < _FEWEST_SETS:
+        return None
+    return FirstOfSets(float(np.mean(differences)), float(np.std(differences, ddof=1) / len(differences) ** 0.5))
 
 
 def lack_of_fit(prepared: PreparedData, fit: FitRecord, residual: FloatArray) -> LackOfFit | None:

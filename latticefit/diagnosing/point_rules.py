@@ -37,6 +37,7 @@ def outliers(case: Case) -> NamedWarning | None:
     ]
     more = f"; and {len(words) - _SHOWN} more (column flag of residuals.csv)" if len(words) > _SHOWN else ""
     lines = " ".join(f"--mask-lines {measurement.line[i]}" for i, _ in flagged[:_SHOWN])
+    lines = "mask_lines of its run in a sheet" if several else lines
     return NamedWarning(
         code="outliers",
         level="note",

@@ -10,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from ..records import FloatArray
+from .lattice_trend import lattice_trend
 
 __all__ = [
     "FEWEST_POINTS",
@@ -53,7 +54,7 @@ class Spread:
 
     `squares` is the sum of squared relative deviations from the means of `sets` sets, slope in T removed, with
     `freedom` degrees of freedom; `size` the mean number of points of a set. `between` is the local scatter of the
-    means, None where it cannot be estimated.
+    means about a smooth curve, None where it cannot be estimated.
     """
 
     squares: float
@@ -89,10 +90,8 @@ def repeat_sets(temperature: FloatArray, asked: bool = False) -> NDArray[np.intp
     """
     steps = np.diff(np.log(temperature))
     inside = steps < math.log(_REPEAT)
-    if not inside.any() or inside.all():
-        return None
     inside = _without_chains(steps, inside)
-    if not inside.any() or (not asked and inside.sum() < _SHARE * steps.size):
+    if not inside.any() or inside.all() or (not asked and inside.sum() < _SHARE * steps.size):
         return None
     if np.median(steps[~inside]) < _APART * max(float(np.median(steps[inside])), 1e-12):
         return None
@@ -136,11 +135,19 @@ def spread_of_sets(
         squares, freedom = squares + float(deviation @ deviation), freedom + int(T.size - count.size)
         points, sets = points + int(count[count > 1].sum()), sets + int((count > 1).sum())
         if mean_t.size >= FEWEST_POINTS and neighbour_span(mean_t) <= WIDEST_SPAN:
-            between.append((mean_t.size, local_scatter(mean_t, mean_c)))
+            between.append((mean_t.size, _scatter_of_means(mean_t, mean_c)))
     known = [(count, each) for count, each in between if each is not None]
     total = sum(count for count, _ in known)
     pooled = math.sqrt(sum(count * each**2 for count, each in known) / total) if known else None
     return Spread(squares, freedom, sets, points / sets, pooled) if freedom else None
+
+
+def _scatter_of_means(temperature: FloatArray, heat_capacity: FloatArray) -> float | None:
+    """Return the local scatter of means of sets: few and far apart, so that their curve is taken out first."""
+    trend = lattice_trend(temperature, heat_capacity)
+    scatter = local_scatter(temperature, heat_capacity / trend.at(temperature))
+    freedom = max(temperature.size - trend.functions, 1) / temperature.size
+    return None if scatter is None else scatter / math.sqrt(freedom)
 
 
 def _set_means(

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from matplotlib.axes import Axes
@@ -32,8 +32,8 @@ class ResidualArtists:
     points: PointArtists
     band: PolyCollection
     zero: Line2D
-    flagged: Line2D | None
     beyond: Line2D | None
+    flagged: Line2D | None = None
 
 
 def plot_residuals(axes: Axes, analysis: Analysis) -> ResidualArtists:
@@ -53,10 +53,9 @@ def plot_residuals(axes: Axes, analysis: Analysis) -> ResidualArtists:
     drawn = draw_points(axes, analysis, points, points.residual_percent, None)
     end = min(_LARGEST_PERCENT, 1.18 * max(largest(np.abs(points.residual_percent[points.used])), float(np.min(width))))
     axes.set_ylim(-end, end)
-    flagged = _ring_flagged(axes, points)
     beyond = mark_beyond(axes, points, points.residual_percent)
     axes.set_ylabel("residual / %")
-    return ResidualArtists(axes, drawn, band, zero, flagged, beyond)
+    return ResidualArtists(axes, drawn, band, zero, beyond)
 
 
 def _ring_flagged(axes: Axes, points: MeasuredPoints) -> Line2D | None:
@@ -80,9 +79,9 @@ def _ring_flagged(axes: Axes, points: MeasuredPoints) -> Line2D | None:
 
 
 def draw(figure: Figure, analysis: Analysis) -> ResidualArtists:
-    """Draw percent residuals against the logarithm of T, with the +-sigma of the points."""
+    """Draw percent residuals against the logarithm of T, with the +-sigma of the points and rings around outliers."""
     axes = figure.add_subplot()
-    artists = plot_residuals(axes, analysis)
+    artists = replace(plot_residuals(axes, analysis), flagged=_ring_flagged(axes, measured_points(analysis)))
     logarithmic_temperature(axes, analysis.prepared.measurement.temperature)
     axes.set_xlabel(temperature_label())
     legend_above(figure, axes)
