@@ -48,6 +48,7 @@ def analyse(
     sheet : Sheet
         The whole request; its runs have been read into `measurement`.
     measurement : Measurement
+        The analysis holds it with its repeats averaged where a run asks for it.
     command : str
         What was typed, for the provenance.
     progress : callable, optional
@@ -72,7 +73,7 @@ def analyse(
     derived = derive(prepared, compared.fit, diagnosis.describes, grid)
     return Analysis(
         sheet=replace(sheet, model=replace(sheet.model, fix_from=settings.fix_from)),
-        measurement=measurement,
+        measurement=prepared.measurement,
         prepared=prepared,
         fit=compared.fit,
         diagnosis=diagnosis,

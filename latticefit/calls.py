@@ -77,7 +77,8 @@ def read(
     temperature, heat_capacity : str or int
         Column: a header, or a number counted from 1; recognised when left out.
     sigma : str or int
-        A column, or a text such as ``"1% below 100 K, 0.3% above"``.
+        A column, a text such as ``"1% below 100 K, 0.3% above"``, or the word "scatter" or "replicates", which leaves
+        it to be estimated from the data.
     coverage_factor : float
         k of the stated uncertainties; 1 when left out.
     temperature_unit, heat_capacity_unit : str

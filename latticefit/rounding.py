@@ -5,11 +5,13 @@ from __future__ import annotations
 import math
 from decimal import ROUND_HALF_EVEN, Context, Decimal
 
-__all__ = ["format_value", "percent_text", "round_to_uncertainty"]
+__all__ = ["format_value", "percent_range", "percent_text", "round_to_uncertainty"]
 
 _PLAIN_FIGURES = 6  # of a value without a usable uncertainty
 _DOUBLE_FIGURES = 15  # decimal figures that a double holds
 _CONTEXT = Context(prec=1000, Emin=-2000, Emax=2000)  # room for any two doubles side by side
+
+_SMALLEST_PART = 1e-5  # 0.001 %: less is rounding
 
 
 def percent_text(percent: float) -> str:
@@ -20,6 +22,15 @@ def percent_text(percent: float) -> str:
     if size == 0:
         return "0 %"
     return f"{_to_place(size, _two_figure_place(abs(size))):f} %"
+
+
+def percent_range(low: float, high: float) -> str:
+    """Return two parts of a whole as percentages to two figures: ``"12 to 71 %"``, ``"below 0.001 %"``."""
+    if high < _SMALLEST_PART:
+        return "below 0.001 %"
+    low = 0.0 if low < _SMALLEST_PART else low
+    first, last = percent_text(100 * low), percent_text(100 * high)
+    return last if first == last else f"{first.removesuffix(' %')} to {last}"
 
 
 def round_to_uncertainty(value: float, u: float | None) -> tuple[str, str]:

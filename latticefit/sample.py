@@ -8,12 +8,23 @@ import unicodedata
 from collections.abc import Mapping
 from dataclasses import dataclass
 from functools import lru_cache
+from typing import Final
 
 from .errors import InputError
-from .records import Sample, SampleSettings
-from .units import parse_quantity
+from .records import Measurement, Sample, SampleSettings
+from .units import heat_capacity_unit, parse_quantity
 
-__all__ = ["Formula", "build_sample", "element_counts", "parse_formula", "sample_notes"]
+__all__ = [
+    "Formula",
+    "WrittenNumber",
+    "build_sample",
+    "converted_by_mass",
+    "element_counts",
+    "parse_formula",
+    "parse_mass",
+    "sample_notes",
+    "written_number",
+]
 
 _LONGEST_FORMULA = 200
 _NOTED_DIFFERENCE = 1e-3  # rounding of a molar mass is below 0.1 %
@@ -130,8 +141,9 @@ def build_sample(settings: SampleSettings, fallback_name: str) -> Sample:
     Parameters
     ----------
     settings : SampleSettings
-        Formula, and quantities with unit as text. An explicit number of atoms or molar mass stands above the formula
-        (an enriched or non-stoichiometric sample); `sample_notes` lists where they differ.
+        Formula, and quantities with unit as text, the mass also with its uncertainty. An explicit number of atoms or
+        molar mass stands above the formula (an enriched or non-stoichiometric sample); `sample_notes` lists where
+        they differ.
     fallback_name : str
         The name of a sample that has none.
 
@@ -147,24 +159,93 @@ def build_sample(settings: SampleSettings, fallback_name: str) -> Sample:
     if formula is not None:
         atoms = formula.atoms if atoms is None else atoms
         molar_mass = formula.molar_mass if molar_mass is None else molar_mass
+    mass, mass_u = (None, None) if settings.mass is None else parse_mass(settings.mass)
     return Sample(
         name=settings.name or fallback_name,
         formula=None if formula is None else formula.text,
         atoms=None if atoms is None else float(atoms),
         molar_mass=molar_mass,
-        mass=_positive(settings.mass, "kg", "mass"),
+        mass=mass,
         melting_point=_positive(settings.melting_point, "K", "melting point"),
         insulator=settings.insulator,
+        mass_u=mass_u,
     )
 
 
 def _positive(text: str | None, unit: str, name: str) -> float | None:
     if text is None:
         return None
-    value = parse_quantity(text, unit, name)  # type: ignore[arg-type]
+    return _above_zero(parse_quantity(text, unit, name), text, unit, name)  # type: ignore[arg-type]
+
+
+def _above_zero(value: float, text: str, unit: str, name: str) -> float:
     if value <= 0:
         raise InputError(f"{name} {text!r} must be above {'0 K' if unit == 'K' else '0'}")
     return value
+
+
+@dataclass(frozen=True)
+class WrittenNumber:
+    """A number as written: its value, the uncertainty written with it, and what follows."""
+
+    value: float
+    uncertainty: float
+    rest: str
+
+
+_PLAIN: Final = r"(?:\d+\.?\d*|\.\d+)"
+_SIGN: Final = r"\s*(?:±|\+/-|\+-)\s*"
+_WITH_UNCERTAINTY: Final = tuple(
+    re.compile(pattern, re.ASCII)
+    for pattern in (
+        rf"(?P<value>{_PLAIN})\((?P<digits>{_PLAIN})\)(?P<power>[eE][+-]?\d{{1,3}})?(?P<rest>.*)",
+        rf"(?P<open>\()?\s*(?P<value>{_PLAIN}){_SIGN}(?P<u>{_PLAIN})\s*(?(open)\))(?P<power>(?(open)(?:[eE][+-]?\d{{1,3}})?))"
+        rf"(?P<rest>(?!\d).*)",
+        rf"(?P<value>{_PLAIN})\s*(?P<rest>[^\d\s].*?){_SIGN}(?P<u>{_PLAIN})\s*(?:(?P=rest)|(?P<percent>%))",
+    )
+)
+
+
+def written_number(text: str) -> WrittenNumber | None:
+    """Read a number with an uncertainty: ``12.3(2) mg``, ``12.3 ± 0.2 mg``, ``(12.3 ± 0.2) mg``, ``12.3 mg ± 1 %``.
+
+    Digits in brackets count from the last decimal of the number. Returns None where no uncertainty is written.
+    """
+    for pattern in _WITH_UNCERTAINTY:
+        match = pattern.fullmatch(text.strip())
+        if match is None:
+            continue
+        found = match.groupdict()
+        value, power = found["value"], found.get("power") or ""
+        if found.get("digits"):
+            last = 0 if "." in found["digits"] else -len(value.partition(".")[2])
+            u = float(f"{found['digits']}e{last + int(power[1:] or 0)}")
+        else:
+            u = float(f"{found['u']}{power}") * (float(value) / 100 if found.get("percent") else 1.0)
+        return WrittenNumber(float(f"{value}{power}"), u, found["rest"].strip())
+    return None
+
+
+def parse_mass(text: str, name: str = "mass") -> tuple[float, float | None]:
+    """Read a mass with the standard uncertainty that may be written with it, as `written_number` reads it.
+
+    Returns
+    -------
+    mass, u : float, float or None
+        kg; u is None where none is written.
+
+    Raises
+    ------
+    InputError
+        If it cannot be read or is not above 0, or its uncertainty is not above 0 and below the mass.
+    """
+    number = written_number(text)
+    if number is None:
+        return _above_zero(parse_quantity(text, "kg", name), text, "kg", name), None
+    mass = parse_quantity(f"{number.value!r} {number.rest}", "kg", name)
+    if not 0 < number.uncertainty < number.value:
+        raise InputError(f"{name} {text!r}: its uncertainty must be above 0 and below the mass itself")
+    return mass, mass * (number.uncertainty / number.value)
 
 
 def sample_notes(settings: SampleSettings) -> tuple[str, ...]:
@@ -190,3 +271,14 @@ def sample_notes(settings: SampleSettings) -> tuple[str, ...]:
             own = f"{formula.molar_mass * 1000:.6g} g/mol"
             notes.append(f"molar mass {stated * 1000:.6g} g/mol as stated, although {formula.text!r} has {own}")
     return tuple(notes)
+
+
+def converted_by_mass(measurement: Measurement) -> tuple[str, ...]:
+    """Return the labels of the runs in J/K that the mass of the sample made per mole.
+
+    An error of the mass is a scale error of everything that comes from them.
+    """
+    if measurement.basis != "mol":
+        return ()
+    readings = measurement.readings
+    return tuple(each.label for each in readings if heat_capacity_unit(each.heat_capacity_unit).basis == "sample")

@@ -13,8 +13,8 @@ from reading_helpers import SAMPLE
 
 from latticefit.errors import InputError
 from latticefit.reading import read_measurement
-from latticefit.reading.settings import RUN, checked
-from latticefit.records import RunSettings
+from latticefit.reading.settings import ADDENDA, RUN, checked
+from latticefit.records import AddendaSettings, Measurement, RunSettings
 
 CORPUS = ROOT / "tests" / "corpus"
 CASES = tomllib.loads((CORPUS / "expected.toml").read_text(encoding="utf-8"))["case"]
@@ -23,13 +23,12 @@ CASES = tomllib.loads((CORPUS / "expected.toml").read_text(encoding="utf-8"))["c
 @pytest.mark.parametrize("case", CASES, ids=[case["file"] for case in CASES])
 def test_file_of_the_corpus(case: dict[str, Any]) -> None:
     """The file gives its arrays and every repair with its line, or is refused in its sentence."""
-    run = RunSettings(case["file"], **checked(case.get("options", {}), RUN))
     if "refused" in case:
         with pytest.raises(InputError) as caught:
-            read_measurement(SAMPLE, (run,), base=CORPUS)
+            _read(case)
         assert str(caught.value) == case["refused"]
         return
-    measurement = read_measurement(SAMPLE, (run,), base=CORPUS)
+    measurement = _read(case)
     assert_allclose(measurement.temperature, case["temperature_K"], rtol=1e-12)
     assert_allclose(measurement.heat_capacity, case["heat_capacity_J_molK"], rtol=1e-6)
     assert (measurement.sigma is None) == ("sigma_J_molK" not in case)
@@ -39,6 +38,12 @@ def test_file_of_the_corpus(case: dict[str, Any]) -> None:
     assert measurement.run.tolist() == case.get("run", [0] * measurement.run.size)
     assert [why or "" for why in measurement.set_aside] == case.get("set_aside", [])
     assert [_line(repair.line) + repair.message for repair in measurement.repairs] == case["repairs"]
+
+
+def _read(case: dict[str, Any]) -> Measurement:
+    run = RunSettings(case["file"], **checked(case.get("options", {}), RUN))
+    addenda = [AddendaSettings(**checked(each, ADDENDA)) for each in case.get("addenda", [])]
+    return read_measurement(SAMPLE, (run,), CORPUS, addenda)
 
 
 def _line(number: int | None) -> str:
@@ -58,8 +63,7 @@ def test_every_file_is_expected_and_says_that_it_is_invented() -> None:
 @pytest.mark.parametrize("case", [case for case in CASES if "refused" not in case], ids=lambda case: case["file"])
 def test_reading_is_repeated_by_its_settings(case: dict[str, Any]) -> None:
     """The settings of a reading read the file again in the same way, to the last bit."""
-    run = RunSettings(case["file"], **checked(case.get("options", {}), RUN))
-    first = read_measurement(SAMPLE, (run,), base=CORPUS)
-    again = read_measurement(SAMPLE, (first.readings[0].settings,), base=CORPUS)
-    for name in ("temperature", "heat_capacity", "line", "run", "set_aside", "readings"):
+    first = _read(case)
+    again = read_measurement(SAMPLE, (first.readings[0].settings,), CORPUS, first.addenda_settings)
+    for name in ("temperature", "heat_capacity", "line", "run", "set_aside", "readings", "addenda", "addenda_readings"):
         assert repr(getattr(again, name)) == repr(getattr(first, name))

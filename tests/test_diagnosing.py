@@ -154,7 +154,24 @@ def triggers() -> dict[str, Diagnosis]:
             invented_solid(*METAL, np.repeat(np.geomspace(2.0, 300.0, 50), 3), atoms=1), METAL[0]
         ),
         "runs-differ": diagnosed(two_runs(), METAL[0]),
+        "addenda-share": diagnosed(with_addenda(metal, 3.0, 0.0), METAL[0]),
+        "addenda-uncertainty": diagnosed(with_addenda(metal, 0.5, 0.003), METAL[0]),
+        "mass-uncertainty": diagnosed(weighed(metal, 0.02), METAL[0]),
     }
+
+
+def with_addenda(data: PreparedData, times: float, u: float) -> PreparedData:
+    """The points with addenda taken off, so many times what is left, with a relative u of what is left."""
+    C = np.array(data.measurement.heat_capacity)
+    return replace(data, measurement=replace(data.measurement, addenda=times * C, addenda_u=u * C))
+
+
+def weighed(data: PreparedData, part: float) -> PreparedData:
+    """The points as if made per mole by a mass that is uncertain by a part."""
+    measurement = data.measurement
+    sample = replace(measurement.sample, mass=1e-5, mass_u=part * 1e-5)
+    readings = (replace(measurement.readings[0], heat_capacity_unit="uJ/K"),)
+    return replace(data, measurement=replace(measurement, sample=sample, readings=readings))
 
 
 def scaled(factor: float) -> PreparedData:
@@ -256,6 +273,36 @@ def test_a_model_that_misses_the_data_leaves_the_mode_sum_to_the_level() -> None
 def test_modes_that_the_user_holds_are_not_freed() -> None:
     """With both mode counts fixed by the user nothing is left to free, and the level alone is asked."""
     assert mode_sum_of(1.0, fix={"debye_modes": 3.5, "einstein_modes": 2.5}) is None
+
+
+def level_of(data: PreparedData, code: str) -> str | None:
+    return {each.code: each.level for each in diagnosed(data, METAL[0]).warnings}.get(code)
+
+
+@pytest.mark.parametrize(("times", "level"), [(2.0, None), (2.6, "warn"), (18.0, "warn"), (20.0, "stop")])
+def test_share_of_addenda_has_two_levels(times: float, level: str | None) -> None:
+    """Warn above 70 % of the total, stop above 95 %."""
+    assert level_of(with_addenda(invented_solid(*METAL, T, atoms=1), times, 0.0), "addenda-share") == level
+
+
+@pytest.mark.parametrize(("u", "level"), [(0.0005, None), (0.005, "note"), (0.02, "warn")])
+def test_u_of_addenda_that_entropy_carries(u: float, level: str | None) -> None:
+    """The u that all points share comes into S in full: a part u of every C is a part u of S."""
+    data = with_addenda(invented_solid(*METAL, T, atoms=1), 0.5, u)
+    assert level_of(data, "addenda-uncertainty") == level
+    found = [each for each in diagnosed(data, METAL[0]).warnings if each.code == "addenda-uncertainty"]
+    assert not found or found[0].found == pytest.approx(u, rel=1e-9)
+
+
+def test_mass_is_a_scale_error_only_of_what_it_converts() -> None:
+    """Above 1 % a warning, below a note; none for a run that is per mole already, or a mass without u."""
+    data = invented_solid(*METAL, T, atoms=1)
+    assert level_of(weighed(data, 0.02), "mass-uncertainty") == "warn"
+    assert level_of(weighed(data, 0.004), "mass-uncertainty") == "note"
+    per_mole = weighed(data, 0.02)
+    per_mole = replace(per_mole, measurement=replace(per_mole.measurement, readings=data.measurement.readings))
+    assert level_of(per_mole, "mass-uncertainty") is None
+    assert level_of(data, "mass-uncertainty") is None
 
 
 def test_more_parameters_than_the_data_can_test_is_not_called_a_description() -> None:

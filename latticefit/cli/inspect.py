@@ -14,7 +14,7 @@ from .request import request
 from .streams import print_json
 
 if TYPE_CHECKING:
-    from ..records import Measurement, Sheet
+    from ..records import Measurement, RunOverlap, Sheet
 
 __all__ = ["parser", "run"]
 
@@ -43,7 +43,8 @@ def parser() -> CommandParser:
 
 def run(arguments: argparse.Namespace) -> int:
     """Print what was read from each file."""
-    from ..report.inspection import inspection_record, inspection_text
+    from ..report.inspection import inspection_record, inspection_text, overlap_text
+    from ..report.noticed import overlap_record
     from ..report.result import json_text
     from ..report.sheet_file import recognised_sheet, save_sheet
 
@@ -54,20 +55,42 @@ def run(arguments: argparse.Namespace) -> int:
     if arguments.save_sheet:
         path = save_sheet(recognised_sheet(measurements))
         print(f"latticefit: wrote {str(path)!r}", file=sys.stderr)
+    overlaps, apart = _compared(sheet, base, measurements)
     if arguments.json:
-        print_json(json_text({"files": [inspection_record(each) for each in measurements]}))
+        files = [inspection_record(each) for each in measurements]
+        print_json(json_text({"files": files, "overlaps": overlap_record(overlaps), "not_joined_because": apart}))
     else:
-        print("\n".join(inspection_text(each) for each in measurements), end="")
+        parts = [inspection_text(each) for each in measurements]
+        parts += [text for text in (overlap_text(overlaps), f"not to be joined: {apart}\n" if apart else "") if text]
+        print("\n".join(parts), end="")
     return 0
+
+
+def _compared(sheet: Sheet, base: Path, measurements: list[Measurement]) -> tuple[tuple[RunOverlap, ...], str | None]:
+    """How the runs compare where they overlap; or why they cannot be joined."""
+    from ..diagnosing.examination import overlaps_of
+    from ..reading import read_measurement
+
+    if sum(len(each.readings) for each in measurements) < 2:
+        return (), None
+    if len(measurements) == 1:
+        return overlaps_of(measurements[0]), None
+    try:
+        return overlaps_of(read_measurement(sheet.sample, sheet.runs, base, sheet.addenda)), None
+    except InputError as error:
+        return (), str(error)
 
 
 def _read(sheet: Sheet, base: Path) -> list[Measurement]:
     """Read every file for itself, with the known heat capacities that concern it."""
+    from dataclasses import replace
+
     from ..reading import read_measurement
 
     found = []
     for run in sheet.runs:
         label = run.label or Path(run.file).stem
-        addenda = tuple(known for known in sheet.addenda if not known.runs or label in known.runs)
+        # named runs of other files are not there when a file is read for itself
+        addenda = tuple(replace(known, runs=()) for known in sheet.addenda if not known.runs or label in known.runs)
         found.append(read_measurement(sheet.sample, (run,), base, addenda))
     return found

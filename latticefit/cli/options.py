@@ -41,7 +41,9 @@ def add_sample_options(parser: CommandParser) -> None:
     group.add_argument("--name", metavar="TEXT", help="name of the sample in the report")
     group.add_argument("--atoms", metavar="N", help="atoms per formula unit, where there is no formula")
     group.add_argument("--molar-mass", metavar="'VALUE UNIT'", help="e.g. '101.96 g/mol'")
-    group.add_argument("--mass", metavar="'VALUE UNIT'", help="sample mass for data in J/K, e.g. '12.3 mg'")
+    group.add_argument(
+        "--mass", metavar="'VALUE UNIT'", help="sample mass for data in J/K, e.g. '12.3 mg', '12.3(2) mg'"
+    )
     group.add_argument("--insulator", action="store_true", help="no conduction electrons: no electronic term")
     group.add_argument(
         "--melting-point", metavar="'VALUE UNIT'", help="fixes the Nernst-Lindemann coefficient, e.g. '1358 K'"
@@ -60,7 +62,8 @@ def add_column_options(parser: CommandParser) -> None:
     group.add_argument(
         "--sigma",
         metavar="COLUMN|TEXT",
-        help="a column, or '0.5%%', '0.02 mJ/(mol K) + 0.3%%', '1%% below 100 K, 0.3%% above', '1 J/(mol K)'",
+        help="a column, or '0.5%%', '0.02 mJ/(mol K) + 0.3%%', '1%% below 100 K, 0.3%% above', '1 J/(mol K)', or "
+        "scatter or replicates to estimate it",
     )
     group.add_argument("--coverage-factor", metavar="K", help="k of the stated uncertainties, where they are U")
     group.add_argument("--temperature-scale", metavar="SCALE", help="ITS-90, or IPTS-68 to convert T and Cp from it")

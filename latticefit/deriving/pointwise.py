@@ -7,6 +7,7 @@ import numpy as np
 from ..constants import GAS_CONSTANT
 from ..functions import debye_heat_capacity_derivative, invert_debye
 from ..models import Model, calorimetric_theta, cp_cv_coefficient, harmonic_heat_capacity, heat_capacity, total_modes
+from ..preparing.addenda import sigma_of_all
 from ..records import FitRecord, FloatArray, PointwiseTheta, PreparedData
 
 __all__ = ["model_theta", "pointwise_theta"]
@@ -36,16 +37,12 @@ def pointwise_theta(prepared: PreparedData, fit: FitRecord, model: Model) -> Poi
     """
     measurement = prepared.measurement
     T, measured = np.asarray(measurement.temperature), np.asarray(measurement.heat_capacity)
-    if measurement.sigma is not None:
-        sigma = np.asarray(measurement.sigma)
-    else:  # estimated sigmas are one fraction of the heat capacity everywhere
-        sigma = measured * float(prepared.sigma[0] / prepared.heat_capacity[0])
     harmonic, slope = _harmonic(model, np.asarray(fit.values), T, measured)
     limit = _limit(model, fit)
     x = invert_debye(harmonic / limit)
     steepness = np.abs(np.asarray(debye_heat_capacity_derivative(np.where(np.isnan(x), 1.0, x)))) * limit / T
     reasons = tuple(_blank_reason(float(value), limit) for value in harmonic)
-    u = np.where(np.isnan(x), np.nan, sigma * slope / steepness)
+    u = np.where(np.isnan(x), np.nan, sigma_of_all(prepared) * slope / steepness)
     return PointwiseTheta(theta=x * T, u=u, reasons=reasons)
 
 

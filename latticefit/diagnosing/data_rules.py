@@ -6,7 +6,9 @@ import numpy as np
 
 from ..preparing.scatter import repeat_sets
 from ..records import NamedWarning
+from ..rounding import percent_text
 from .case import Case
+from .lack_of_fit import first_of_sets
 from .verdict import DURBIN_WATSON, MISFIT, RUNS_P, blame, correlated
 
 __all__ = [
@@ -21,6 +23,7 @@ __all__ = [
 
 _POINTS_PER_PARAMETER = 5
 _SIGMA_OVERSTATED = 0.5
+_FIRST_OFF = 4.0  # standard errors from which the first points of sets are off by no chance
 _RUN_PULL = 4.0  # mean normalised residual of a run, in its own standard errors
 
 
@@ -101,17 +104,29 @@ def repeats(case: Case) -> NamedWarning | None:
             sizes.append(T.size / (sets[-1] + 1))
     if not sizes:
         return None
+    first = first_of_sets(case.prepared)
+    off = first is not None and abs(first.mean) > _FIRST_OFF * first.u
+    settling = (
+        f"; the first of each lies {percent_text(100 * abs(first.mean))} {'above' if first.mean > 0 else 'below'} the "
+        "others"
+        if first is not None and off
+        else ""
+    )
     return NamedWarning(
         code="repeats-fitted-singly",
         level="warn",
         concerns="uncertainty",
         message=(
             f"points come in sets of {max(sizes):.1f} repeats and are fitted one by one; where a set shares its error, "
-            f"u is too small by up to {max(sizes) ** 0.5:.1f}"
+            f"u is too small by up to {max(sizes) ** 0.5:.1f}{settling}"
         ),
         found=float(max(sizes)),
         threshold=1.0,
-        advice="average each set into one point before the fit",
+        advice=(
+            "the first had not settled: --replicates drop-first leaves it out of each set"
+            if off
+            else "average each set into one point before the fit: --replicates average"
+        ),
     )
 
 

@@ -6,21 +6,26 @@ from collections.abc import Callable, Mapping
 from types import MappingProxyType
 
 from ..records import NamedWarning
-from . import data_rules, fit_rules, level_rules, range_rules
+from . import correction_rules, data_rules, fit_rules, level_rules, point_rules, range_rules
 from .case import Case
 
 __all__ = ["RULES", "find_warnings"]
 
 _RULES: dict[str, Callable[[Case], NamedWarning | None]] = {
     "implausible-level": level_rules.implausible_level,
+    "addenda-share": correction_rules.addenda_share,
     "low-temperature-reach": range_rules.reach_down,
     "high-temperature-reach": range_rules.reach_up,
     "above-classical-limit": level_rules.above_classical_limit,
     "sigma-understated": data_rules.sigma_understated,
     "cp-cv-from-melting-point": range_rules.cp_cv_from_melting_point,
     "repeats-fitted-singly": data_rules.repeats,
+    "replicate-spread": point_rules.replicate_spread,
+    "suspected-feature": point_rules.suspected_feature,
+    "run-overlap": point_rules.run_overlap,
     "runs-differ": data_rules.runs_differ,
     "model-misfit": fit_rules.model_misfit,
+    "lack-of-fit": point_rules.lack_of_fit,
     "undetermined-parameters": fit_rules.undetermined_parameters,
     "parameter-at-bound": fit_rules.parameter_at_bound,
     "not-unique": fit_rules.not_unique,
@@ -32,6 +37,9 @@ _RULES: dict[str, Callable[[Case], NamedWarning | None]] = {
     "sigma-overstated": data_rules.sigma_overstated,
     "sigma-assumed": data_rules.sigma_assumed,
     "few-points": data_rules.few_points,
+    "addenda-uncertainty": correction_rules.addenda_uncertainty,
+    "mass-uncertainty": correction_rules.mass_uncertainty,
+    "outliers": point_rules.outliers,
 }
 
 RULES: Mapping[str, Callable[[Case], NamedWarning | None]] = MappingProxyType(_RULES)

@@ -10,6 +10,7 @@ from scipy.stats import chi2, norm
 
 from ..preparing.scatter import repeat_sets
 from ..records import FitRecord, FloatArray, PreparedData, ResidualBand, ResidualStatistics
+from .lack_of_fit import lack_of_fit
 
 __all__ = ["akaike", "bayes", "durbin_watson", "lag1_correlation", "residual_statistics", "runs_test"]
 
@@ -141,4 +142,5 @@ def residual_statistics(
             float(percent[run == k].mean()) if (run == k).any() else nan
             for k in range(len(prepared.measurement.readings))
         ),
+        lack_of_fit=lack_of_fit(prepared, fit, residual),
     )

@@ -10,17 +10,19 @@ from numpy.typing import NDArray
 
 from ..errors import InputError
 from ..records import FloatArray, Measurement, PreparedData, SigmaKind
-from .scatter import pooled_scatter
+from .addenda import measured_total, with_addenda
+from .outliers import outliers
+from .overlap import run_overlaps
+from .replicates import asks_for_replicates, sigma_from_replicates, with_replicates
+from .scatter import FEWEST_POINTS, pooled_scatter
 
 __all__ = ["prepare"]
 
 Interval = tuple[float, float]
 
-_FEWEST_POINTS: Final = 10
 _LEAST_SCATTER: Final = 1e-4
 _ASSUMED: Final = 0.01
 _ASSUMED_WORD: Final = "assumed"
-_WIDEST_SPAN: Final = 6.0  # seven neighbours over a wider factor in T curve more than a parabola: 2 to 7 % for 0.5 %
 
 
 def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Sequence[Interval] = ()) -> PreparedData:
@@ -38,27 +40,34 @@ def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Seq
     -------
     PreparedData
         By ascending temperature, equal temperatures in file order. Without a stated sigma one relative sigma is
-        estimated from the local scatter of the points used, the same for every model that is fitted to them.
+        estimated from the local scatter of the points used, the same for every model that is fitted to them, or from
+        their repeats where the runs ask for it. Where addenda were taken off, sigma is that of the measured total and
+        of the addenda together. `measurement` is the one given, with sets of repeats averaged where asked.
 
     Raises
     ------
     InputError
-        If the heat capacity is not per mole, or no point is left.
+        If the heat capacity is not per mole, no point is left, or repeats are asked for and there are none.
     """
     _refuse_other_basis(measurement)
-    reasons = _reasons(measurement, tuple(window), tuple(mask))
-    used = np.array([i for i, reason in enumerate(reasons) if reason is None], dtype=np.intp)
-    if used.size == 0:
-        first = next((reason for reason in reasons if reason), "none was read")
-        raise InputError(f"no point is left to fit: all {len(reasons)} are left out (the first: {first})")
-    index = used[np.argsort(measurement.temperature[used], kind="stable")]
+    single, repeated = measurement, with_replicates(measurement)
+    measurement = repeated.measurement
+    reasons = tuple(
+        why or dropped for why, dropped in zip(_reasons(measurement, window, mask), repeated.dropped, strict=True)
+    )
+    index = _used(measurement, reasons)
     temperature, heat_capacity = measurement.temperature[index], measurement.heat_capacity[index]
     if measurement.sigma is not None:
         kind: SigmaKind = "stated"
         sigma, text = measurement.sigma[index], f"stated: {measurement.sigma_text}"
+    elif asks_for_replicates(measurement):
+        kind = "estimated"
+        singly = index if single.run.size == measurement.run.size else _used(single, _reasons(single, window, mask))
+        sigma, text = sigma_from_replicates(single, singly, heat_capacity, repeated.size[index])
     else:
         kind = "estimated"
-        sigma, text = _estimated(temperature, heat_capacity, measurement.run[index])
+        sigma, text = _estimated(temperature, measured_total(measurement)[index], measurement.run[index])
+    sigma, text = with_addenda(measurement, index, sigma, text)
     return PreparedData(
         measurement=measurement,
         temperature=temperature,
@@ -70,6 +79,8 @@ def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Seq
         sigma_kind=kind,
         sigma_text=text,
         sigma_assumed=kind == "estimated" and text.startswith(_ASSUMED_WORD),
+        flags=_flags(measurement, index, sigma if kind == "stated" else None),
+        overlaps=run_overlaps(measurement, temperature, heat_capacity, sigma, measurement.run[index]),
     )
 
 
@@ -81,6 +92,30 @@ def _refuse_other_basis(measurement: Measurement) -> None:
         missing = ["--mass"] if sample.mass is None else []
         missing += ["--formula or --molar-mass"] if sample.molar_mass is None else []
         raise InputError(f"the heat capacity is per sample: give {' and '.join(missing)} to make it per mole")
+
+
+def _used(measurement: Measurement, reasons: Sequence[str | None]) -> NDArray[np.intp]:
+    """Return the positions of the points that no reason speaks against, by ascending temperature."""
+    used = np.array([i for i, reason in enumerate(reasons) if reason is None], dtype=np.intp)
+    if used.size == 0:
+        first = next((reason for reason in reasons if reason), "none was read")
+        raise InputError(f"no point is left to fit: all {len(reasons)} are left out (the first: {first})")
+    return used[np.argsort(measurement.temperature[used], kind="stable")]
+
+
+def _flags(measurement: Measurement, index: NDArray[np.intp], sigma: FloatArray | None) -> tuple[str | None, ...]:
+    """Say of the points at `index` how far they lie from their neighbours, where that is too far for scatter."""
+    flags: list[str | None] = [None] * measurement.run.size
+    for run in np.unique(measurement.run[index]):
+        own = measurement.run[index] == run
+        place = index[own]
+        sizes = outliers(
+            measurement.temperature[place], measurement.heat_capacity[place], None if sigma is None else sigma[own]
+        )
+        for i in np.flatnonzero(sizes):
+            side = "above" if sizes[i] > 0 else "below"
+            flags[int(place[i])] = f"{abs(sizes[i]):.1f} times the scatter {side} its neighbours"
+    return tuple(flags)
 
 
 # ------------------------------------------------------------------------------------------------ windows and masks
@@ -128,8 +163,8 @@ def _words(interval: Interval) -> str:
 
 
 def _estimated(temperature: FloatArray, heat_capacity: FloatArray, run: NDArray[np.intp]) -> tuple[FloatArray, str]:
-    found = pooled_scatter(temperature, heat_capacity, run, _FEWEST_POINTS, _WIDEST_SPAN)
-    enough = temperature.size >= _FEWEST_POINTS
+    found = pooled_scatter(temperature, heat_capacity, run)
+    enough = temperature.size >= FEWEST_POINTS
     scatter = found.scatter
     if scatter is not None and scatter >= _LEAST_SCATTER:
         text = f"estimated from local scatter: {_percent(scatter)} of the heat capacity"

@@ -11,8 +11,10 @@ import numpy as np
 
 from ..errors import InputError
 from ..records import AddendaSettings, Measurement, Reading, Repair, RunSettings, SampleSettings
-from ..sample import build_sample, sample_notes
+from ..sample import build_sample, converted_by_mass, sample_notes
+from .addenda import take_off
 from .run import RunData, read_run
+from .temperature_scale import on_its90
 from .wording import quoted
 
 __all__ = ["read_measurement"]
@@ -58,7 +60,7 @@ def read_measurement(
     _refuse_unlike(parts)
     aside = tuple(why for part in parts for why in part.set_aside)
     stated = [part.sigma for part in parts if part.sigma is not None]
-    return Measurement(
+    measurement = Measurement(
         sample=built,
         temperature=np.concatenate([part.temperature for part in parts]),
         heat_capacity=np.concatenate([part.heat_capacity for part in parts]),
@@ -77,8 +79,22 @@ def read_measurement(
         excluded=tuple(row for part in parts for row in part.excluded),
         sample_settings=sample,
         set_aside=aside if any(why is not None for why in aside) else (),
-        addenda_settings=tuple(addenda),
     )
+    return take_off(
+        on_its90(_with_mass_note(measurement)),
+        addenda,
+        folder,
+        lambda run: read_measurement(SampleSettings(atoms=1), (run,), folder),
+    )
+
+
+def _with_mass_note(measurement: Measurement) -> Measurement:
+    """Say so where the uncertainty of a mass is stated and the mass converts nothing."""
+    unused = measurement.sample.mass_u is not None and measurement.basis != "sample"
+    if not unused or converted_by_mass(measurement):
+        return measurement
+    note = Repair("sample", None, "the mass and its uncertainty are not used: no run is in J/K")
+    return replace(measurement, repairs=(note, *measurement.repairs))
 
 
 def _labelled(runs: Sequence[RunSettings]) -> list[RunSettings]:
@@ -122,6 +138,12 @@ def _refuse_unlike(parts: Sequence[RunData]) -> None:
             raise InputError(f"{pair} are in {units}; give --formula or --molar-mass (and --mass) to join them")
         if (part.sigma is None) != (first.sigma is None):
             silent = part if part.sigma is None else first
+            word = silent.reading.settings.sigma
+            if word is not None:
+                raise InputError(
+                    f"{pair}: one states an uncertainty and that of the other is to be estimated from {word}; state "
+                    f"one for {quoted(silent.reading.label)} too, or give both --sigma {word}"
+                )
             raise InputError(f"{pair}: only one states an uncertainty; give {quoted(silent.reading.label)} a --sigma")
 
 

@@ -264,6 +264,8 @@ def _sigma(
             )
         return factor
 
+    if source.estimate is not None:
+        return None
     if source.model is not None:
         usable = np.isfinite(temperature) & (temperature > 0) & np.isfinite(heat_capacity) & (heat_capacity > 0)
         sigma = np.full(temperature.shape, math.nan)
@@ -298,7 +300,7 @@ def _written_notes(choice: _Choice, cells: Cells) -> list[str]:
         notes.append(f"uncertainties written in {quoted(choice.temperature.label)} are not used")
     if np.isfinite(cells.written_sigma).any():
         name = quoted(choice.heat_capacity.label)
-        if choice.sigma.model is not None or choice.sigma.column is not None:
+        if choice.sigma.model is not None or choice.sigma.column is not None or choice.sigma.estimate is not None:
             notes.append(f"uncertainties written in {name} are not used: sigma is {choice.sigma.text}")
         else:
             k = choice.sigma.coverage_factor or 1
@@ -320,7 +322,7 @@ def _reading(source: TextFile, table: Table, choice: _Choice, cells: Cells, run:
         quantity=choice.quantity,
         temperature=name(choice.temperature),
         heat_capacity=name(choice.heat_capacity),
-        sigma=run.sigma if sigma is None else name(sigma),
+        sigma=choice.sigma.estimate or (run.sigma if sigma is None else name(sigma)),
         coverage_factor=choice.sigma.coverage_factor,
         temperature_unit=choice.temperature_unit.text,
         heat_capacity_unit=choice.heat_capacity_unit.text,

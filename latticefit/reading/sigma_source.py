@@ -7,7 +7,7 @@ import re
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from ..errors import InputError
+from ..errors import InputError, nearest
 from ..records import RunSettings
 from ..units import HeatCapacityUnit, TemperatureUnit
 from .columns import find_column
@@ -15,12 +15,18 @@ from .headers import Column, uncertainty_columns
 from .sigma import SigmaModel, parse_sigma_text
 from .wording import listed, offered, quoted
 
-__all__ = ["SigmaSource", "find_sigma_source"]
+__all__ = ["ESTIMATED", "SigmaSource", "find_sigma_source"]
+
+ESTIMATED = ("scatter", "replicates")
+"""Words that leave sigma to be estimated from the data."""
 
 
 @dataclass(frozen=True)
 class SigmaSource:
-    """A column of sigma (in `unit`, or in % where that is None), or a model, or neither; and what it is divided by."""
+    """A column of sigma (in `unit`, or in % where that is None), or a model, or neither; and what it is divided by.
+
+    `estimate` is the word of an estimate that is asked for, over whatever the file states.
+    """
 
     column: Column | None
     unit: HeatCapacityUnit | None
@@ -28,6 +34,7 @@ class SigmaSource:
     coverage_factor: float | None
     text: str
     notes: tuple[str, ...]
+    estimate: str | None = None
 
 
 def find_sigma_source(
@@ -44,7 +51,7 @@ def find_sigma_source(
     unit : HeatCapacityUnit
         Unit of the heat capacity, which a column of sigma without a unit shares.
     run : RunSettings
-        `sigma` is read as an exact header, then a column number, then a sigma text.
+        `sigma` is read as an exact header, then a column number, then "scatter" or "replicates", then a sigma text.
     shown : str
         The file as messages name it.
 
@@ -58,6 +65,9 @@ def find_sigma_source(
         raise InputError(f"{shown}: the coverage factor must be above 0, not {stated:g}")
     if run.sigma is not None:
         column = find_column(columns, run.sigma, shown)
+        word = str(run.sigma).strip().casefold()
+        if column is None and word in ESTIMATED:
+            return _to_estimate(word, columns, taken, stated, shown)
         if column is None:
             return _from_text(str(run.sigma), columns, stated, shown)
         return _from_column(column, taken, unit, stated, (), shown)
@@ -66,6 +76,21 @@ def find_sigma_source(
         return _from_column(column, taken, unit, stated, notes, shown)
     text = f"written with the values of {quoted(taken[1].label)}"
     return SigmaSource(None, None, None, stated, text + _divided(stated), notes)
+
+
+def _to_estimate(
+    word: str, columns: tuple[Column, ...], taken: tuple[Column, Column], coverage: float | None, shown: str
+) -> SigmaSource:
+    if coverage is not None:
+        raise InputError(
+            f"{shown}: a coverage factor is given, but --sigma {word} estimates the standard uncertainty; leave one of "
+            "the two out"
+        )
+    notes = tuple(
+        f"{quoted(column.label)} is not used: sigma is estimated from {word}, as asked"
+        for column in uncertainty_columns(columns, taken)
+    )
+    return SigmaSource(None, None, None, None, f"estimated from {word}", notes, word)
 
 
 def _divided(coverage: float | None) -> str:
@@ -78,6 +103,9 @@ def _from_text(text: str, columns: Sequence[Column], coverage: float | None, sho
     if re.match(r"\s*±?\s*[-+.\d]", text) is None:
         headers = [column.header for column in columns if column.header]
         hint = f"; {offered(text, headers)}" if headers else ""
+        word = nearest(text, ESTIMATED)
+        if word.startswith("did you mean") and "did you mean" not in hint:
+            hint = f"; {word}"
         raise InputError(f"{shown}: --sigma {quoted(text)} is neither a column nor a sigma text such as '0.5%'{hint}")
     try:
         model = parse_sigma_text(text)

@@ -20,7 +20,7 @@ from .base import (
     SigmaKind,
     TemperatureScale,
 )
-from .data import ExcludedRow, Measurement, PreparedData, Reading, Repair, Sample
+from .data import AddendaShare, ExcludedRow, Measurement, PreparedData, Reading, Repair, Sample
 from .derived import (
     Analysis,
     Derived,
@@ -37,6 +37,7 @@ from .findings import (
     Diagnosis,
     FitRecord,
     HeldParameters,
+    LackOfFit,
     LevelExplanation,
     LevelFinding,
     NamedWarning,
@@ -45,10 +46,12 @@ from .findings import (
     ResidualStatistics,
     ValidityFact,
 )
+from .noticed import Feature, FeatureKind, RunOverlap
 from .request import AddendaSettings, ModelSettings, ReportSettings, RunSettings, SampleSettings, Sheet
 
 __all__ = [
     "AddendaSettings",
+    "AddendaShare",
     "Analysis",
     "Basis",
     "Candidate",
@@ -58,10 +61,13 @@ __all__ = [
     "Diagnosis",
     "EnergyDifference",
     "ExcludedRow",
+    "Feature",
+    "FeatureKind",
     "FitRecord",
     "FloatArray",
     "Frozen",
     "HeldParameters",
+    "LackOfFit",
     "Level",
     "LevelExplanation",
     "LevelFinding",
@@ -82,6 +88,7 @@ __all__ = [
     "ReportSettings",
     "ResidualBand",
     "ResidualStatistics",
+    "RunOverlap",
     "RunSettings",
     "Sample",
     "SampleSettings",

@@ -10,9 +10,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from .base import Basis, FloatArray, Frozen, Quantity, SigmaKind
+from .noticed import RunOverlap
 from .request import AddendaSettings, RunSettings, SampleSettings
 
-__all__ = ["ExcludedRow", "Measurement", "PreparedData", "Reading", "Repair", "Sample"]
+__all__ = ["AddendaShare", "ExcludedRow", "Measurement", "PreparedData", "Reading", "Repair", "Sample"]
 
 
 _UNITS: Mapping[Basis, str] = {"mol": "J/(mol K)", "gram": "J/(g K)", "sample": "J/K"}
@@ -47,7 +48,10 @@ class Repair:
 
 @dataclass(frozen=True)
 class ExcludedRow:
-    """A row that the reader could not use; values are NaN where unreadable. `run` is the index of its source."""
+    """A row that the reader could not use; values are NaN where unreadable. `run` is the index of its source.
+
+    Points that were averaged stand here too; `averaged_into` is then the position of their mean in the measurement.
+    """
 
     run: int
     line: int
@@ -55,6 +59,7 @@ class ExcludedRow:
     heat_capacity: float
     sigma: float
     reason: str
+    averaged_into: int | None = None
 
 
 @dataclass(frozen=True)
@@ -80,6 +85,20 @@ class Reading:
     settings: RunSettings
 
 
+@dataclass(frozen=True)
+class AddendaShare:
+    """What one known heat capacity makes of a measurement, over the `points` that it was taken off.
+
+    Its share of the measured total, lowest and highest, and its standard uncertainty (k = 1) as a part of what is left.
+    """
+
+    points: int
+    lowest: float
+    highest: float
+    u_lowest: float
+    u_highest: float
+
+
 @dataclass(frozen=True, eq=False, repr=False)
 class Measurement(Frozen):
     """Measured heat capacity of one sample, in file order, unusable rows omitted.
@@ -101,9 +120,9 @@ class Measurement(Frozen):
         None for the others. Empty where no point is set aside.
     addenda, addenda_u : ndarray, shape (n,), or None
         The known heat capacity that was taken off at each point, and its standard uncertainty (k = 1), which is not in
-        `sigma`; unit as `heat_capacity`. None where nothing was taken off.
-    addenda_readings : tuple of Reading
-        How the files of known heat capacities were read, one for each of `addenda_settings`.
+        `sigma`; unit as `heat_capacity`, and with it the measured total. None where nothing was taken off.
+    addenda_readings, addenda_shares : tuple of Reading, tuple of AddendaShare
+        How the files of known heat capacities were read, and what each makes up, one for each of `addenda_settings`.
     """
 
     sample: Sample
@@ -124,6 +143,7 @@ class Measurement(Frozen):
     addenda_u: FloatArray | None = None
     addenda_settings: tuple[AddendaSettings, ...] = ()
     addenda_readings: tuple[Reading, ...] = ()
+    addenda_shares: tuple[AddendaShare, ...] = ()
 
     def _facts(self) -> dict[str, str]:
         """What a notebook shows of it; names stand in quotes, with whatever does not print escaped."""
@@ -137,6 +157,11 @@ class Measurement(Frozen):
             "range": f"{T.min():.4g} to {T.max():.4g} K" if T.size else "none",
             "quantity": f"{self.quantity} in {_UNITS[self.basis]}",
             "sigma": repr(self.sigma_text) if self.sigma_text else "none stated",
+            **(
+                {"addenda": ", ".join(repr(each.file) for each in self.addenda_readings)}
+                if self.addenda_readings
+                else {}
+            ),
         }
 
     def __repr__(self) -> str:
@@ -166,6 +191,10 @@ class PreparedData(Frozen):
         The sigma model in force, in words.
     sigma_assumed : bool
         True where nothing was stated and nothing could be estimated: only the relative sizes of sigma mean anything.
+    flags : tuple of (str or None), length of the measurement or 0
+        How far a fitted point lies from its neighbours, where that is too far for scatter; None for the others.
+    overlaps : tuple of RunOverlap
+        Every pair of runs with a common range.
     """
 
     measurement: Measurement
@@ -178,3 +207,5 @@ class PreparedData(Frozen):
     sigma_kind: SigmaKind
     sigma_text: str
     sigma_assumed: bool = False
+    flags: tuple[str | None, ...] = ()
+    overlaps: tuple[RunOverlap, ...] = ()

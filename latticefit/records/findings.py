@@ -13,6 +13,7 @@ __all__ = [
     "Diagnosis",
     "FitRecord",
     "HeldParameters",
+    "LackOfFit",
     "LevelExplanation",
     "LevelFinding",
     "NamedWarning",
@@ -107,12 +108,34 @@ class ResidualBand:
 
 
 @dataclass(frozen=True)
+class LackOfFit:
+    """What the residuals are made of where points stand in sets of repeats.
+
+    `pure_error` is the sum of squares within sets, divided by sigma squared, with its degrees of freedom, and
+    `pure_error_percent` the relative standard deviation that it means; `lack_of_fit` is what is left of chi-square,
+    between the sets. `f` compares the two per degree of freedom, and `p` is its upper tail. `shared_error` is None
+    where it cannot be told whether a set shares an error, else whether neighbouring sets differ, without any model, by
+    more than their spread within explains.
+    """
+
+    pure_error: float
+    pure_error_degrees_of_freedom: int
+    pure_error_percent: float
+    lack_of_fit: float
+    degrees_of_freedom: int
+    f: float
+    p: float
+    shared_error: bool | None
+
+
+@dataclass(frozen=True)
 class ResidualStatistics:
     """Numbers on the residuals of the fitted points; None where they are not defined.
 
     `entropy_miss` is the integral of residual/T over the fitted points, J/(mol K), and `energy_miss` that of the
     residual, J/mol: what S and H of the model lack over the measured range. `run_means_percent` has one mean residual
-    for each run, NaN where none of its points is fitted.
+    for each run, NaN where none of its points is fitted. `lack_of_fit` is None where no points stand in sets of
+    repeats.
     """
 
     reduced_chi_square: float | None
@@ -130,6 +153,7 @@ class ResidualStatistics:
     entropy_miss: float
     energy_miss: float
     run_means_percent: tuple[float, ...]
+    lack_of_fit: LackOfFit | None = None
 
 
 @dataclass(frozen=True)

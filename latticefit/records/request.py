@@ -15,7 +15,8 @@ __all__ = ["AddendaSettings", "ModelSettings", "ReportSettings", "RunSettings", 
 class SampleSettings:
     """The `[sample]` table of a run sheet, as written (quantities are strings with unit).
 
-    `accept_level` takes a heat capacity whose level looks impossible as it stands.
+    `mass` may hold its standard uncertainty, as in ``"12.3(2) mg"``. `accept_level` takes a heat capacity whose level
+    looks impossible as it stands.
     """
 
     name: str | None = None
@@ -62,8 +63,8 @@ class AddendaSettings:
     """One `[[addenda]]` of a run sheet: a known heat capacity that is in the data and is taken off.
 
     Columns, units and sigma as in `RunSettings`. A file in J/K is taken off as it stands; one per gram needs `mass`
-    (grease, exchange gas) or `fraction`, the part of the sample's mass that is another substance. `runs` holds the
-    labels of the runs that it concerns, all of them when empty.
+    (grease, exchange gas) or `fraction`, the part of the sample's mass that is another substance, each also with its
+    uncertainty. `runs` holds the labels of the runs that it concerns, all of them when empty.
     """
 
     file: str

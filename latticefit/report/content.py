@@ -14,7 +14,9 @@ from ..models import build_model
 from ..records import Analysis, DerivedValue, ParameterValue, ThermodynamicTable
 from ..rounding import percent_text
 from ..wording import harmless
+from .corrections import correction_words, mass_words
 from .level import level_text
+from .noticed import averaged_words, lack_of_fit_words, overlap_words, points_read, rows_left_out
 from .wording import concise, plain_number, plus_minus, shown_unit, significant
 
 __all__ = [
@@ -96,17 +98,18 @@ def measured_rows(analysis: Analysis) -> tuple[Row, ...]:
     reasons = Counter(
         each for each, why in zip(prepared.reasons, set_aside, strict=True) if each is not None and why is None
     )
-    points = f"{prepared.temperature.size} fitted of {measurement.temperature.size} read"
+    points = f"{prepared.temperature.size} fitted of {points_read(measurement)} read"
     how = [
         f"T from {harmless(each.temperature_column)!r} in {each.temperature_unit}, heat capacity from "
         f"{harmless(each.heat_capacity_column)!r} in {each.heat_capacity_unit}"
         for each in measurement.readings
     ]
-    about += [] if sample.mass is None else [f"mass {plain_number(1e6 * sample.mass, 6)} mg"]
+    about += [] if sample.mass is None else [mass_words(measurement)]
     about += [] if sample.melting_point is None else [f"melting point {plain_number(sample.melting_point, 6)} K"]
     left_out = [f"{count} not fitted ({reason})" for reason, count in reasons.items()]
     left_out += [f"{aside} set aside by line or by condition, as the repairs say"] if aside else []
-    left_out += [f"{len(measurement.excluded)} rows left out at reading"] if measurement.excluded else []
+    left_out += averaged_words(measurement)
+    left_out += [f"{rows} rows left out at reading"] if (rows := rows_left_out(measurement)) else []
     return (
         Row("sample", headline(analysis), ", ".join(about)),
         Row("files", ", ".join(files), "; ".join(dict.fromkeys(how))),
@@ -114,7 +117,9 @@ def measured_rows(analysis: Analysis) -> tuple[Row, ...]:
         Row("points", points, "; ".join(left_out)),
         Row("range fitted", _range(prepared.temperature[0], prepared.temperature[-1])),
         Row("sigma", prepared.sigma_text, f"the covariance is {analysis.fit.covariance_kind}"),
+        *(Row(*each) for each in correction_words(measurement)),
         *(() if analysis.level is None else (Row("level", level_text(analysis.level)),)),
+        *(Row(*each) for each in overlap_words(prepared.overlaps)),
     )
 
 
@@ -264,6 +269,7 @@ def fit_rows(analysis: Analysis) -> tuple[Row, ...]:
             f"longest run of one sign: {statistics.longest_run} points",
         ),
         Row("AICc, BIC", f"{plain_number(statistics.aicc, 5)}, {plain_number(statistics.bic, 5)}"),
+        *(Row(*each) for each in lack_of_fit_words(statistics.lack_of_fit)),
     )
 
 
@@ -310,7 +316,9 @@ def provenance_rows(analysis: Analysis) -> tuple[Row, ...]:
     """Say which version made the result, when, from which bytes, with what."""
     provenance = analysis.provenance
     packages = ", ".join(f"{name} {version}" for name, version in provenance.packages.items())
-    read = dict.fromkeys((each.sha256, each.file) for each in analysis.measurement.readings)
+    measurement = analysis.measurement
+    every = (*measurement.readings, *measurement.addenda_readings)
+    read = dict.fromkeys((each.sha256, each.file) for each in every)
     files = tuple(Row("sha256", sha256, file) for sha256, file in read)
     return (
         Row("latticefit", provenance.version, packages),

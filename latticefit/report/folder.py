@@ -176,7 +176,7 @@ def _file_name(name: str) -> str:
 
 
 def _copy_inputs(analysis: Analysis, folder: Path) -> list[str]:
-    """Copy the files that were fitted and return the name of each run's file in the folder.
+    """Copy the files that were fitted, and those of addenda, and return the name of each one's copy in the folder.
 
     Raises
     ------
@@ -186,7 +186,8 @@ def _copy_inputs(analysis: Analysis, folder: Path) -> list[str]:
     folder.mkdir()
     by_path: dict[str, str] = {}
     taken: set[str] = set()
-    for reading in analysis.measurement.readings:
+    every = (*analysis.measurement.readings, *analysis.measurement.addenda_readings)
+    for reading in every:
         if reading.path in by_path:
             continue
         try:
@@ -202,7 +203,7 @@ def _copy_inputs(analysis: Analysis, folder: Path) -> list[str]:
         taken.add(name.casefold())
         by_path[reading.path] = name
         (folder / name).write_bytes(content)
-    return [by_path[reading.path] for reading in analysis.measurement.readings]
+    return [by_path[reading.path] for reading in every]
 
 
 def _copy_held(analysis: Analysis, folder: Path, names: list[str]) -> str | None:
@@ -229,7 +230,8 @@ def _free_name(name: str, taken: set[str]) -> str:
 
 def _portable_sheet(analysis: Analysis, names: list[str], held: str | None, figures: str) -> Sheet:
     """The sheet that repeats the run from inside the report folder: copied inputs, no folder to write to."""
-    readings = analysis.measurement.readings
+    measurement = analysis.measurement
+    readings = measurement.readings
     runs = tuple(
         # The label is kept: a copy may have another name than the file had. Runs that one file was divided into have
         # labels of their own, and its label stands in the settings that they share.
@@ -238,11 +240,17 @@ def _portable_sheet(analysis: Analysis, names: list[str], held: str | None, figu
             file=f"inputs/{name}",
             label=reading.label if reading.settings.split_by is None else reading.settings.label,
         )
-        for reading, name in zip(readings, names, strict=True)
+        for reading, name in zip(readings, names, strict=False)
+    )
+    copies = names[len(readings) :]
+    addenda = tuple(
+        replace(settings, file=f"inputs/{name}")
+        for settings, name in zip(measurement.addenda_settings, copies, strict=True)
     )
     return replace(
         analysis.sheet,
         runs=tuple(dict.fromkeys(runs)),
+        addenda=addenda,
         model=replace(analysis.sheet.model, fix_from=None if held is None else f"inputs/{held}"),
         report=replace(analysis.sheet.report, out=None, figures=figures),  # type: ignore[arg-type]
     )

@@ -2,32 +2,57 @@
 
 from __future__ import annotations
 
-from math import floor, log10
+from collections import Counter
+from collections.abc import Sequence
 from textwrap import wrap
 from typing import Any
 
 import numpy as np
 
-from ..diagnosing import examine_level
-from ..records import Measurement, Reading
+from ..diagnosing.examination import Decade, Examination, examine
+from ..records import Feature, Measurement, Reading, RunOverlap
+from ..rounding import percent_text
 from ..wording import harmless
-from .level import level_is_in_doubt, level_text
+from .corrections import correction_words
+from .level import level_is_in_doubt, level_record, level_text
+from .noticed import overlap_words
 from .wording import significant
 
-__all__ = ["inspection_record", "inspection_text"]
+__all__ = ["inspection_record", "inspection_text", "overlap_text"]
 
 _UNITS = {"mol": ("J/(mol K)", "J_mol_K"), "gram": ("J/(g K)", "J_g_K"), "sample": ("J/K", "J_K")}
 _DELIMITERS = {"comma": ",", "semicolon": ";", "tab": "\t", "blank": " "}
 _DECIMALS = {"point": ".", "comma": ","}
 _SHOWN_ROWS = 3
+_MOST_LINES = 12  # repairs of one kind of screen; the rest is counted
+_WIDTH = 80
+_LABEL = 14
 
 
 def inspection_record(measurement: Measurement) -> dict[str, Any]:
     """Return what was read from the one file of a measurement, as in the contract of ``inspect --json``."""
+    found = examine(measurement)
+    return {
+        **_how(measurement),
+        "points": int(measurement.temperature.size),
+        "rows_left_out": [{"line": each.line, "reason": each.reason} for each in measurement.excluded],
+        "repairs": [{"file": each.file, "line": each.line, "message": each.message} for each in measurement.repairs],
+        "warnings": _warnings(measurement, found),
+        "decades": [
+            {"low_K": each.low, "high_K": each.high, "points": each.points, "gaps_K": [list(gap) for gap in each.gaps]}
+            for each in found.decades
+        ],
+        "repeats": {"sets": found.repeated_sets, "points": found.repeated_points},
+        "scatter_percent": None if found.scatter is None else 100 * found.scatter,
+        "features": [_feature_record(each) for each in found.features],
+        "level": level_record(found.level),
+        "measurement": _arrays(measurement),
+    }
+
+
+def _how(measurement: Measurement) -> dict[str, Any]:
+    """How the file was read."""
     reading = measurement.readings[0]
-    key = _UNITS[measurement.basis][1]
-    sigma = None if measurement.sigma is None else measurement.sigma.tolist()
-    level = examine_level(measurement)
     return {
         "file": reading.file,
         "encoding": reading.encoding,
@@ -42,49 +67,79 @@ def inspection_record(measurement: Measurement) -> dict[str, Any]:
         "heat_capacity_unit": reading.heat_capacity_unit,
         "quantity": measurement.quantity,
         "sigma": measurement.sigma_text,
-        "points": int(measurement.temperature.size),
-        "repairs": [{"line": each.line, "message": each.message} for each in measurement.repairs],
-        "warnings": [level_text(level)] if level_is_in_doubt(level) else [],
-        "measurement": {
-            "temperature_K": measurement.temperature.tolist(),
-            f"heat_capacity_{key}": measurement.heat_capacity.tolist(),
-            f"sigma_{key}": sigma,
-        },
+        "runs": [each.label for each in measurement.readings],
+    }
+
+
+def _arrays(measurement: Measurement) -> dict[str, Any]:
+    key = _UNITS[measurement.basis][1]
+    return {
+        "temperature_K": measurement.temperature.tolist(),
+        f"heat_capacity_{key}": measurement.heat_capacity.tolist(),
+        f"sigma_{key}": None if measurement.sigma is None else measurement.sigma.tolist(),
+        "run": [measurement.readings[i].label for i in measurement.run.tolist()],
+        "line": measurement.line.tolist(),
+        "set_aside": list(measurement.set_aside or (None,) * measurement.run.size),
+    }
+
+
+def _warnings(measurement: Measurement, found: Examination) -> list[str]:
+    words = [level_text(found.level)] if level_is_in_doubt(found.level) else []
+    words += [f"outlier: {_outlier_words(measurement, *each)}" for each in found.outliers]
+    return words + [_feature_words(each) for each in found.features]
+
+
+def _feature_record(feature: Feature) -> dict[str, Any]:
+    return {
+        "kind": feature.kind,
+        "low_K": feature.temperature_low,
+        "high_K": feature.temperature_high,
+        "temperature_K": feature.temperature,
+        "size": feature.size,
+        "significance": feature.significance,
     }
 
 
 def inspection_text(measurement: Measurement) -> str:
-    """Return the same for people, within 80 columns."""
+    """Return the same for people, within 80 columns and one screen unless there is much to mend."""
     reading = measurement.readings[0]
     unit = _UNITS[measurement.basis][0]
-    T, C = np.asarray(measurement.temperature), np.asarray(measurement.heat_capacity)
-    order = np.argsort(T, kind="stable")
-    rows = sum(each.rows for each in measurement.readings)  # of all runs of one file
-    lines = [
-        harmless(reading.file),
-        f"  written     {_written(reading)}",
-        f"  temperature {harmless(reading.temperature_column)}, in {reading.temperature_unit}",
-        f"  {measurement.quantity}          {harmless(reading.heat_capacity_column)}, in {reading.heat_capacity_unit}"
-        + ("" if reading.heat_capacity_unit == unit else f", converted to {unit}"),
-        f"  sigma       {harmless(measurement.sigma_text) or 'none stated; fit estimates it from the local scatter'}",
-        f"  points      {T.size} of {rows} rows, {T.min():.4g} to {T.max():.4g} K",
-        f"  spread      {_per_decade(T)}",
-        f"  repeats     {_repeats(T)}",
-        *wrap(level_text(examine_level(measurement)), 80, initial_indent="  level       ", subsequent_indent=" " * 14),
-        "",
-        f"  {'T / K':>12} {measurement.quantity + ' / ' + unit:>18} {'sigma':>12}",
+    found = examine(measurement)
+    converted = "" if reading.heat_capacity_unit == unit else f", converted to {unit}"
+    facts: list[tuple[str, str]] = [
+        ("written", _written(reading)),
+        ("temperature", f"{harmless(reading.temperature_column)}, in {reading.temperature_unit}"),
+        (
+            measurement.quantity,
+            f"{harmless(reading.heat_capacity_column)}, in {reading.heat_capacity_unit}{converted}",
+        ),
+        ("sigma", _sigma(measurement, found)),
+        ("points", _points(measurement, found)),
+        *([("runs", _runs(measurement))] if len(measurement.readings) > 1 else []),
+        *(
+            (harmless(label), harmless(_with_remark(words, remark)))
+            for label, words, remark in correction_words(measurement)
+        ),
+        ("spread", ", ".join(map(_decade_words, found.decades))),
+        ("repeats", _repeats(found)),
+        ("outliers", _listed([_outlier_words(measurement, *each) for each in found.outliers])),
+        ("features", _listed([_feature_words(each) for each in found.features])),
+        ("level", level_text(found.level)),
     ]
-    shown = [*order[:_SHOWN_ROWS], *order[max(_SHOWN_ROWS, T.size - _SHOWN_ROWS) :]]
-    for position, i in enumerate(shown):
-        if position == _SHOWN_ROWS and T.size > 2 * _SHOWN_ROWS:
-            lines.append(f"  {'...':>12}")
-        sigma = "" if measurement.sigma is None else significant(float(measurement.sigma[i]), 2)
-        lines.append(f"  {float(T[i]):>12.6g} {float(C[i]):>18.6g} {sigma:>12}")
-    lines += ["", "  repairs     " + ("none" if not measurement.repairs else "")]
-    for each in measurement.repairs:
-        where = "whole file" if each.line is None else f"line {each.line}"
-        lines.append(f"    {where}: {harmless(each.message)}")
+    lines = [harmless(reading.file)]
+    for label, words in facts:
+        lines += _entry(label, words)
+    lines += ["", *_rows(measurement), "", *_repairs(measurement)]
     return "\n".join(lines).rstrip() + "\n"
+
+
+def _entry(label: str, words: str) -> list[str]:
+    first = f"  {label:<{_LABEL - 3}} "
+    return wrap(words, _WIDTH, initial_indent=first, subsequent_indent=" " * _LABEL, break_on_hyphens=False)
+
+
+def _with_remark(words: str, remark: str) -> str:
+    return f"{words} ({remark})" if remark else words
 
 
 def _written(reading: Reading) -> str:
@@ -93,14 +148,102 @@ def _written(reading: Reading) -> str:
     return f"{reading.encoding}, separated by {reading.delimiter}, decimal {reading.decimal}"
 
 
-def _per_decade(T: np.ndarray) -> str:
-    powers = range(floor(log10(T.min())), floor(log10(T.max())) + 1)
-    counts = [
-        (f"{10.0**p:g}-{10.0 ** (p + 1):g} K", int(((10.0**p <= T) & (10.0 ** (p + 1) > T)).sum())) for p in powers
-    ]
-    return ", ".join(f"{count} in {band}" for band, count in counts)
+def _sigma(measurement: Measurement, found: Examination) -> str:
+    scatter = "" if found.scatter is None else f"the points scatter by {percent_text(100 * found.scatter)}"
+    if measurement.sigma is None:
+        asked = measurement.readings[0].settings.sigma
+        words = f"to be taken from {asked}" if asked in ("scatter", "replicates") else "none stated"
+        return f"{words}; {scatter}" if scatter else words
+    relative = np.asarray(measurement.sigma) / np.asarray(measurement.heat_capacity)
+    size = f"{percent_text(100 * float(relative.min()))} to {percent_text(100 * float(relative.max()))}"
+    if np.isclose(relative.min(), relative.max(), rtol=0.02):
+        size = percent_text(100 * float(np.median(relative)))
+    return f"{harmless(measurement.sigma_text)}: {size}" + (f"; {scatter}" if scatter else "")
 
 
-def _repeats(T: np.ndarray) -> str:
-    repeated = T.size - np.unique(T).size
-    return "none" if repeated == 0 else f"{repeated} points at a temperature that stands already"
+def _points(measurement: Measurement, found: Examination) -> str:
+    T = measurement.temperature
+    rows = sum(each.rows for each in measurement.readings)
+    words = f"{T.size} of {rows} rows, {T.min():.4g} to {T.max():.4g} K"
+    if not found.left_out:
+        return words
+    counts = Counter(harmless(each) for each in found.left_out)
+    named = [f"{count} {reason}" for reason, count in counts.most_common(3)]
+    more = "" if len(counts) <= 3 else f", {sum(counts.values()) - sum(n for _, n in counts.most_common(3))} others"
+    return f"{words}; {T.size - len(found.left_out)} to be fitted ({'; '.join(named)}{more})"
+
+
+def _runs(measurement: Measurement) -> str:
+    counts = np.bincount(measurement.run, minlength=len(measurement.readings))
+    return ", ".join(
+        f"{harmless(each.label)} ({count})" for each, count in zip(measurement.readings, counts, strict=True)
+    )
+
+
+def _decade_words(decade: Decade) -> str:
+    words = f"{decade.points} in {decade.low:g}-{decade.high:g} K"
+    gaps = " and ".join(f"{low:.4g}-{high:.4g}" for low, high in decade.gaps)
+    return f"{words} (none from {gaps} K)" if gaps else words
+
+
+def _repeats(found: Examination) -> str:
+    if not found.repeated_sets:
+        return "none"
+    return f"{found.repeated_points} points in {found.repeated_sets} sets (--replicates says what is done with them)"
+
+
+def _outlier_words(measurement: Measurement, position: int, size: float) -> str:
+    side = "above" if size > 0 else "below"
+    where = f"line {measurement.line[position]}, {measurement.temperature[position]:.4g} K"
+    return f"{where}: {abs(size):.1f} times the scatter {side} its neighbours"
+
+
+def _feature_words(feature: Feature) -> str:
+    span = f"{feature.temperature_low:.4g}-{feature.temperature_high:.4g} K"
+    if feature.kind == "upturn":
+        return f"upturn of C/T on cooling, {span}: {percent_text(100 * abs(feature.size))}"
+    return f"{feature.kind} at {feature.temperature:.4g} K ({span}): {percent_text(100 * abs(feature.size))}"
+
+
+def _listed(words: Sequence[str]) -> str:
+    if not words:
+        return "none"
+    shown = "; ".join(words[:3])
+    return shown if len(words) <= 3 else f"{shown}; and {len(words) - 3} more"
+
+
+def _rows(measurement: Measurement) -> list[str]:
+    """The first and last points by temperature."""
+    T, C = np.asarray(measurement.temperature), np.asarray(measurement.heat_capacity)
+    order = np.argsort(T, kind="stable")
+    unit = _UNITS[measurement.basis][0]
+    lines = [f"  {'T / K':>12} {measurement.quantity + ' / ' + unit:>18} {'sigma':>12}".rstrip()]
+    shown = [*order[:_SHOWN_ROWS], *order[max(_SHOWN_ROWS, T.size - _SHOWN_ROWS) :]]
+    for place, i in enumerate(shown):
+        if place == _SHOWN_ROWS and T.size > 2 * _SHOWN_ROWS:
+            lines.append(f"  {'...':>12}")
+        sigma = "" if measurement.sigma is None else significant(float(measurement.sigma[i]), 2)
+        lines.append(f"  {float(T[i]):>12.6g} {float(C[i]):>18.6g} {sigma:>12}".rstrip())
+    return lines
+
+
+def _repairs(measurement: Measurement) -> list[str]:
+    if not measurement.repairs:
+        return ["  repairs     none"]
+    known = {each.file for each in measurement.addenda_readings}
+    lines = ["  repairs"]
+    for each in measurement.repairs[:_MOST_LINES]:
+        where = "whole file" if each.line is None else f"line {each.line}"
+        where = f"{harmless(each.file)}, {where}" if each.file in known else where
+        words = f"{where}: {harmless(each.message)}"
+        lines += wrap(words, _WIDTH, initial_indent="    ", subsequent_indent="      ", break_on_hyphens=False)
+    more = len(measurement.repairs) - _MOST_LINES
+    return [*lines, *([f"    and {more} more (--json lists all)"] if more > 0 else [])]
+
+
+def overlap_text(overlaps: tuple[RunOverlap, ...]) -> str:
+    """Return how runs compare where they overlap, a line each."""
+    lines = []
+    for label, words, remark in overlap_words(overlaps):
+        lines += _entry(label, harmless(_with_remark(words, remark)))
+    return "\n".join(lines) + ("\n" if lines else "")

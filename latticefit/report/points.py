@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from ..preparing.addenda import with_addenda
 from ..records import Analysis, FloatArray, Frozen
 
 __all__ = ["MeasuredPoints", "measured_points"]
@@ -30,6 +31,8 @@ class MeasuredPoints(Frozen):
         Whether the point is fitted.
     reasons : tuple of (str or None)
         Why a point is not fitted.
+    flags : tuple of (str or None)
+        How far a point lies from its neighbours, where that is too far for scatter.
     """
 
     temperature: FloatArray
@@ -43,6 +46,7 @@ class MeasuredPoints(Frozen):
     line: NDArray[np.intp]
     used: NDArray[np.bool_]
     reasons: tuple[str | None, ...]
+    flags: tuple[str | None, ...]
 
 
 def measured_points(analysis: Analysis) -> MeasuredPoints:
@@ -55,8 +59,8 @@ def measured_points(analysis: Analysis) -> MeasuredPoints:
     model = diagnosis.model_all
     residual = measurement.heat_capacity - model
     percent = 100 * np.divide(residual, model, out=np.full_like(residual, np.nan), where=model != 0)
-    stated = measurement.sigma is not None
-    sigma = np.array(measurement.sigma) if stated else np.full_like(residual, np.nan)
+    stated = np.full_like(residual, np.nan) if measurement.sigma is None else np.array(measurement.sigma)
+    sigma, _ = with_addenda(measurement, np.arange(residual.size), stated, "")
     normalised = residual / sigma
     for column, fitted in (
         (residual, diagnosis.residual),
@@ -79,4 +83,5 @@ def measured_points(analysis: Analysis) -> MeasuredPoints:
         line=measurement.line,
         used=used,
         reasons=prepared.reasons,
+        flags=prepared.flags or (None,) * residual.size,
     )

@@ -16,7 +16,9 @@ from ..records import (
     ResidualStatistics,
     ThermodynamicTable,
 )
+from .corrections import addenda_record
 from .level import level_record
+from .noticed import lack_of_fit_record, overlap_record, points_averaged, points_read, rows_left_out
 from .ranking import comparison_record
 
 __all__ = ["SCHEMA", "json_text", "result_record", "thermodynamic_rows"]
@@ -105,6 +107,8 @@ def _sample(analysis: Analysis) -> dict[str, Any]:
         "atoms_per_formula_unit": _number(sample.atoms),
         "molar_mass_g_mol": _number(molar_mass),
         "melting_point_K": _number(sample.melting_point),
+        "mass_mg": _number(None if sample.mass is None else round(1e6 * sample.mass, 9)),
+        "mass_u_mg": _number(None if sample.mass_u is None else round(1e6 * sample.mass_u, 9)),
     }
 
 
@@ -112,15 +116,18 @@ def _data(analysis: Analysis) -> dict[str, Any]:
     measurement, prepared = analysis.measurement, analysis.prepared
     return {
         "sources": [{"file": each.file, "sha256": each.sha256, "label": each.label} for each in measurement.readings],
+        "addenda": addenda_record(measurement),
         "quantity": measurement.quantity,
-        "points_read": int(measurement.temperature.size),
+        "points_read": points_read(measurement),
+        "points_averaged": points_averaged(measurement)[0],
         "points_fitted": int(prepared.temperature.size),
-        "rows_excluded": len(measurement.excluded),
+        "rows_excluded": rows_left_out(measurement),
         "temperature_min_K": _number(prepared.temperature[0]),
         "temperature_max_K": _number(prepared.temperature[-1]),
         "sigma_kind": prepared.sigma_kind,
         "sigma_text": prepared.sigma_text,
         "level": level_record(analysis.level),
+        "overlaps": overlap_record(prepared.overlaps),
         "repairs": [{"file": each.file, "line": each.line, "message": each.message} for each in measurement.repairs],
     }
 
@@ -187,6 +194,7 @@ def _residuals(statistics: ResidualStatistics) -> dict[str, Any]:
         "lag1_correlation": _number(statistics.lag1_correlation),
         "runs_test_p": _number(statistics.runs_test_p),
         "longest_run": int(statistics.longest_run),
+        "lack_of_fit": lack_of_fit_record(statistics.lack_of_fit),
         "bands": [
             {
                 "temperature_low_K": _number(each.temperature_low),

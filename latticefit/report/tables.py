@@ -14,6 +14,7 @@ from .result import thermodynamic_rows
 
 __all__ = ["residual_rows", "residuals_csv", "table_csv"]
 
+_LEFT_OUT, _AVERAGED = "the row was left out at reading", "the mean of its set has one"
 _FORMULA_MARKS = ("=", "+", "-", "@")
 
 
@@ -44,11 +45,13 @@ def _known(value: float) -> float | None:
 
 def _measured_rows(analysis: Analysis) -> list[tuple[int, dict[str, Any]]]:
     points, theta = measured_points(analysis), analysis.derived.pointwise_theta
+    addenda = analysis.measurement.addenda
     rows = [
         _place(analysis, int(points.run[i]), int(points.line[i]))
         | {
             "temperature_K": _known(points.temperature[i]),
             "heat_capacity_J_mol_K": _known(points.heat_capacity[i]),
+            **({} if addenda is None else {"addenda_J_mol_K": _known(addenda[i])}),
             "sigma_J_mol_K": _known(points.sigma[i]),
             "model_J_mol_K": _known(points.model[i]),
             "residual_J_mol_K": _known(points.residual[i]),
@@ -56,6 +59,7 @@ def _measured_rows(analysis: Analysis) -> list[tuple[int, dict[str, Any]]]:
             "residual_normalised": _known(points.residual_normalised[i]),
             "used": "yes" if points.used[i] else "no",
             "reason": points.reasons[i],
+            "flag": points.flags[i],
             "theta_debye_K": _known(theta.theta[i]),
             "theta_debye_u_K": _known(theta.u[i]),
             "theta_debye_reason": theta.reasons[i],
@@ -72,6 +76,7 @@ def _excluded_rows(analysis: Analysis) -> list[tuple[int, dict[str, Any]]]:
         | {
             "temperature_K": _known(each.temperature),
             "heat_capacity_J_mol_K": _known(each.heat_capacity),
+            **({} if analysis.measurement.addenda is None else {"addenda_J_mol_K": None}),
             "sigma_J_mol_K": _known(each.sigma),
             "model_J_mol_K": None,
             "residual_J_mol_K": None,
@@ -79,9 +84,10 @@ def _excluded_rows(analysis: Analysis) -> list[tuple[int, dict[str, Any]]]:
             "residual_normalised": None,
             "used": "no",
             "reason": each.reason,
+            "flag": None,
             "theta_debye_K": None,
             "theta_debye_u_K": None,
-            "theta_debye_reason": "the row was left out at reading",
+            "theta_debye_reason": _LEFT_OUT if each.averaged_into is None else _AVERAGED,
         }
         for each in excluded
     ]

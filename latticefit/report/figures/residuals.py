@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from matplotlib.axes import Axes
@@ -12,7 +12,7 @@ from matplotlib.lines import Line2D
 
 from ...records import Analysis
 from ...rounding import percent_text
-from ..points import measured_points
+from ..points import MeasuredPoints, measured_points
 from ..wording import plain_number
 from .drawing import PointArtists, draw_points, largest, mark_beyond
 from .report_figure import ReportFigure
@@ -33,6 +33,7 @@ class ResidualArtists:
     band: PolyCollection
     zero: Line2D
     beyond: Line2D | None
+    flagged: Line2D | None = None
 
 
 def plot_residuals(axes: Axes, analysis: Analysis) -> ResidualArtists:
@@ -57,10 +58,30 @@ def plot_residuals(axes: Axes, analysis: Analysis) -> ResidualArtists:
     return ResidualArtists(axes, drawn, band, zero, beyond)
 
 
+def _ring_flagged(axes: Axes, points: MeasuredPoints) -> Line2D | None:
+    """Draw a ring around every point that lies too far from its neighbours; None where there is none."""
+    chosen = np.array([flag is not None for flag in points.flags])
+    if not chosen.any():
+        return None
+    (line,) = axes.plot(
+        points.temperature[chosen],
+        points.residual_percent[chosen],
+        linestyle="none",
+        marker="o",
+        markersize=7.0,
+        markerfacecolor="none",
+        markeredgecolor="black",
+        markeredgewidth=0.7,
+        zorder=3.5,
+        label="far from neighbours",
+    )
+    return line
+
+
 def draw(figure: Figure, analysis: Analysis) -> ResidualArtists:
-    """Draw percent residuals against the logarithm of T, with the +-sigma of the points."""
+    """Draw percent residuals against the logarithm of T, with the +-sigma of the points and rings around outliers."""
     axes = figure.add_subplot()
-    artists = plot_residuals(axes, analysis)
+    artists = replace(plot_residuals(axes, analysis), flagged=_ring_flagged(axes, measured_points(analysis)))
     logarithmic_temperature(axes, analysis.prepared.measurement.temperature)
     axes.set_xlabel(temperature_label())
     legend_above(figure, axes)
