@@ -22,7 +22,7 @@ _LOW, _HIGH = 0.05, 2.5  # times Tmax, of a theta: modes above are hardly seen, 
 _FLOOR = 0.005  # relative; two bands follow the spectrum of a solid no better than this
 _MOST_POINTS = 60
 _GRID = 12
-_STARTS = 3
+_STARTS = 2
 _ROBUST = 2.5  # standard deviations beyond which a point (of a peak) loses its weight
 
 # a theta_D[m=2], where a T is what Cp - Cv adds to C: near 0.03 for copper, 0.05 for aluminium and alkali halides,
@@ -96,7 +96,9 @@ def count_modes(prepared: PreparedData) -> ModeCount | None:
         return None
     held = _held(first, dilation[0] / theta)
     points = _robust(model, held, points)
-    fits = [_fit(_held(held, (dilation[0] + z * spread) / theta), points) for z in _NODES[: 5 if spread else 1]]
+    fits = [
+        _fit(_held(held, (dilation[0] + z * spread) / theta), points) for z in _NODES[: len(_NODES) if spread else 1]
+    ]
     return _average(model, fits, points)
 
 
@@ -146,17 +148,27 @@ def _first(model: Model, points: _Points) -> Solution:
     columns = columns / points.sigma
     target = points.C / points.sigma
     gram, seen = columns @ columns.T, columns @ target
-    starts = []
-    for i in range(_GRID):
-        for j in range(_GRID, 2 * _GRID):
-            modes = np.linalg.lstsq(gram[np.ix_([i, j], [i, j])], seen[[i, j]], rcond=None)[0]
-            if (modes < 0).any():
-                modes = np.where(modes < 0, 0.0, seen[[i, j]] / gram[[i, j], [i, j]])
-            misfit = float(modes @ gram[np.ix_([i, j], [i, j])] @ modes - 2 * modes @ seen[[i, j]])
-            starts.append((misfit, (debye[i], modes[0], einstein[j - _GRID], modes[1], 0.0)))
-    starts.sort(key=lambda each: each[0])
-    found = [minimise(par, np.array(vector), *_data(points), tolerance=1e-6) for _, vector in starts[:_STARTS]]
+    i, j = (each.ravel() for each in np.meshgrid(np.arange(_GRID), np.arange(_GRID, 2 * _GRID), indexing="ij"))
+    modes, misfit = _pairs(gram[i, i], gram[j, j], gram[i, j], seen[i], seen[j])
+    starts = np.column_stack([debye[i], modes[0], einstein[j - _GRID], modes[1], np.zeros(i.size)])
+    best = np.argsort(misfit)[:_STARTS]
+    found = [minimise(par, starts[k], *_data(points), tolerance=1e-6) for k in best]
     return min(found, key=lambda each: each.chi_square)
+
+
+def _pairs(
+    first: FloatArray, second: FloatArray, mixed: FloatArray, seen: FloatArray, also: FloatArray
+) -> tuple[FloatArray, FloatArray]:
+    """Solve many normal equations of two amplitudes that may not be negative: amplitudes (2, n), chi-square but a term.
+
+    Where one comes out negative, the better of the two alone is the solution.
+    """
+    determinant = np.maximum(first * second - mixed**2, 1e-12 * first * second)
+    both = np.array([second * seen - mixed * also, first * also - mixed * seen]) / determinant
+    alone = np.where(seen**2 / first > also**2 / second, [seen / first, 0 * also], [0 * seen, also / second])
+    modes = np.where((both >= 0).all(axis=0), both, alone)
+    gained = modes[0] * seen + modes[1] * also
+    return modes, modes[0] ** 2 * first + modes[1] ** 2 * second + 2 * modes[0] * modes[1] * mixed - 2 * gained
 
 
 def _data(points: _Points) -> tuple[FloatArray, FloatArray, FloatArray]:
