@@ -14,6 +14,7 @@ import pytest
 from helpers import DEMO, REFERENCE, ROOT, invented_solid, prepared_data
 
 import latticefit as lf
+from latticefit.constants import GAS_CONSTANT
 from latticefit.diagnosing import diagnose
 from latticefit.fitting import fit_model
 from latticefit.models import build_model, heat_capacity
@@ -210,6 +211,19 @@ def test_an_upturn_is_found_and_a_metal_has_none() -> None:
     assert found.temperature_low == found.temperature == T[0]
     assert found.temperature_high < 4.0
     assert found.significance > 10
+
+
+def test_a_broad_hump_is_a_peak() -> None:
+    """Two levels 12 K apart in a metal: the heat capacity falls from 5 K on, which no lattice does."""
+    random = np.random.default_rng(10)
+    T = np.geomspace(0.4, 50.0, 120)
+    metal = heat_capacity(build_model("debye + electronic"), T, np.array([300.0, 6.0, 4e-3]))
+    x = 12.0 / T
+    levels = GAS_CONSTANT * x**2 * np.exp(-x) / (1 + np.exp(-x)) ** 2
+    (found,) = kinds(T, (metal + levels) * (1 + 0.005 * random.standard_normal(120)))
+    assert found.kind == "peak"
+    assert found.temperature == pytest.approx(0.4168 * 12.0, rel=0.1)  # where two levels have their peak
+    assert found.temperature_low < 3.0 < 15.0 < found.temperature_high
 
 
 def test_glitches_and_scattered_sets_are_no_features() -> None:
