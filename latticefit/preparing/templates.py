@@ -217,7 +217,7 @@ def _joined(found: list[_Found], excess: FloatArray, with_steps: FloatArray, poi
         else:
             groups.append([each])
     peaks = [group for group in groups if _rises(group[0].first, _end(group), excess)]
-    features = [each for group in peaks if (each := _peak(group, excess, temperature)).size >= _LEAST_SIZE]
+    features = [peak for group in peaks if (peak := _peak(group, excess, temperature)).size >= _LEAST_SIZE]
     taken = [(group[0].first, _end(group)) for group in peaks]
     for each in (each for each in found if each.kind == "step"):
         inside = any(beside(last, each.first) and beside(each.last, first) for first, last in taken)
