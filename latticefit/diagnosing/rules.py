@@ -30,13 +30,13 @@ _RULES: dict[str, Callable[[Case], NamedWarning | None]] = {
     "not-unique": fit_rules.not_unique,
     "strong-correlation": fit_rules.strong_correlation,
     "correlated-residuals": data_rules.correlated_residuals,
+    "outliers": point_rules.outliers,
     "gamma-reach": range_rules.gamma_reach,
     "cp-cv-missing": range_rules.cp_cv_missing,
     "mode-sum": range_rules.mode_sum,
     "sigma-overstated": data_rules.sigma_overstated,
     "sigma-assumed": data_rules.sigma_assumed,
     "few-points": data_rules.few_points,
-    "outliers": point_rules.outliers,
 }
 
 RULES: Mapping[str, Callable[[Case], NamedWarning | None]] = MappingProxyType(_RULES)
