@@ -240,9 +240,9 @@ DEMOS = (
 )
 
 
-def molar_mass(demo: Demo) -> float:
+def molar_mass(formula: str) -> float:
     """kg/mol."""
-    found = build_sample(SampleSettings(formula=demo.formula), demo.name).molar_mass
+    found = build_sample(SampleSettings(formula=formula), formula).molar_mass
     assert found is not None
     return found
 
@@ -259,7 +259,95 @@ def lines(demo: Demo) -> list[str]:
         f"# Formula {demo.formula} (a composition that does not exist); {demo.about}.",
         f"# Made by scripts/make_demo_data.py, seed {demo.seed}; the exact solid stands in truth.toml.",
     ]
-    return header + demo.write(T, measured, demo.noise * exact, 1e3 * molar_mass(demo))
+    return header + demo.write(T, measured, demo.noise * exact, 1e3 * molar_mass(demo.formula))
+
+
+# ------------------------------------------------------------------------------- two platforms, and a blank forgotten
+
+GRANNESE = model_truth(
+    "debye + einstein",
+    "none",
+    3,
+    {"debye_theta": 210.0, "debye_modes": 4.5, "einstein_theta": 380.0, "einstein_modes": 4.5},
+)
+GRANNESE_STEP = 1.025  # scale of the cold platform over the warm one
+QUELLITE = model_truth(
+    "debye + einstein",
+    "none",
+    2,
+    {"debye_theta": 320.0, "debye_modes": 3.0, "einstein_theta": 520.0, "einstein_modes": 3.0},
+)
+QUELLITE_MASS = 2.1e-6  # kg
+
+
+def heading(title: str, formula: str, about: str, seed: int) -> list[str]:
+    """The comment lines above a table."""
+    return [
+        f"# invented data: {title}. {LABORATORY}.",
+        f"# Formula {formula} (a composition that does not exist); {about}.",
+        f"# Made by scripts/make_demo_data.py, seed {seed}; the exact solid stands in truth.toml.",
+    ]
+
+
+def triplicates(low: float, high: float, sets: int, rng: np.random.Generator) -> np.ndarray:
+    """Temperatures in sets of three within 0.05 %, K."""
+    return np.repeat(np.geomspace(low, high, sets), 3) * (1 + 2.5e-4 * rng.uniform(-1, 1, 3 * sets))
+
+
+def grannese(cold: bool) -> str:
+    """Triplicates of one crystal on one platform; the first of each set has not settled and lies 1.5 % high."""
+    seed = 107 if cold else 106
+    rng = np.random.default_rng(seed)
+    T = np.round(triplicates(0.4, 20.0, 36, rng) if cold else triplicates(2.0, 300.0, 48, rng), 5)
+    noise = 0.006 if cold else 0.005
+    C = GRANNESE.heat_capacity(T) * (1 + noise * rng.standard_normal(T.size)) * (GRANNESE_STEP if cold else 1.0)
+    C[::3] *= 1.015
+    where = "cold platform, 0.4-20 K" if cold else "warm platform, 2-300 K"
+    about = f"{where}; every temperature measured three times; heat capacity in uJ/K of 4.8 mg"
+    per_mass = 4.8e-6 / molar_mass("HeNeAr") * 1e6
+    rows = [f"{t:.5f}\t{c * per_mass:.6g}" for t, c in zip(T, C, strict=True)]
+    return "\n".join([*heading("Grannese, crystal GR-1", "HeNeAr", about, seed), "T (K)\tC (uJ/K)", *rows]) + "\n"
+
+
+def quellite_addenda(T: np.ndarray) -> np.ndarray:
+    """Platform and grease, J/K: more than half of what the sample adds."""
+    return 3.2e-4 * np.asarray(einstein_heat_capacity(160.0 / T)) + 2.0e-9 * T + 1.0e-4 * (T / 300) ** 2.6
+
+
+def quellite(blank: bool) -> str:
+    """The blank alone, or the sample on it, J/K."""
+    seed = 109 if blank else 108
+    rng = np.random.default_rng(seed)
+    T = np.round(np.geomspace(1.8, 305.0, 70) if blank else np.geomspace(2.0, 300.0, 110), 4)
+    total = quellite_addenda(T)
+    if not blank:
+        total = total + QUELLITE.heat_capacity(T) * QUELLITE_MASS / molar_mass("NeXe")
+    total = total * (1 + 0.004 * rng.standard_normal(T.size))
+    what = "platform and grease alone" if blank else "crystal of 2.1 mg on platform and grease, nothing taken off"
+    rows = [f"{t:.4f};{c:.6e};{0.004 * c:.2e}" for t, c in zip(T, total, strict=True)]
+    header = "T [K];C [J/K];sigma [J/K]"
+    return "\n".join([*heading("Quellite, crystal Q-3", "NeXe", what, seed), header, *rows]) + "\n"
+
+
+def run_truth() -> dict[str, object]:
+    """What stands behind the files of several runs and of the blank."""
+    return {
+        "grannese": {
+            "title": "Grannese, crystal GR-1, on two platforms",
+            "formula": "HeNeAr",
+            "mass_mg": 4.8,
+            "step_cold_over_warm": GRANNESE_STEP,
+            "first_of_each_set_high_percent": 1.5,
+            "solid": GRANNESE.facts,
+        },
+        "quellite": {
+            "title": "Quellite, crystal Q-3, with its blank",
+            "formula": "NeXe",
+            "mass_mg": 1e6 * QUELLITE_MASS,
+            "noise_percent": 0.4,
+            "solid": QUELLITE.facts,
+        },
+    }
 
 
 def truth_text() -> str:
@@ -273,13 +361,20 @@ def truth_text() -> str:
         }
         for demo in DEMOS
     }
+    facts |= run_truth()
     return f"# invented data: the exact solids behind the demo files. {LABORATORY}.\n" + tomli_w.dumps(facts)
 
 
 def files() -> dict[str, bytes]:
     """Every file's name and content."""
     texts = {f"{demo.name}.csv": encoded("\n".join(lines(demo)) + "\n", demo.utf16) for demo in DEMOS}
-    return {**texts, "truth.toml": encoded(truth_text())}
+    runs = {
+        "grannese_cold.csv": grannese(True),
+        "grannese_warm.csv": grannese(False),
+        "quellite_addenda.csv": quellite(True),
+        "quellite_total.csv": quellite(False),
+    }
+    return {**texts, **{name: encoded(text) for name, text in runs.items()}, "truth.toml": encoded(truth_text())}
 
 
 def encoded(text: str, utf16: bool = False) -> bytes:

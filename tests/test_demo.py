@@ -85,3 +85,34 @@ def test_the_hydrate_is_read_as_it_comes_and_its_water_is_missed_where_it_is_lef
     assert f"a formula without its 2 H2O would give (1.28): give --formula '{formula}'" in " ".join(
         str(without).split()
     )
+
+
+def test_two_platforms_show_their_step_once_the_unsettled_points_are_dropped() -> None:
+    """Grannese: the overlap gives the stated scale of the cold platform, and the first of each set is found high."""
+    facts = TRUTH["grannese"]
+    files = [DEMO / "grannese_warm.csv", DEMO / "grannese_cold.csv"]
+    data = lf.read(files, formula=facts["formula"], mass=f"{facts['mass_mg']} mg")
+    fit = lf.fit(data, "debye + einstein", replicates="drop-first")
+    (overlap,) = fit.analysis.prepared.overlaps
+    assert abs(1 / overlap.ratio - facts["step_cold_over_warm"]) < 2.5 * overlap.u
+    assert "run-overlap" in fit.warnings["code"].tolist()
+    dropped = fit.residuals["reason"].fillna("").str.startswith("first of a set of 3")
+    assert dropped.sum() == 84
+    from latticefit.report import text_report
+
+    kept = text_report(lf.fit(data, "debye + einstein").analysis)
+    assert "the first" in " ".join(kept.split())
+
+
+def test_a_forgotten_blank_is_named_and_its_file_mends_it() -> None:
+    """Quellite: refused with the addenda as the reason; with their file S and theta_D(T->0) of the stated solid."""
+    facts = TRUTH["quellite"]
+    sample = {"formula": facts["formula"], "mass": f"{facts['mass_mg']} mg"}
+    with pytest.raises(lf.InputError, match="the heat capacity of the addenda, still in the data"):
+        lf.fit(lf.read(DEMO / "quellite_total.csv", **sample), "debye + einstein")
+    data = lf.read(DEMO / "quellite_total.csv", addenda=DEMO / "quellite_addenda.csv", **sample)
+    fit = lf.fit(data, "debye + einstein")
+    row = fit.table([298.15]).iloc[0]
+    assert abs(row["entropy_J_mol_K"] - facts["solid"]["entropy_298_J_mol_K"]) < 3.5 * row["entropy_u_J_mol_K"]
+    theta = fit.characteristic_temperatures.loc["theta_debye_low_temperature"]
+    assert abs(theta["value_K"] - facts["solid"]["theta_debye_low_temperature_K"]) < 3.5 * theta["u_K"]

@@ -20,6 +20,7 @@ from latticefit.diagnosing import (
     runs_test,
 )
 from latticefit.fitting import fit_model
+from latticefit.preparing import prepare
 from latticefit.records import Diagnosis, ModelSettings, PreparedData
 
 T = np.geomspace(2.0, 300.0, 120)
@@ -136,6 +137,11 @@ def triggers() -> dict[str, Diagnosis]:
         "strong-correlation": diagnosed(two, "debye + 2 einstein"),
         "cp-cv-missing": diagnosed(metal, METAL[0]),
         "mode-sum": diagnosed(replace_atoms(invented_solid(*insulator, T), 3.0), "debye + einstein", "free"),
+        "run-overlap": diagnosed(prepare(two_runs().measurement), METAL[0]),
+        "outliers": diagnosed(with_factor(np.where(np.arange(T.size) == 70, 1.06, 1.0)), METAL[0]),
+        "suspected-feature": diagnosed(with_factor(1 + 0.1 * np.exp(-(((T - 40) / 4) ** 2))), METAL[0]),
+        "replicate-spread": diagnosed(triplicates(0.02, 0.005), METAL[0]),
+        "lack-of-fit": diagnosed(triplicates(0.005, 0.005), "debye + electronic"),
         "sigma-overstated": diagnosed(prepared_data(T, C, 0.05 * C, atoms=1), METAL[0]),
         "sigma-assumed": diagnosed(
             replace(metal, sigma_kind="estimated", sigma_text="assumed: 1 %", sigma_assumed=True), METAL[0]
@@ -191,6 +197,18 @@ def two_runs() -> PreparedData:
     readings = (first, replace(first, label="run 2"))
     measurement = replace(data.measurement, readings=readings, run=run, heat_capacity=C)
     return replace(data, measurement=measurement, run=run, heat_capacity=C)
+
+
+def with_factor(factor: np.ndarray) -> PreparedData:
+    """The metal, prepared from a measurement, with a factor on each heat capacity."""
+    data = invented_solid(*METAL, T, atoms=1).measurement
+    return prepare(replace(data, heat_capacity=np.array(data.heat_capacity) * factor))
+
+
+def triplicates(noise: float, stated: float) -> PreparedData:
+    """The metal measured three times at each temperature, with noise and stated relative sigma."""
+    data = invented_solid(*METAL, np.repeat(np.geomspace(2.0, 300.0, 50), 3), noise, atoms=1).measurement
+    return prepare(replace(data, sigma=stated * np.array(data.heat_capacity)))
 
 
 def replace_atoms(data: PreparedData, atoms: float) -> PreparedData:

@@ -21,7 +21,7 @@ from ..records import FloatArray, LevelExplanation, LevelFinding, LevelVerdict, 
 from .hydrates import Slip
 from .level_fit import ModeCount, count_modes
 from .level_words import level_sentence
-from .slips import possible_slips
+from .slips import addenda_left_in, possible_slips
 from .stiff import stiff_share
 
 __all__ = ["LEVEL_IMPOSSIBLE", "examine_level", "examine_prepared_level", "explain_mode_sum"]
@@ -39,6 +39,7 @@ _LEAST, _SURE = 0.03, 3.0  # a mode sum off by less, or by fewer standard uncert
 _STATED_LEAST, _STATED_SURE = 0.02, 2.0  # the same where stated numbers contradict each other and explain it
 _EXPLAINS = 2.5  # standard uncertainties within which a slip explains the level
 _NEAR = 4.0  # in squares of them: slips worse than the best by more are not offered
+_MOST_ADDENDA = 20.0  # times the sample's own heat capacity: nobody measures a sample on more
 _MOST, _MOST_OF_A_KIND = 3, 2
 _ROUGH_TOP, _ROUGH_U = 0.4, 0.2  # Tmax/theta from which a count may still tell slips apart, with this relative u
 _SANE = 1.2  # times 3nR that a mended level may reach
@@ -131,7 +132,7 @@ def examine_prepared_level(prepared: PreparedData) -> LevelFinding:
     level = _Level(T, ratio, count, sample.atoms)
     slips = possible_slips(measurement, level.top)
     verdict = _verdict(level, sample, slips)
-    explanations = _explanations(level, slips) if verdict in ("suspicious", "impossible") else ()
+    explanations = _all_explanations(level, slips, measurement) if verdict in ("suspicious", "impossible") else ()
     reason = f"the data end at {level.top:.4g} K, below theta/4" if verdict == "not judged" else None
     theta = level.theta()
     defined = theta[np.isfinite(theta)]
@@ -163,7 +164,7 @@ def explain_mode_sum(prepared: PreparedData, ratio: float, u: float) -> tuple[Le
     T = np.asarray(prepared.temperature)
     count = ModeCount(3 * atoms * ratio, 3 * atoms * u, 0.0, float(T[-1]))
     level = _Level(T, np.asarray(prepared.heat_capacity) / (3 * atoms * GAS_CONSTANT), count, atoms)
-    return _explanations(level, possible_slips(prepared.measurement, level.top))
+    return _all_explanations(level, possible_slips(prepared.measurement, level.top), prepared.measurement)
 
 
 def _not_judged(reason: str) -> LevelFinding:
@@ -217,6 +218,16 @@ def _suspicious(level: _Level, sample: Sample, slips: Sequence[Slip]) -> bool:
 
 
 # ------------------------------------------------------------------------------------------------------ explanations
+
+
+def _all_explanations(level: _Level, slips: Sequence[Slip], measurement: Measurement) -> tuple[LevelExplanation, ...]:
+    """The slips, behind the addenda where those may still be in the data: whatever their size, they raise the level."""
+    found = _explanations(level, slips)
+    raised = float(level.ratio[-1]) if level.mode_sum is None else level.mode_sum[0]
+    if not addenda_left_in(measurement) or not 1 < raised <= _MOST_ADDENDA:
+        return found
+    words = "the heat capacity of the addenda, still in the data,"
+    return (LevelExplanation("addenda", words, raised, "give --addenda FILE"), *found[: _MOST - 1])
 
 
 def _explanations(level: _Level, slips: Sequence[Slip]) -> tuple[LevelExplanation, ...]:

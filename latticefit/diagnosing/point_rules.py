@@ -6,9 +6,10 @@ from typing import Final
 
 import numpy as np
 
-from ..preparing.features import SIGNIFICANT, suspected_features
+from ..preparing.features import suspected_features
 from ..preparing.outliers import OUTLIER
 from ..preparing.scatter import local_scatter
+from ..preparing.templates import SIGNIFICANT
 from ..records import Feature, FloatArray, NamedWarning, RunOverlap
 from ..rounding import format_value, percent_text
 from .case import Case

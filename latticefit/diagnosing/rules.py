@@ -31,6 +31,7 @@ _RULES: dict[str, Callable[[Case], NamedWarning | None]] = {
     "not-unique": fit_rules.not_unique,
     "strong-correlation": fit_rules.strong_correlation,
     "correlated-residuals": data_rules.correlated_residuals,
+    "outliers": point_rules.outliers,
     "gamma-reach": range_rules.gamma_reach,
     "cp-cv-missing": range_rules.cp_cv_missing,
     "mode-sum": level_rules.mode_sum,
@@ -39,7 +40,6 @@ _RULES: dict[str, Callable[[Case], NamedWarning | None]] = {
     "few-points": data_rules.few_points,
     "addenda-uncertainty": correction_rules.addenda_uncertainty,
     "mass-uncertainty": correction_rules.mass_uncertainty,
-    "outliers": point_rules.outliers,
 }
 
 RULES: Mapping[str, Callable[[Case], NamedWarning | None]] = MappingProxyType(_RULES)

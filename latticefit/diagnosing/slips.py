@@ -15,7 +15,7 @@ from ..sample import parse_formula
 from ..units import UnitBasis, find_heat_capacity_unit
 from .hydrates import Slip, molar_mass_slips, shown, water_slips
 
-__all__ = ["Slip", "possible_slips"]
+__all__ = ["Slip", "addenda_left_in", "possible_slips"]
 
 _PREFIXES = {"k": 3, "": 0, "m": -3, "u": -6, "n": -9}  # power of ten
 _DENOMINATORS = ("(mol K)", "(g K)", "(kg K)", "(mol-atom K)", "K")
@@ -40,6 +40,12 @@ def possible_slips(measurement: Measurement, warmest: float) -> tuple[Slip, ...]
         found += [*_amount_slips(measurement, basis), *molar_mass_slips(measurement, basis)]
         found += water_slips(measurement, basis, warmest)
     return tuple(found)
+
+
+def addenda_left_in(measurement: Measurement) -> bool:
+    """Whether the data are of whole samples, in J/K, and nothing was taken off."""
+    units = [find_heat_capacity_unit(each.heat_capacity_unit) for each in measurement.readings]
+    return not measurement.addenda_settings and all(each is not None and each.basis == "sample" for each in units)
 
 
 # ------------------------------------------------------------------------------------------------------------- units

@@ -59,7 +59,7 @@ def non_negative(columns: FloatArray, values: FloatArray) -> FloatArray:
     """
     from scipy.optimize import nnls
 
-    size = np.linalg.norm(columns, axis=0)
+    size = np.abs(columns).max(axis=0)
     kept = size > 1e-150 * size.max()
     weight = np.zeros(columns.shape[1])
     weight[kept] = nnls(columns[:, kept] / size[kept], values, maxiter=100 * columns.shape[1])[0] / size[kept]

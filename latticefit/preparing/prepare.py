@@ -28,6 +28,9 @@ _ASSUMED_WORD: Final = "assumed"
 def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Sequence[Interval] = ()) -> PreparedData:
     """Choose the points to fit and give each a standard uncertainty.
 
+    Where its runs ask for it, sets of repeats are averaged first, so that the measurement in the result is another one,
+    or their first point is left out, or sigma is taken from them. Outliers are flagged and overlapping runs compared.
+
     Parameters
     ----------
     measurement : Measurement
@@ -40,9 +43,8 @@ def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Seq
     -------
     PreparedData
         By ascending temperature, equal temperatures in file order. Without a stated sigma one relative sigma is
-        estimated from the local scatter of the points used, the same for every model that is fitted to them, or from
-        their repeats where the runs ask for it. Where addenda were taken off, sigma is that of the measured total and
-        of the addenda together. `measurement` is the one given, with sets of repeats averaged where asked.
+        estimated from the local scatter of the points used, the same for every model that is fitted to them. Where
+        addenda were taken off, sigma is that of the measured total and of the addenda together.
 
     Raises
     ------

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections import Counter
 from collections.abc import Sequence
 from textwrap import wrap
@@ -24,6 +25,7 @@ _UNITS = {"mol": ("J/(mol K)", "J_mol_K"), "gram": ("J/(g K)", "J_g_K"), "sample
 _DELIMITERS = {"comma": ",", "semicolon": ";", "tab": "\t", "blank": " "}
 _DECIMALS = {"point": ".", "comma": ","}
 _SHOWN_ROWS = 3
+_MOST_REASONS = 3
 _MOST_LINES = 12  # repairs of one kind of screen; the rest is counted
 _WIDTH = 80
 _LABEL = 14
@@ -167,10 +169,16 @@ def _points(measurement: Measurement, found: Examination) -> str:
     words = f"{T.size} of {rows} rows, {T.min():.4g} to {T.max():.4g} K"
     if not found.left_out:
         return words
-    counts = Counter(harmless(each) for each in found.left_out)
-    named = [f"{count} {reason}" for reason, count in counts.most_common(3)]
-    more = "" if len(counts) <= 3 else f", {sum(counts.values()) - sum(n for _, n in counts.most_common(3))} others"
-    return f"{words}; {T.size - len(found.left_out)} to be fitted ({'; '.join(named)}{more})"
+    counts = Counter(_without_numbers(harmless(each)) for each in found.left_out).most_common()
+    named = [f"{count} {reason}" for reason, count in counts[:_MOST_REASONS]]
+    more = sum(count for _, count in counts[_MOST_REASONS:])
+    others = f"; {more} for other reasons" if more else ""
+    return f"{words}; {T.size - len(found.left_out)} to be fitted ({'; '.join(named)}{others})"
+
+
+def _without_numbers(reason: str) -> str:
+    """A reason of one line in the words for all of its kind: ``line 12 masked`` is one of the masked lines."""
+    return "by --mask-lines" if re.fullmatch(r"line \d+ masked", reason) else reason
 
 
 def _runs(measurement: Measurement) -> str:
