@@ -165,6 +165,16 @@ def test_addenda_are_averaged_with_their_common_uncertainty(tmp_path: Path) -> N
     assert_allclose(worked.addenda_u, 0.1)
 
 
+@pytest.mark.parametrize("word", ["average", "drop-first"])
+def test_what_was_done_is_not_done_again(word: str, tmp_path: Path) -> None:
+    """A measurement that went through once comes out of a second time as it was, repairs included."""
+    once = prepare(asking(read_text(tmp_path, TRIPLICATES, sigma="2%"), replicates=word))
+    twice = prepare(once.measurement)
+    assert_array_equal(twice.temperature, once.temperature)
+    assert_array_equal(twice.sigma, once.sigma)
+    assert twice.measurement.repairs == once.measurement.repairs
+
+
 def test_windows_and_masks_act_on_the_means(tmp_path: Path) -> None:
     """A mask takes the mean away, with the reason of a mask."""
     data = asking(read_text(tmp_path, TRIPLICATES, sigma="2%"), replicates="average")

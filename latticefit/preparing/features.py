@@ -48,7 +48,11 @@ def suspected_features(
     both are tried beside its functions at every place; the one that stands out most is taken into the fit, and so on.
     Where residuals are larger than the scatter, or go together over many points, significance is less by as much.
 
-    Measured on random solids (scripts/noticing.py): {MEASURED}
+    Measured on 300 random solids for each of six grids of 100 to 300 points (scripts/noticing.py): 0 to 0.3 % of clean
+    files with 0.3 to 1 % noise are suspected of anything. Peaks of 10 %, two to eight points wide: 96 to 100 % found at
+    0.3 % noise, 24 % (two points) to 100 % at 1 %. Steps of 3 %: 94 to 100 % at 0.3 % noise, 38 to 98 % at 0.5 %, 1 to
+    47 % at 1 %. T^-2 tails twice as large as the lattice at the lowest point: all, where four points lie below 4 K. Of
+    clean files whose noise goes together from point to point (correlation 0.5) up to 6 % are suspected at 1 % noise.
     """
     order = np.argsort(temperature, kind="stable")
     relative = np.maximum(np.broadcast_to(scatter, temperature.shape)[order], _LEAST_SCATTER)

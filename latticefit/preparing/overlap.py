@@ -54,6 +54,11 @@ def run_overlaps(
     -------
     tuple of RunOverlap
         In the order of the runs.
+
+    Notes
+    -----
+    A step of 2.5 % between runs of 30 to 300 points with 0.3 to 2 % noise is recovered without bias; it lies within u
+    in 67 to 70 %, within 2 u in 93 to 96 % of 300 cases each (scripts/noticing.py).
     """
     labels = [reading.label for reading in measurement.readings]
     runs = [

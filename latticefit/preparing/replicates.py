@@ -50,17 +50,19 @@ def with_replicates(measurement: Measurement) -> Repeated:
     """Average the sets of repeats, or drop the first point of each, where a run asks for it.
 
     Points of one run belong to a set where their temperatures differ by less than 0.3 % and the sets lie much further
-    apart (`repeat_sets`). A point that is set aside enters no mean; the first of a set counts in file order.
+    apart (`repeat_sets`). A point that is set aside enters no mean; the first of a set counts in file order. Runs whose
+    sets were averaged before are left as they are.
 
     Raises
     ------
     InputError
         If no run that asks has sets.
     """
+    done = {row.run for row in measurement.excluded if row.averaged_into is not None}
     asking = {
         number: reading.settings.replicates
         for number, reading in enumerate(measurement.readings)
-        if reading.settings.replicates not in (None, "keep")
+        if reading.settings.replicates not in (None, "keep") and number not in done
     }
     sets = {number: _sets(measurement, number, word == "average") for number, word in asking.items()}
     if asking and not any(sets.values()):
@@ -75,7 +77,8 @@ def with_replicates(measurement: Measurement) -> Repeated:
     dropped = _dropped(measurement, to_drop)
     notes += _counted(measurement, to_drop, "the first point of each of {sets} sets of repeats dropped as asked")
     if not to_average:
-        worked = replace(measurement, repairs=(*measurement.repairs, *notes)) if notes else measurement
+        new = tuple(each for each in notes if each not in measurement.repairs)
+        worked = replace(measurement, repairs=(*measurement.repairs, *new)) if new else measurement
         return Repeated(worked, np.ones(measurement.run.size, dtype=np.intp), dropped)
     words = "{points} points in {sets} sets of repeats averaged as asked, the mean of each set stands for it"
     return _averaged(measurement, to_average, dropped, [*notes, *_counted(measurement, to_average, words)])
