@@ -31,6 +31,7 @@ _ROUNDS: Final = 12
 _AROUND: Final = 6  # points on each side in which a feature must be seen
 _PLAIN: Final = 0.1  # excess of a peak that no smooth error makes, so that it need not be seen there
 _LOCAL: Final = 2.5  # standard uncertainties of what is seen there
+_RAISED: Final = 2.0  # scatters by which a point beside a peak belongs to it
 _NEAR_IN_T: Final = 1.2  # factor in T between two pieces that belong together
 _NORMAL_MEDIAN: Final = 1.4826
 
@@ -216,6 +217,7 @@ def _joined(found: list[_Found], excess: FloatArray, with_steps: FloatArray, poi
             groups[-1].append(each)
         else:
             groups.append([each])
+    groups = [_with_flanks(group, excess, points.scatter) for group in groups]
     peaks = [group for group in groups if _rises(group[0].first, _end(group), excess)]
     features = [peak for group in peaks if (peak := _peak(group, excess, temperature)).size >= _LEAST_SIZE]
     taken = [(group[0].first, _end(group)) for group in peaks]
@@ -227,6 +229,22 @@ def _joined(found: list[_Found], excess: FloatArray, with_steps: FloatArray, poi
         low, high = float(temperature[each.first]), float(temperature[each.last])
         features.append(Feature("step", low, high, (low * high) ** 0.5, each.size, each.significance))
     return features
+
+
+def _with_flanks(group: list[_Found], excess: FloatArray, scatter: FloatArray) -> list[_Found]:
+    """Take the points beside a group into it that are raised too: two high points with flanks are a narrow peak."""
+    first, last = group[0].first, _end(group)
+    while first > 0 and excess[first - 1] > _RAISED * scatter[first - 1]:
+        first -= 1
+    while last < excess.size - 1 and excess[last + 1] > _RAISED * scatter[last + 1]:
+        last += 1
+    if last - first + 1 < _PEAK or _end(group) - group[0].first + 1 >= _PEAK:
+        return group
+    return (
+        [replace(group[0], first=first), *group[1:-1], replace(group[-1], last=last)]
+        if len(group) > 1
+        else [replace(group[0], first=first, last=last)]
+    )
 
 
 def _rises(first: int, last: int, excess: FloatArray) -> bool:
