@@ -65,7 +65,8 @@ def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Seq
     elif asks_for_replicates(measurement):
         kind = "estimated"
         singly = index if single.run.size == measurement.run.size else _used(single, _reasons(single, window, mask))
-        sigma, text = sigma_from_replicates(single, singly, heat_capacity, repeated.size[index])
+        total = measured_total(measurement)[index]
+        sigma, text = sigma_from_replicates(single, singly, total, repeated.size[index])
     else:
         kind = "estimated"
         sigma, text = _estimated(temperature, measured_total(measurement)[index], measurement.run[index])
