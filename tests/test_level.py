@@ -145,6 +145,15 @@ def test_one_odd_point_at_the_top_does_not_condemn_a_file() -> None:
     assert examine_prepared_level(prepared_data(T, C, 0.005 * C, atoms=2)).verdict == "plausible"
 
 
+def test_a_transition_at_the_very_top_is_no_slip() -> None:
+    """A peak that the data just reach lifts the last points above 1.3 times 3nR; the modes below are three per atom."""
+    data = scaled(1.0)
+    C = np.array(data.heat_capacity) * (1 + 0.6 * np.exp(-(((T - 300.0) / 12.0) ** 2)))
+    found = examine_prepared_level(prepared_data(T, C, 0.005 * C, atoms=2))
+    assert (found.ratio_to_classical or 0) > 1.3
+    assert found.verdict == "plausible"
+
+
 def test_stiff_modes_of_hydrogen_are_no_suspicion() -> None:
     """A hydrate whose O-H vibrations (3 of 9 modes of each H2O) lie at 3500 K lacks modes, and nothing is wrong."""
     terms, values = "debye + 2 einstein", [190.0, 18.0, 420.0, 18.0, 3500.0, 6.0]

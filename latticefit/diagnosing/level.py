@@ -43,7 +43,8 @@ _MOST_ADDENDA = 20.0  # times the sample's own heat capacity: nobody measures a 
 _MOST, _MOST_OF_A_KIND = 3, 2
 _ROUGH_TOP, _ROUGH_U = 0.4, 0.2  # Tmax/theta from which a count may still tell slips apart, with this relative u
 _SANE = 1.2  # times 3nR that a mended level may reach
-_LARGEST_U, _FEW = 0.1, 3  # relative u of a count that speaks for or against a high level; points that do
+_LARGEST_U, _SAVING_U = 0.1, 0.05  # of a mode sum that condemns a high level, and of one that saves it
+_FEW = 3  # points up to 400 K that can do so
 _SPREAD = 0.3  # relative spread of theta(T) of an ordinary solid
 
 
@@ -108,11 +109,13 @@ def examine_level(measurement: Measurement) -> LevelFinding:
 def examine_prepared_level(prepared: PreparedData) -> LevelFinding:
     """Judge the level of the points that are fitted.
 
-    Impossible: C(Tmax) above 1.3 x 3nR (unless the mode sum is right: a solid near its melting point), or, where the
-    data reach above 50 K, the Debye temperature outside 15 to 2500 K at every point above 50 K. Suspicious: the modes
-    that the data show, counted where the data reach theta/2, miss 3 per atom by more than 3 % and 3 u; fewer are no
-    suspicion as far as stiff modes of light atoms may not be excited, unless a stated molar mass or number of atoms
-    contradicts the formula and explains it. Not judged: data that end below theta/4.
+    Impossible: C(Tmax) above 1.3 x 3nR, or, where the data reach above 50 K, the Debye temperature outside 15 to 2500 K
+    at every point above 50 K. A level that is high only at the top, by a transition, or above 400 K, on the way to a
+    melting point, is not impossible: the mode sum or the points up to 400 K must be too high as well.
+
+    Suspicious: the modes that the data show, counted where the data reach theta/2, miss 3 per atom by more than 3 % and
+    3 u; fewer are no suspicion as far as stiff modes of light atoms may not be excited, unless a stated molar mass or
+    number of atoms contradicts the formula and explains it. Not judged: data that end below theta/4.
 
     Parameters
     ----------
@@ -197,10 +200,13 @@ def _too_high(level: _Level) -> bool:
     if min(float(level.ratio[-1]), float(np.median(level.ratio[-3:]))) <= LEVEL_IMPOSSIBLE:
         return False
     counted = level.mode_sum
+    if level.top <= _HOT:  # a transition at the very top is no slip where all that lies below is right
+        right = counted is not None and counted[1] < _SAVING_U and abs(counted[0] - 1) <= _STATED_SURE * counted[1]
+        return not right
     if counted is not None and counted[1] < _LARGEST_U:
-        return counted[0] > LEVEL_IMPOSSIBLE or (level.top <= _HOT and abs(counted[0] - 1) > _SURE * counted[1])
+        return counted[0] > LEVEL_IMPOSSIBLE
     ordinary = level.ratio[(level.T > _WARM) & (level.T <= _HOT)]
-    return level.top <= _HOT or ordinary.size < _FEW or float(np.median(ordinary[-3:])) > LEVEL_IMPOSSIBLE
+    return ordinary.size < _FEW or float(np.median(ordinary[-3:])) > LEVEL_IMPOSSIBLE
 
 
 def _suspicious(level: _Level, sample: Sample, slips: Sequence[Slip]) -> bool:
