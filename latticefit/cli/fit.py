@@ -9,6 +9,7 @@ from collections.abc import Callable
 from pathlib import Path
 from typing import TYPE_CHECKING
 
+from ..wording import harmless
 from . import options
 from .parsing import CommandParser
 from .request import request
@@ -85,7 +86,7 @@ def _holds_coefficient(settings: ModelSettings) -> bool:
 def _tell_repairs(measurement: Measurement, tell: Callable[[str], None]) -> None:
     for repair in measurement.repairs:
         where = repair.file if repair.line is None else f"{repair.file}, line {repair.line}"
-        tell(f"{where}: {repair.message}")
+        tell(harmless(f"{where}: {repair.message}"))
 
 
 def _finish(

@@ -86,10 +86,11 @@ def _read(sheet: Sheet, base: Path) -> list[Measurement]:
     from dataclasses import replace
 
     from ..reading import read_measurement
+    from ..reading.measurement import labelled
 
     found = []
-    for run in sheet.runs:
-        label = run.label or Path(run.file).stem
+    for run in labelled(sheet.runs):
+        label = run.label
         # named runs of other files are not there when a file is read for itself
         addenda = tuple(replace(known, runs=()) for known in sheet.addenda if not known.runs or label in known.runs)
         found.append(read_measurement(sheet.sample, (run,), base, addenda))

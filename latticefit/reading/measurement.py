@@ -17,7 +17,7 @@ from .run import RunData, read_run
 from .temperature_scale import on_its90
 from .wording import quoted
 
-__all__ = ["read_measurement"]
+__all__ = ["labelled", "read_measurement"]
 
 
 def read_measurement(
@@ -51,7 +51,7 @@ def read_measurement(
     """
     if not runs:
         raise InputError("no file is given; name at least one")
-    named = _labelled(runs)
+    named = labelled(runs)
     built = build_sample(sample, Path(runs[0].file).stem)
     folder = Path() if base is None else base
     parts: list[RunData] = []
@@ -97,7 +97,7 @@ def _with_mass_note(measurement: Measurement) -> Measurement:
     return replace(measurement, repairs=(note, *measurement.repairs))
 
 
-def _labelled(runs: Sequence[RunSettings]) -> list[RunSettings]:
+def labelled(runs: Sequence[RunSettings]) -> list[RunSettings]:
     """Give every run a label of its own; one that is made up gets a number where it would repeat another."""
     given = Counter(run.label for run in runs if run.label)
     repeated = next((label for label, count in given.items() if count > 1), None)

@@ -14,12 +14,12 @@ from pathlib import Path
 from typing import Literal
 
 from ..errors import InputError, nearest
-from ..reading.sheets import write_sheet
 from ..records import Analysis, Sheet
 from ..wording import harmless
 from .figures import FIGURES, draw_figure, render
 from .html import html_report
 from .result import SCHEMA, json_text, result_record
+from .sheet_file import sheet_bytes
 from .tables import residuals_csv, table_csv
 from .text import text_report
 
@@ -140,7 +140,8 @@ def write_report(analysis: Analysis, out: Path, replace: bool = False, figures: 
 
 def _write_files(analysis: Analysis, folder: Path, figures: str) -> None:
     names = _copy_inputs(analysis, folder / "inputs")
-    sheet_text = write_sheet(_portable_sheet(analysis, names, _copy_held(analysis, folder / "inputs", names), figures))
+    sheet = _portable_sheet(analysis, names, _copy_held(analysis, folder / "inputs", names), figures)
+    sheet_text = sheet_bytes(sheet, "the run sheet").decode("utf-8")
     pictures = _write_figures(analysis, folder / "figures", figures)
     texts = {
         "result.json": json_text(result_record(analysis)),

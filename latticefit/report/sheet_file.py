@@ -11,7 +11,7 @@ from ..reading.sheets import write_sheet
 from ..records import Measurement, Sheet
 from ..wording import harmless
 
-__all__ = ["recognised_sheet", "save_sheet"]
+__all__ = ["recognised_sheet", "save_sheet", "sheet_bytes"]
 
 
 def recognised_sheet(measurements: list[Measurement]) -> Sheet:
@@ -50,9 +50,10 @@ def save_sheet(sheet: Sheet) -> Path:
         addenda=tuple(replace(known, file=_below(folder, known.file)) for known in sheet.addenda),
     )
     shown = harmless(str(path))
+    text = sheet_bytes(portable, shown)
     try:
-        with path.open("x", encoding="utf-8", newline="\n") as stream:
-            stream.write(write_sheet(portable))
+        with path.open("xb") as stream:
+            stream.write(text)
     except FileExistsError:
         raise InputError(f"{shown!r} exists already and is not overwritten; move it away first") from None
     except OSError as error:
@@ -60,8 +61,27 @@ def save_sheet(sheet: Sheet) -> Path:
     return path
 
 
+def sheet_bytes(sheet: Sheet, shown: str) -> bytes:
+    """Return a sheet as the bytes of its file, `shown` being what messages call it.
+
+    Raises
+    ------
+    InputError
+        If a file name in it is no valid text, which a sheet cannot hold.
+    """
+    try:
+        return write_sheet(sheet).encode("utf-8")
+    except UnicodeEncodeError:
+        raise InputError(
+            f"{shown!r} cannot be written: a file name in it is no valid UTF-8 text; rename the data file"
+        ) from None
+
+
 def _below(folder: Path, file: str) -> str:
-    inside = os.path.relpath(file, folder)
+    try:
+        inside = os.path.relpath(file, folder)
+    except ValueError:  # another drive
+        inside = os.pardir
     if os.path.isabs(inside) or inside.split(os.sep)[0] == os.pardir:
         raise InputError(
             f"{harmless(file)!r} lies outside {harmless(str(folder))!r}, the folder of the sheet; keep the files of "
