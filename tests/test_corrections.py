@@ -425,10 +425,43 @@ def test_refusal(case: str, tmp_path: Path) -> None:
 
 def test_fractions_that_are_more_than_the_sample(tmp_path: Path) -> None:
     """Two parts that make up all of the mass leave no sample."""
-    write(tmp_path, run=run_text(), blank=GRAM)
+    write(tmp_path, run=run_text(), blank=GRAM, other=GRAM + "\n")
     half = replace(BLANK, fraction="0.5")
     with pytest.raises(InputError, match=r"the addenda are 100 % of the sample's mass together; correct fraction"):
-        read(tmp_path, half, half)
+        read(tmp_path, half, replace(half, file="other.csv"))
+
+
+def test_one_file_is_not_taken_off_twice(tmp_path: Path) -> None:
+    """The same column of the same file in two entries is refused; for two runs, one entry each, it is not."""
+    write(tmp_path, run=run_text(), blank=blank_text())
+    with pytest.raises(InputError, match="would be taken off twice; name each addenda file once"):
+        read(tmp_path, BLANK, BLANK)
+
+
+def test_points_that_are_nearly_all_addenda_are_set_aside(tmp_path: Path) -> None:
+    """Above 95 % of the measured total a point is not fitted, with the reason and a count among the repairs."""
+    write(tmp_path, run=run_text(), blank=blank_text())
+    whole = read(tmp_path, BLANK)
+    share = np.asarray(whole.addenda) / (np.asarray(whole.addenda) + whole.heat_capacity)
+    assert whole.set_aside == ()
+    assert share.max() < 0.95
+    total = np.asarray(whole.addenda) + whole.heat_capacity
+    factor = 0.97 * float((total / np.asarray(whole.addenda)).min())  # the blank at 97 % of one total
+    lines = blank_text().splitlines()
+    heavy = [line if not line[:1].isdigit() else _times(line, factor) for line in lines]
+    write(tmp_path, run=run_text(), blank="\n".join(heavy) + "\n")
+    found = read(tmp_path, BLANK)
+    heavy_share = np.asarray(found.addenda) / (np.asarray(found.addenda) + found.heat_capacity)
+    expected = heavy_share > 0.95
+    assert expected.any()
+    assert [bool(reason) for reason in found.set_aside] == expected.tolist()
+    assert any("set aside: addenda are above 95 %" in each.message for each in found.repairs)
+
+
+def _times(line: str, factor: float) -> str:
+    """A row of the blank with its heat capacity multiplied."""
+    cells = line.split(",")
+    return ",".join([cells[0], repr(float(cells[1]) * factor), *cells[2:]])
 
 
 # ------------------------------------------------------------------------------------------------- fits and reports

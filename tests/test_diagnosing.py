@@ -31,6 +31,16 @@ def diagnosed(data: PreparedData, terms: str, mode_sum: str | None = None, **set
     return diagnose(data, fit_model(data, ModelSettings(terms, mode_sum, **settings)))  # type: ignore[arg-type]
 
 
+def unsettled_and_averaged() -> PreparedData:
+    """Triplicates, the first of each set 2 % high, averaged before the fit."""
+    data = invented_solid(*METAL, np.repeat(np.geomspace(2.0, 300.0, 50), 3), atoms=1).measurement
+    C = np.array(data.heat_capacity)
+    C[::3] *= 1.02
+    (reading,) = data.readings
+    asking = replace(reading, settings=replace(reading.settings, replicates="average"))
+    return prepare(replace(data, heat_capacity=C, readings=(asking,)))
+
+
 def one_run(n: int) -> np.ndarray:
     return np.zeros(n, dtype=np.intp)
 
@@ -159,6 +169,7 @@ def triggers() -> dict[str, Diagnosis]:
         "repeats-fitted-singly": diagnosed(
             invented_solid(*METAL, np.repeat(np.geomspace(2.0, 300.0, 50), 3), atoms=1), METAL[0]
         ),
+        "first-points-averaged": diagnosed(unsettled_and_averaged(), METAL[0]),
         "runs-differ": diagnosed(two_runs(), METAL[0]),
         "addenda-share": diagnosed(with_addenda(metal, 3.0, 0.0), METAL[0]),
         "addenda-uncertainty": diagnosed(with_addenda(metal, 0.5, 0.003), METAL[0]),
@@ -297,9 +308,9 @@ def level_of(data: PreparedData, code: str) -> str | None:
     return {each.code: each.level for each in diagnosed(data, METAL[0]).warnings}.get(code)
 
 
-@pytest.mark.parametrize(("times", "level"), [(2.0, None), (2.6, "warn"), (18.0, "warn"), (20.0, "stop")])
+@pytest.mark.parametrize(("times", "level"), [(2.0, None), (2.6, "warn"), (18.0, "warn")])
 def test_share_of_addenda_has_two_levels(times: float, level: str | None) -> None:
-    """Warn above 70 % of the total, stop above 95 %."""
+    """Warn above 70 % of the total."""
     assert level_of(with_addenda(invented_solid(*METAL, T, atoms=1), times, 0.0), "addenda-share") == level
 
 

@@ -88,10 +88,25 @@ def _read(sheet: Sheet, base: Path) -> list[Measurement]:
     from ..reading import read_measurement
     from ..reading.measurement import labelled
 
+    runs = labelled(sheet.runs)
+    known_labels = [str(run.label) for run in runs]
+    for known in sheet.addenda:
+        stray = next((name for name in known.runs if not any(_of(name, label) for label in known_labels)), None)
+        if stray is not None:
+            raise InputError(f"the addenda {known.file!r} name a run {stray!r} that there is not")
     found = []
-    for run in labelled(sheet.runs):
-        label = run.label
-        # named runs of other files are not there when a file is read for itself
-        addenda = tuple(replace(known, runs=()) for known in sheet.addenda if not known.runs or label in known.runs)
+    for run, label in zip(runs, known_labels, strict=True):
+        own = [(known, tuple(name for name in known.runs if _of(name, label))) for known in sheet.addenda]
+        addenda = tuple(
+            # a file that is read for itself has its own runs only; where it is one run, all of it is concerned
+            replace(known, runs=() if label in names else names)
+            for known, names in own
+            if names or not known.runs
+        )
         found.append(read_measurement(sheet.sample, (run,), base, addenda))
     return found
+
+
+def _of(name: str, label: str) -> bool:
+    """Whether a name is that of a run of this label, or of a part of its file."""
+    return name == label or name.startswith(f"{label}, ")

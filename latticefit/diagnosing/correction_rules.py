@@ -10,7 +10,7 @@ from .case import Case
 
 __all__ = ["addenda_share", "addenda_uncertainty", "mass_uncertainty"]
 
-_SHARE_WARN, _SHARE_STOP = 0.70, 0.95  # of the measured total (common practice, no source)
+_SHARE = 0.70  # of the measured total (common practice, no source)
 _CARRIED_NOTE, _CARRIED_WARN = 0.001, 0.01  # of the entropy within the data
 _MASS_WARN = 0.01  # of the mass: as much as a good measurement scatters (common practice, no source)
 
@@ -23,22 +23,20 @@ def addenda_share(case: Case) -> NamedWarning | None:
     addenda = measurement.addenda[index]
     share = addenda / (addenda + measurement.heat_capacity[index])
     worst = float(share.max())
-    if worst <= _SHARE_WARN:
+    if worst <= _SHARE:
         return None
-    stop = worst > _SHARE_STOP
-    threshold = _SHARE_STOP if stop else _SHARE_WARN
-    T = np.asarray(measurement.temperature[index])[share > threshold]
+    T = np.asarray(measurement.temperature[index])[share > _SHARE]
     return NamedWarning(
         code="addenda-share",
-        level="stop" if stop else "warn",
+        level="warn",
         concerns="data",
         message=(
-            f"addenda are up to {100 * worst:.0f} % of what was measured (above {100 * threshold:.0f} % at {T.size} "
+            f"addenda are up to {100 * worst:.0f} % of what was measured (above {100 * _SHARE:.0f} % at {T.size} "
             f"points, {T.min():.4g} to {T.max():.4g} K): an error of what was measured comes into the sample's heat "
             f"capacity {1 / max(1 - worst, 1e-6):.1f} times larger"
         ),
         found=worst,
-        threshold=threshold,
+        threshold=_SHARE,
         advice="leave those points out by --mask, or measure with more sample or less grease",
     )
 

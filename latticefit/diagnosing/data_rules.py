@@ -8,12 +8,13 @@ from ..preparing.scatter import repeat_sets
 from ..records import NamedWarning
 from ..rounding import percent_text
 from .case import Case
-from .lack_of_fit import first_of_sets
+from .lack_of_fit import first_of_averaged_sets, first_of_sets
 from .verdict import DURBIN_WATSON, MISFIT, RUNS_P, blame, correlated
 
 __all__ = [
     "correlated_residuals",
     "few_points",
+    "first_points_averaged",
     "repeats",
     "runs_differ",
     "sigma_assumed",
@@ -127,6 +128,23 @@ def repeats(case: Case) -> NamedWarning | None:
             if off
             else "average each set into one point before the fit: --replicates average"
         ),
+    )
+
+
+def first_points_averaged(case: Case) -> NamedWarning | None:
+    """The first point of each set had not settled and was averaged in."""
+    first = first_of_averaged_sets(case.prepared)
+    if first is None or abs(first.mean) <= _FIRST_OFF * first.u:
+        return None
+    side = "above" if first.mean > 0 else "below"
+    return NamedWarning(
+        code="first-points-averaged",
+        level="warn",
+        concerns="data",
+        message=f"the first point of each averaged set lies {percent_text(100 * abs(first.mean))} {side} the others",
+        found=abs(first.mean) / first.u,
+        threshold=_FIRST_OFF,
+        advice="it had not settled: --replicates drop-first leaves it out of each set",
     )
 
 

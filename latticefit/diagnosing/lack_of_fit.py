@@ -35,6 +35,19 @@ def first_of_sets(prepared: PreparedData) -> FirstOfSets | None:
         first = members[np.argmin(prepared.index[members])]
         others = C[members[members != first]]
         differences.append(float(C[first] / others.mean() - 1))
+    return _summed(differences)
+
+
+def first_of_averaged_sets(prepared: PreparedData) -> FirstOfSets | None:
+    """Do the same for the sets that were averaged; None below five of them."""
+    sets: dict[int, list[float]] = {}
+    for row in prepared.measurement.excluded:
+        if row.averaged_into is not None:
+            sets.setdefault(row.averaged_into, []).append(row.heat_capacity)
+    return _summed([values[0] / float(np.mean(values[1:])) - 1 for values in sets.values() if len(values) > 1])
+
+
+def _summed(differences: list[float]) -> FirstOfSets | None:
     if len(differences) < _FEWEST_SETS:
         return None
     return FirstOfSets(float(np.mean(differences)), float(np.std(differences, ddof=1) / len(differences) ** 0.5))

@@ -20,6 +20,7 @@ _RULES: dict[str, Callable[[Case], NamedWarning | None]] = {
     "sigma-understated": data_rules.sigma_understated,
     "cp-cv-from-melting-point": range_rules.cp_cv_from_melting_point,
     "repeats-fitted-singly": data_rules.repeats,
+    "first-points-averaged": data_rules.first_points_averaged,
     "replicate-spread": point_rules.replicate_spread,
     "suspected-feature": point_rules.suspected_feature,
     "run-overlap": point_rules.run_overlap,

@@ -40,6 +40,9 @@ from .wording import counted, quoted, shown_name
 
 __all__ = ["take_off"]
 
+_MOST_ADDENDA = (
+    0.95  # of the measured total, beyond which a point says nothing of the sample (common practice, no source)
+)
 _LEAST_LEFT = 0.5  # of the points of a measurement that must stay above 0
 
 
@@ -77,8 +80,37 @@ def take_off(
         return measurement
     entries = [read_known(each, folder, read) for each in addenda]
     concerned = [_points_of(each, measurement) for each in entries]
+    _refuse_twice(entries, concerned)
     measurement, kept = _covered(measurement, entries, concerned)
-    return _subtracted(measurement, entries, [points[kept] for points in concerned])
+    return _mostly_addenda(_subtracted(measurement, entries, [points[kept] for points in concerned]))
+
+
+def _refuse_twice(entries: Sequence[Known], concerned: Sequence[NDArray[np.bool_]]) -> None:
+    """Refuse one column of one file that is to be taken off the same points twice."""
+    for i, one in enumerate(entries):
+        for other, points in zip(entries[:i], concerned[:i], strict=True):
+            first, second = other.file.readings[0], one.file.readings[0]
+            same = (first.sha256, first.heat_capacity_column) == (second.sha256, second.heat_capacity_column)
+            if same and (points & concerned[i]).any():
+                raise InputError(f"{one.shown} would be taken off twice; name each addenda file once")
+
+
+def _mostly_addenda(measurement: Measurement) -> Measurement:
+    """Set aside the points at which hardly anything is the sample's own: a small difference of large numbers."""
+    if measurement.addenda is None:
+        return measurement
+    share = measurement.addenda / (measurement.addenda + measurement.heat_capacity)
+    aside = list(measurement.set_aside or (None,) * share.size)
+    heavy = np.flatnonzero(share > _MOST_ADDENDA).tolist()
+    for i in heavy:
+        aside[i] = aside[i] or f"addenda are above {100 * _MOST_ADDENDA:.0f} % of the measured heat capacity"
+    if not heavy:
+        return measurement
+    words = (
+        f"{counted(len(heavy), 'point')} set aside: addenda are above {100 * _MOST_ADDENDA:.0f} % of what was measured"
+    )
+    note = Repair(measurement.readings[0].file, None, words)
+    return replace(measurement, set_aside=tuple(aside), repairs=(*measurement.repairs, note))
 
 
 # ---------------------------------------------------------------------------------------------- which runs and points
