@@ -7,6 +7,7 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
+from ..constants import NORMAL_MEDIAN
 from ..records import FloatArray
 from .lattice_trend import lattice_trend
 from .scatter import local_scatter, repeat_sets
@@ -24,7 +25,6 @@ _TROUBLED: Final = 2.0  # times the scatter, where the neighbours themselves fol
 _LEAST: Final = 1e-4  # relative scatter that is believed of a measurement
 _RAISED: Final = 2.0  # scatters that the neighbours of a point lie off where it belongs to a feature
 _FEATURE: Final = 3  # adjacent points or sets of repeats that make a feature
-_NORMAL_MEDIAN: Final = 1.4826
 
 
 def outliers(temperature: FloatArray, heat_capacity: FloatArray, sigma: FloatArray | None = None) -> FloatArray:
@@ -90,7 +90,7 @@ def _from_neighbours(flat: FloatArray, sets: NDArray[np.intp]) -> tuple[FloatArr
     others = np.where(sets[members] == sets[:, None], np.nan, flat[members])
     others[np.isnan(others).all(axis=1)] = 0.0  # more repeats than a neighbourhood holds: compared with the curve
     middle = np.nanmedian(others, axis=1)[:, None]
-    near = _NORMAL_MEDIAN * np.nanmedian(np.abs(others - middle), axis=1)
+    near = NORMAL_MEDIAN * np.nanmedian(np.abs(others - middle), axis=1)
     kept = np.abs(others - middle) <= 3 * near[:, None]
     count = np.maximum(kept.sum(axis=1), 1)
     mean = np.where(kept, others, 0.0).sum(axis=1) / count
@@ -98,8 +98,8 @@ def _from_neighbours(flat: FloatArray, sets: NDArray[np.intp]) -> tuple[FloatArr
 
 
 def _scatter(off: FloatArray) -> FloatArray:
-    local = _NORMAL_MEDIAN * np.median(off[_windows(off.size, _WIDE)], axis=1)
-    return np.maximum(local, _LEAST_OF_RUN * _NORMAL_MEDIAN * float(np.median(off)))
+    local = NORMAL_MEDIAN * np.median(off[_windows(off.size, _WIDE)], axis=1)
+    return np.maximum(local, _LEAST_OF_RUN * NORMAL_MEDIAN * float(np.median(off)))
 
 
 def _adjacent(raised: FloatArray, sets: NDArray[np.intp], i: int) -> int:
