@@ -8,11 +8,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from ..constants import NORMAL_MEDIAN
-from ..records import FloatArray
+from ..records import FloatArray, Measurement
 from .lattice_trend import lattice_trend
 from .scatter import local_scatter, repeat_sets
 
-__all__ = ["OUTLIER", "outliers"]
+__all__ = ["OUTLIER", "outlier_words", "outliers", "outliers_of_runs"]
 
 OUTLIER: Final = 3.7
 """Deviation from the neighbours, in scatters, from which a point is flagged."""
@@ -76,6 +76,36 @@ def outliers(temperature: FloatArray, heat_capacity: FloatArray, sigma: FloatArr
         if _adjacent(raised * np.sign(raised[i]), sets, int(i)) < _FEATURE:
             found[i] = size[i]
     return found
+
+
+def outliers_of_runs(measurement: Measurement, index: NDArray[np.intp], sigma: FloatArray | None) -> FloatArray:
+    """Look at each run of a measurement alone.
+
+    Parameters
+    ----------
+    measurement : Measurement
+    index : ndarray of int, shape (m,)
+        The points that count, by ascending temperature.
+    sigma : ndarray, shape (m,), or None
+        Their stated standard uncertainty, unit of the heat capacity.
+
+    Returns
+    -------
+    ndarray, shape (n,)
+        As from `outliers`, for each point of the measurement.
+    """
+    found = np.zeros(measurement.run.size)
+    for run in np.unique(measurement.run[index]):
+        own = measurement.run[index] == run
+        place = index[own]
+        T, C = measurement.temperature[place], measurement.heat_capacity[place]
+        found[place] = outliers(T, C, None if sigma is None else sigma[own])
+    return found
+
+
+def outlier_words(size: float) -> str:
+    """Say how far a point lies from its neighbours; `size` in scatters, with sign."""
+    return f"{abs(size):.1f} times the scatter {'above' if size > 0 else 'below'} its neighbours"
 
 
 def _windows(points: int, side: int) -> NDArray[np.intp]:

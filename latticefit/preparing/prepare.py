@@ -11,8 +11,8 @@ from numpy.typing import NDArray
 from ..errors import InputError
 from ..records import FloatArray, Measurement, PreparedData, SigmaKind
 from .addenda import measured_total, with_addenda
-from .outliers import outliers
-from .overlap import run_overlaps
+from .outliers import outliers_of_runs
+from .overlap import run_overlaps, worst_overlaps
 from .replicates import asks_for_replicates, sigma_from_replicates, with_replicates
 from .scatter import FEWEST_POINTS, pooled_scatter
 
@@ -71,6 +71,7 @@ def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Seq
         kind = "estimated"
         sigma, text = _estimated(temperature, measured_total(measurement)[index], measurement.run[index])
     sigma, text = with_addenda(measurement, index, sigma, text)
+    overlaps = run_overlaps(measurement, temperature, heat_capacity, sigma, measurement.run[index])
     return PreparedData(
         measurement=measurement,
         temperature=temperature,
@@ -82,8 +83,9 @@ def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Seq
         sigma_kind=kind,
         sigma_text=text,
         sigma_assumed=kind == "estimated" and text.startswith(_ASSUMED_WORD),
-        flags=_flags(measurement, index, sigma if kind == "stated" else None),
-        overlaps=run_overlaps(measurement, temperature, heat_capacity, sigma, measurement.run[index]),
+        outlier_sizes=outliers_of_runs(measurement, index, sigma if kind == "stated" else None),
+        overlaps=worst_overlaps(overlaps),
+        overlaps_compared=len(overlaps),
     )
 
 
@@ -104,21 +106,6 @@ def _used(measurement: Measurement, reasons: Sequence[str | None]) -> NDArray[np
         first = next((reason for reason in reasons if reason), "none was read")
         raise InputError(f"no point is left to fit: all {len(reasons)} are left out (the first: {first})")
     return used[np.argsort(measurement.temperature[used], kind="stable")]
-
-
-def _flags(measurement: Measurement, index: NDArray[np.intp], sigma: FloatArray | None) -> tuple[str | None, ...]:
-    """Say of the points at `index` how far they lie from their neighbours, where that is too far for scatter."""
-    flags: list[str | None] = [None] * measurement.run.size
-    for run in np.unique(measurement.run[index]):
-        own = measurement.run[index] == run
-        place = index[own]
-        sizes = outliers(
-            measurement.temperature[place], measurement.heat_capacity[place], None if sigma is None else sigma[own]
-        )
-        for i in np.flatnonzero(sizes):
-            side = "above" if sizes[i] > 0 else "below"
-            flags[int(place[i])] = f"{abs(sizes[i]):.1f} times the scatter {side} its neighbours"
-    return tuple(flags)
 
 
 # ------------------------------------------------------------------------------------------------ windows and masks

@@ -249,9 +249,9 @@ def _repairs(measurement: Measurement) -> list[str]:
     return [*lines, *([f"    and {more} more (--json lists all)"] if more > 0 else [])]
 
 
-def overlap_text(overlaps: tuple[RunOverlap, ...]) -> str:
+def overlap_text(overlaps: tuple[RunOverlap, ...], compared: int) -> str:
     """Return how runs compare where they overlap, a line each."""
     lines = []
-    for label, words, remark in overlap_words(overlaps):
+    for label, words, remark in overlap_words(overlaps, compared):
         lines += _entry(label, harmless(_with_remark(words, remark)))
     return "\n".join(lines) + ("\n" if lines else "")
