@@ -352,7 +352,7 @@ def test_long_runs_are_compared_without_a_table_of_all_pairs_of_points() -> None
 
 def test_of_many_pairs_of_runs_the_worst_come_first_and_all_are_counted() -> None:
     """Of 300 pairs of 25 runs the 200 worst are kept, those of the run that is too high first; 12 are shown."""
-    prepared = prepare(interleaved(25, 12, 7))
+    prepared = prepare(interleaved(25, 40, 7))
     assert (prepared.overlaps_compared, len(prepared.overlaps)) == (300, 200)
     assert all("run 7" in (each.first, each.second) for each in prepared.overlaps[:20])
     off = [abs(each.ratio - 1) / each.u for each in prepared.overlaps]

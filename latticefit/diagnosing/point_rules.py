@@ -66,9 +66,8 @@ def run_overlap(case: Case) -> NamedWarning | None:
         f"{format_value(each.ratio, each.u)})"
         for each in differing[:_SHOWN]
     ]
-    least = (
-        "at least " if len(differing) < case.prepared.overlaps_compared and _differ(case.prepared.overlaps[-1]) else ""
-    )
+    kept = case.prepared.overlaps
+    least = "at least " if len(differing) == len(kept) < case.prepared.overlaps_compared else ""
     more = f"; and {least}{len(differing) - _SHOWN} more pairs of runs" if len(differing) > _SHOWN else ""
     return NamedWarning(
         code="run-overlap",

@@ -70,7 +70,7 @@ def lack_of_fit_record(found: LackOfFit | None) -> dict[str, Any] | None:
 
 
 def overlap_words(overlaps: tuple[RunOverlap, ...], compared: int) -> tuple[tuple[str, str, str], ...]:
-    """Give one row for each pair of runs that overlap: label, ratio with u, range; of many the worst, and their number."""
+    """Give one row for each pair of runs that overlap: label, ratio with u, range; of many the worst, and how many."""
     rows = tuple(
         (
             "overlap",
