@@ -173,7 +173,7 @@ def _points(measurement: Measurement, found: Examination) -> str:
     named = [f"{count} {reason}" for reason, count in counts[:_MOST_REASONS]]
     more = sum(count for _, count in counts[_MOST_REASONS:])
     named += [f"{more} for other reasons"] if more else []
-    named += [f"{found.averaged} averaged into {found.means}"] if found.averaged else []
+    named += [f"{found.averaged} averaged into the means of {found.means} sets"] if found.averaged else []
     return f"{words}; {found.to_fit or 'none'} to be fitted ({'; '.join(named)})"
 
 
