@@ -1,4 +1,4 @@
-"""Physical constants, all from `scipy.constants` (CODATA; R is exact since the SI of 2019)."""
+"""Physical constants, from `scipy.constants` (CODATA; R is exact since the SI of 2019), and numbers of all rooms."""
 
 from __future__ import annotations
 
@@ -13,6 +13,8 @@ __all__ = [
     "DEBYE_CUBIC",
     "GAS_CONSTANT",
     "NERNST_LINDEMANN_A0",
+    "NORMAL_MEDIAN",
+    "REPEAT_FACTOR",
     "STANDARD_TEMPERATURE",
 ]
 
@@ -34,3 +36,9 @@ CALORIE_THERMOCHEMICAL: Final[float] = float(_codata.calorie)
 NERNST_LINDEMANN_A0: Final[float] = 0.0214 / CALORIE_THERMOCHEMICAL
 """Universal coefficient A0 = 0.0214 mol K/cal of W. Nernst and F. A. Lindemann, Z. Elektrochem. 17, 817 (1911),
 in mol K/J: Cp - Cv = A0 Cp^2 T/Tm per mole of atoms (the number 0.0214 from memory)."""
+
+NORMAL_MEDIAN: Final[float] = 1.4826
+"""Standard deviation of a normal distribution over the median of its absolute values."""
+
+REPEAT_FACTOR: Final[float] = 1.003
+"""Points closer than this factor in T may be repeats of one temperature (common practice, no source)."""

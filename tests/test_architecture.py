@@ -30,6 +30,7 @@ LEVELS = {
     "_version": 0,
     "units": 1,
     "rounding": 1,
+    "exclusion": 1,
     "sample": 2,  # reads units
     "functions": 2,
     "terms": 3,

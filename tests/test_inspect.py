@@ -6,11 +6,15 @@ import json
 import tomllib
 from pathlib import Path
 
+import numpy as np
 import pytest
 from helpers import DEMO
 
 import latticefit as lf
 from latticefit.cli import main
+from latticefit.diagnosing import examination, level
+from latticefit.preparing import prepare
+from latticefit.records import Measurement, PreparedData
 
 TRUTH = tomllib.loads((DEMO / "truth.toml").read_text(encoding="utf-8"))
 
@@ -121,3 +125,54 @@ def test_runs_that_overlap_are_compared(capsys: pytest.CaptureFixture[str]) -> N
     assert overlap["ratio"] == pytest.approx(1 / 1.025, abs=4 * overlap["u"])
     assert main(["inspect", *files, *options]) == 0
     assert "grannese_warm / grannese_cold = 0.97" in capsys.readouterr().out
+
+
+@pytest.fixture
+def repeats(tmp_path: Path) -> str:
+    """Thirty sets of three repeats, 2 to 300 K (invented data)."""
+    T = np.geomspace(2.0, 300.0, 30)
+    rows = [f"{t * (1 + 0.0002 * k):.6g},{20 * t**3 / (t**3 + 5e4) * (1 + 0.002 * k):.6g}" for t in T for k in range(3)]
+    path = tmp_path / "repeats.csv"
+    path.write_text("# invented data\nT_K,Cp_J_molK\n" + "\n".join(rows), encoding="utf-8")
+    return str(path)
+
+
+@pytest.mark.parametrize(
+    ("options", "words"),
+    [
+        (["--window", "50:100"], "12 to be fitted (78 outside window 50-100 K)"),
+        (
+            ["--formula", "Ne", "--replicates", "average", "--window", "50:100"],
+            "4 to be fitted (78 outside window 50-100 K; 12 averaged into the means of 4 sets)",
+        ),
+        (["--replicates", "average"], "30 to be fitted (90 averaged into the means of 30 sets)"),
+        (
+            ["--formula", "Ne", "--replicates", "drop-first"],
+            "60 to be fitted (30 first of their sets, dropped as asked)",
+        ),
+        (["--mask", "50:100"], "78 to be fitted (12 masked 50-100 K)"),
+        (["--window", "400:500"], "none to be fitted (90 outside window 400-500 K)"),
+    ],
+    ids=["window", "averaged in a window", "averaged", "dropped", "mask", "none left"],
+)
+def test_points_that_will_not_be_fitted_are_counted(
+    repeats: str, options: list[str], words: str, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """Windows, masks and repeats show their effect, with a formula or without, and where no point is left."""
+    assert main(["inspect", repeats, *options]) == 0
+    text = " ".join(capsys.readouterr().out.split())
+    assert f"90 of 90 rows, 2 to 300.1 K; {words}" in text
+
+
+def test_a_file_is_prepared_once(monkeypatch: pytest.MonkeyPatch, repeats: str) -> None:
+    """One preparation serves the screen, the level and the overlaps of runs."""
+    calls: list[Measurement] = []
+
+    def counted(measurement: Measurement) -> PreparedData:
+        calls.append(measurement)
+        return prepare(measurement)
+
+    monkeypatch.setattr(examination, "prepare", counted)
+    monkeypatch.setattr(level, "prepare", counted)
+    assert main(["inspect", repeats, "--formula", "Ne"]) == 0
+    assert len(calls) == 1

@@ -6,6 +6,7 @@ The rates are those of scripts/noticing.py, on fewer of its seeded solids (inven
 from __future__ import annotations
 
 import sys
+import tracemalloc
 from dataclasses import replace
 from pathlib import Path
 
@@ -27,6 +28,7 @@ from latticefit.preparing.scatter import local_scatter
 from latticefit.reading import read_measurement
 from latticefit.records import Feature, FloatArray, Measurement, ModelSettings, RunSettings, SampleSettings
 from latticefit.report import draw_figure, residuals_frame, result_record, text_report
+from latticefit.report.noticed import overlap_words
 
 sys.path.insert(0, str(ROOT / "scripts"))
 from noticing import Grid, anomaly, scatter_of, solid, two_runs
@@ -141,7 +143,7 @@ def test_published_tables_and_demo_files_have_no_flags_and_no_features(path: Pat
     """Demo files; copper (White and Collocott 1984), aluminium (NBS Monograph 21; Giauque and Meads 1941)."""
     data = prepare(read(path))
     T, C = data.temperature, data.heat_capacity
-    assert not any(data.flags)
+    assert not np.any(data.outlier_sizes)
     assert suspected_features(T, C, local_scatter(T, C) or 0.01) == ()
 
 
@@ -155,6 +157,9 @@ def test_flags_go_to_the_report_and_nothing_is_left_out() -> None:
     assert warning["level"] == "note"
     assert "line 59, 22.05 K: " in warning["message"]
     assert "times the scatter above its neighbours" in warning["message"]
+    sizes = fit.analysis.prepared.outlier_sizes
+    assert np.flatnonzero(sizes).tolist() == [57]
+    assert warning["found"] == sizes[57]  # not as rounded for the words
     assert "--mask-lines 59" in warning["advice"]
     frame = residuals_frame(fit.analysis)
     assert frame["used"].all()
@@ -317,6 +322,44 @@ def test_runs_that_hardly_meet_are_not_compared() -> None:
     order = np.argsort(T)
     assert run_overlaps(two_runs(T), T[order], C[order], 0.01 * C[order], run[order]) == ()
     assert prepare(invented_solid("debye", [200.0, 6.0], np.geomspace(2, 300, 60), atoms=2).measurement).overlaps == ()
+
+
+def interleaved(runs: int, points: int, high: int) -> Measurement:
+    """Runs of one invented solid over one range of temperature, number `high` 10 % too high."""
+    data = pair(1, 0.0)
+    random = np.random.default_rng(2)
+    T = np.exp(random.uniform(np.log(2), np.log(300), runs * points))
+    run = np.repeat(np.arange(runs), points)
+    exact = heat_capacity(build_model("debye + einstein"), T, np.array([220.0, 3.5, 460.0, 2.5]))
+    C = exact * np.where(run == high, 1.1, 1.0) * (1 + 0.005 * random.standard_normal(T.size))
+    readings = tuple(replace(data.readings[0], label=f"run {number}") for number in range(runs))
+    line = np.arange(T.size) + 2
+    return replace(data, temperature=T, heat_capacity=C, sigma=0.005 * C, run=run, line=line, readings=readings)
+
+
+def test_long_runs_are_compared_without_a_table_of_all_pairs_of_points() -> None:
+    """Two interleaved runs of 20 000 points need less than 100 MB; the full matrix would take 3.2 GB."""
+    data = interleaved(2, 20_000, 1)
+    order = np.argsort(data.temperature)
+    T, C, run = data.temperature[order], data.heat_capacity[order], data.run[order]
+    tracemalloc.start()
+    (found,) = run_overlaps(data, T, C, 0.005 * C, run)
+    _, peak = tracemalloc.get_traced_memory()
+    tracemalloc.stop()
+    assert peak < 1e8
+    assert found.ratio == pytest.approx(1 / 1.1, abs=4 * found.u)
+
+
+def test_of_many_pairs_of_runs_the_worst_come_first_and_all_are_counted() -> None:
+    """Of 300 pairs of 25 runs the 200 worst are kept, those of the run that is too high first; 12 are shown."""
+    prepared = prepare(interleaved(25, 40, 7))
+    assert (prepared.overlaps_compared, len(prepared.overlaps)) == (300, 200)
+    assert all("run 7" in (each.first, each.second) for each in prepared.overlaps[:20])
+    off = [abs(each.ratio - 1) / each.u for each in prepared.overlaps]
+    assert off == sorted(off, reverse=True)
+    rows = overlap_words(prepared.overlaps, prepared.overlaps_compared)
+    assert [label for label, _, _ in rows] == ["overlap"] * 12 + ["overlaps"]
+    assert rows[-1][1] == "300 pairs of runs compared"
 
 
 def test_overlap_is_reported() -> None:

@@ -14,6 +14,7 @@ from .request import request
 from .streams import print_json
 
 if TYPE_CHECKING:
+    from ..diagnosing.examination import Examination
     from ..records import Measurement, RunOverlap, Sheet
 
 __all__ = ["parser", "run"]
@@ -43,6 +44,7 @@ def parser() -> CommandParser:
 
 def run(arguments: argparse.Namespace) -> int:
     """Print what was read from each file."""
+    from ..diagnosing.examination import examine
     from ..report.inspection import inspection_record, inspection_text, overlap_text
     from ..report.noticed import overlap_record
     from ..report.result import json_text
@@ -55,30 +57,37 @@ def run(arguments: argparse.Namespace) -> int:
     if arguments.save_sheet:
         path = save_sheet(recognised_sheet(measurements))
         print(f"latticefit: wrote {str(path)!r}", file=sys.stderr)
-    overlaps, apart = _compared(sheet, base, measurements)
+    seen = [(each, examine(each)) for each in measurements]
+    overlaps, compared, apart = _compared(sheet, base, seen)
     if arguments.json:
-        files = [inspection_record(each) for each in measurements]
-        print_json(json_text({"files": files, "overlaps": overlap_record(overlaps), "not_joined_because": apart}))
+        files = [inspection_record(*each) for each in seen]
+        record = {"files": files, "overlaps": overlap_record(overlaps), "overlaps_compared": compared}
+        print_json(json_text({**record, "not_joined_because": apart}))
     else:
-        parts = [inspection_text(each) for each in measurements]
-        parts += [text for text in (overlap_text(overlaps), f"not to be joined: {apart}\n" if apart else "") if text]
-        print("\n".join(parts), end="")
+        parts = [inspection_text(*each) for each in seen]
+        joined = overlap_text(overlaps, compared), f"not to be joined: {apart}\n" if apart else ""
+        print("\n".join([*parts, *(text for text in joined if text)]), end="")
     return 0
 
 
-def _compared(sheet: Sheet, base: Path, measurements: list[Measurement]) -> tuple[tuple[RunOverlap, ...], str | None]:
-    """How the runs compare where they overlap; or why they cannot be joined."""
-    from ..diagnosing.examination import overlaps_of
+def _compared(
+    sheet: Sheet, base: Path, seen: list[tuple[Measurement, Examination]]
+) -> tuple[tuple[RunOverlap, ...], int, str | None]:
+    """How the runs compare where they overlap, and how many pairs do; or why they cannot be joined."""
+    from ..preparing import prepare
     from ..reading import read_measurement
 
-    if sum(len(each.readings) for each in measurements) < 2:
-        return (), None
-    if len(measurements) == 1:
-        return overlaps_of(measurements[0]), None
+    if len(seen) == 1:
+        return seen[0][1].overlaps, seen[0][1].overlaps_compared, None
     try:
-        return overlaps_of(read_measurement(sheet.sample, sheet.runs, base, sheet.addenda)), None
+        joined = read_measurement(sheet.sample, sheet.runs, base, sheet.addenda)
     except InputError as error:
-        return (), str(error)
+        return (), 0, str(error)
+    try:
+        prepared = prepare(joined)
+    except InputError:  # not per mole, or nothing left: each file has said so
+        return (), 0, None
+    return prepared.overlaps, prepared.overlaps_compared, None
 
 
 def _read(sheet: Sheet, base: Path) -> list[Measurement]:

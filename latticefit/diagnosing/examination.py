@@ -10,14 +10,15 @@ import numpy as np
 from numpy.typing import NDArray
 
 from ..errors import InputError
+from ..exclusion import reasons_kept_out
 from ..preparing.features import suspected_features
-from ..preparing.outliers import outliers
-from ..preparing.prepare import prepare
+from ..preparing.outliers import outliers_of_runs
+from ..preparing.prepare import points_to_fit, prepare
 from ..preparing.scatter import pooled_scatter, repeat_sets
-from ..records import Feature, FloatArray, LevelFinding, Measurement, RunOverlap
-from .level import examine_level
+from ..records import Feature, FloatArray, LevelFinding, Measurement, PreparedData, RunOverlap
+from .level import examine_prepared_level, level_not_judged
 
-__all__ = ["Decade", "Examination", "examine", "overlaps_of"]
+__all__ = ["Decade", "Examination", "examine"]
 
 _GAP: Final = 1.25  # neighbours further apart than this factor in T, and
 _WIDE: Final = 3.0  # this many times further than is usual, leave a gap
@@ -51,6 +52,13 @@ class Examination:
     level : LevelFinding
     left_out : tuple of str
         Reasons for which points that could be read will not be fitted, one a point.
+    averaged, means : int
+        How many of the others are averaged, and into how many points.
+    to_fit : int
+        Points that will be fitted, means included.
+    overlaps : tuple of RunOverlap
+        As in PreparedData; empty where the measurement cannot be prepared.
+    overlaps_compared : int
     """
 
     decades: tuple[Decade, ...]
@@ -61,6 +69,11 @@ class Examination:
     features: tuple[Feature, ...]
     level: LevelFinding
     left_out: tuple[str, ...]
+    averaged: int
+    means: int
+    to_fit: int
+    overlaps: tuple[RunOverlap, ...]
+    overlaps_compared: int
 
 
 def examine(measurement: Measurement) -> Examination:
@@ -71,8 +84,11 @@ def examine(measurement: Measurement) -> Examination:
     measurement : Measurement
         Points that are set aside, or outside the windows of their runs, count for decades and gaps only.
     """
-    left_out = _left_out(measurement)
-    used = np.array([i for i, reason in enumerate(left_out) if reason is None], dtype=np.intp)
+    prepared, why = _prepared(measurement)
+    single, averaged, means = _reasons(measurement)
+    # of points that are averaged, the points themselves are looked at
+    reasons = reasons_kept_out(measurement) if averaged else single
+    used = np.array([i for i, reason in enumerate(reasons) if reason is None], dtype=np.intp)
     index = used[np.argsort(measurement.temperature[used], kind="stable")]
     sets, points = _repeats(measurement, index)
     scatter = None
@@ -84,29 +100,46 @@ def examine(measurement: Measurement) -> Examination:
         repeated_sets=sets,
         repeated_points=points,
         scatter=scatter,
-        outliers=_outliers(measurement, index),
+        outliers=_outliers(measurement, prepared, index),
         features=_features(measurement, index, scatter),
-        level=examine_level(measurement),
-        left_out=tuple(reason for reason in left_out if reason is not None),
+        level=level_not_judged(why) if prepared is None else examine_prepared_level(prepared),
+        left_out=tuple(reason for reason in (*single, *averaged) if reason is not None),
+        averaged=averaged.count(None),
+        means=means,
+        to_fit=single.count(None) + means,
+        overlaps=() if prepared is None else prepared.overlaps,
+        overlaps_compared=0 if prepared is None else prepared.overlaps_compared,
     )
 
 
-def overlaps_of(measurement: Measurement) -> tuple[RunOverlap, ...]:
-    """Compare the runs of a measurement where they overlap; empty where it cannot be prepared."""
+def _prepared(measurement: Measurement) -> tuple[PreparedData | None, str]:
+    """The points that would be fitted; None and the reason where there are none, or not per mole."""
     try:
-        return prepare(measurement).overlaps
-    except InputError:
-        return ()
+        return prepare(measurement), ""
+    except InputError as error:
+        return None, str(error)
 
 
-def _left_out(measurement: Measurement) -> tuple[str | None, ...]:
+def _reasons(measurement: Measurement) -> tuple[tuple[str | None, ...], tuple[str | None, ...], int]:
+    """Say why points are left out: those that stand for themselves, those in means; and how many means are fitted."""
     try:
-        reasons = prepare(measurement).reasons
-    except InputError:  # not per mole, or nothing left: what is set aside is known all the same
-        reasons = ()
-    if len(reasons) == measurement.run.size:
-        return reasons
-    return measurement.set_aside or (None,) * measurement.run.size
+        repeated, reasons = points_to_fit(measurement)
+    except InputError:  # no repeats where they were asked for
+        return reasons_kept_out(measurement), (), 0
+    rows = repeated.measurement.excluded[len(measurement.excluded) :]
+    into = [row.averaged_into for row in rows if row.averaged_into is not None]
+    single = tuple(reason for i, reason in enumerate(reasons) if i not in set(into))
+    return single, tuple(reasons[i] for i in into), sum(reasons[i] is None for i in set(into))
+
+
+def _outliers(
+    measurement: Measurement, prepared: PreparedData | None, index: NDArray[np.intp]
+) -> tuple[tuple[int, float], ...]:
+    sizes = None if prepared is None else prepared.outlier_sizes
+    if sizes is None or sizes.size != measurement.run.size:
+        sigma = None if measurement.sigma is None else measurement.sigma[index]
+        sizes = outliers_of_runs(measurement, index, sigma)
+    return tuple((i, float(sizes[i])) for i in np.flatnonzero(sizes).tolist())
 
 
 def _by_run(measurement: Measurement, index: NDArray[np.intp]) -> list[NDArray[np.intp]]:
@@ -122,15 +155,6 @@ def _repeats(measurement: Measurement, index: NDArray[np.intp]) -> tuple[int, in
             sets += int((sizes > 1).sum())
             points += int(sizes[sizes > 1].sum())
     return sets, points
-
-
-def _outliers(measurement: Measurement, index: NDArray[np.intp]) -> tuple[tuple[int, float], ...]:
-    found: list[tuple[int, float]] = []
-    for place in _by_run(measurement, index):
-        sigma = None if measurement.sigma is None else measurement.sigma[place]
-        sizes = outliers(measurement.temperature[place], measurement.heat_capacity[place], sigma)
-        found += [(int(place[i]), float(sizes[i])) for i in np.flatnonzero(sizes)]
-    return tuple(sorted(found))
 
 
 def _features(measurement: Measurement, index: NDArray[np.intp], scatter: float | None) -> tuple[Feature, ...]:

@@ -24,7 +24,7 @@ from .level_words import level_sentence
 from .slips import addenda_left_in, possible_slips
 from .stiff import stiff_share
 
-__all__ = ["LEVEL_IMPOSSIBLE", "examine_level", "examine_prepared_level", "explain_mode_sum"]
+__all__ = ["LEVEL_IMPOSSIBLE", "examine_level", "examine_prepared_level", "explain_mode_sum", "level_not_judged"]
 
 LEVEL_IMPOSSIBLE = 1.3
 """C(Tmax) over 3nR above which data are refused (common practice, no source)."""
@@ -102,7 +102,7 @@ def examine_level(measurement: Measurement) -> LevelFinding:
     try:
         prepared = prepare(measurement)
     except InputError as error:
-        return _not_judged(str(error))
+        return level_not_judged(str(error))
     return examine_prepared_level(prepared)
 
 
@@ -128,7 +128,7 @@ def examine_prepared_level(prepared: PreparedData) -> LevelFinding:
     measurement = prepared.measurement
     sample = measurement.sample
     if sample.atoms is None:
-        return _not_judged("the atoms per formula unit are not known; give --formula or --atoms")
+        return level_not_judged("the atoms per formula unit are not known; give --formula or --atoms")
     T = np.asarray(prepared.temperature)
     ratio = np.asarray(prepared.heat_capacity) / (3 * sample.atoms * GAS_CONSTANT)
     count = count_modes(prepared) if T[-1] > _WARM or ratio[-1] > _COUNTED else None
@@ -170,7 +170,8 @@ def explain_mode_sum(prepared: PreparedData, ratio: float, u: float) -> tuple[Le
     return _all_explanations(level, possible_slips(prepared.measurement, level.top), prepared.measurement)
 
 
-def _not_judged(reason: str) -> LevelFinding:
+def level_not_judged(reason: str) -> LevelFinding:
+    """Return the finding for data whose level cannot be judged, for a reason in words."""
     finding = LevelFinding("not judged", reason, None, None, None, None, None, None, (), "")
     return replace(finding, sentence=level_sentence(finding))
 

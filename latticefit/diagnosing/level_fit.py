@@ -6,7 +6,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from ..constants import GAS_CONSTANT
+from ..constants import GAS_CONSTANT, NORMAL_MEDIAN
 from ..fitting import Solution, covariance, minimise
 from ..functions import debye_heat_capacity, einstein_heat_capacity
 from ..models import Model, Parametrisation, build_model, heat_capacity, theta_debye_moment, total_modes
@@ -196,7 +196,7 @@ def _robust(model: Model, start: Solution, points: _Points) -> _Points:
     """The points with the sigma of those far off enlarged, so that they pull with a bounded force."""
     solution = _fit(start, points)
     off = np.abs(points.C - heat_capacity(model, points.T, np.asarray(solution.values))) / points.sigma
-    scale = max(1.0, 1.4826 * float(np.median(off)))
+    scale = max(1.0, NORMAL_MEDIAN * float(np.median(off)))
     return replace(points, sigma=points.sigma * scale * np.maximum(1.0, off / (_ROBUST * scale)))
 
 

@@ -7,16 +7,16 @@ from typing import Final
 import numpy as np
 
 from ..preparing.features import suspected_features
-from ..preparing.outliers import OUTLIER
+from ..preparing.outliers import OUTLIER, outlier_words
 from ..preparing.scatter import local_scatter
 from ..preparing.templates import SIGNIFICANT
-from ..records import Feature, FloatArray, NamedWarning, RunOverlap
+from ..records import Feature, FloatArray, Measurement, NamedWarning, RunOverlap
 from ..rounding import format_value, percent_text
 from .case import Case
 
-__all__ = ["lack_of_fit", "outliers", "replicate_spread", "run_overlap", "suspected_feature"]
+__all__ = ["lack_of_fit", "outlier_at", "outliers", "replicate_spread", "run_overlap", "suspected_feature"]
 
-_SHOWN: Final = 5  # points that a message lists
+_SHOWN: Final = 5  # points or pairs of runs that a message lists
 _OVERLAP: Final = 0.01  # difference of two runs that matters where it is no chance (common practice, no source)
 _OVERLAP_U, _CHANCE_U = 3.0, 2.0  # standard uncertainties from which any difference counts, and from which 1 % does
 _SPREAD: Final = 3.0  # times the stated sigma (common practice, no source)
@@ -26,28 +26,32 @@ _LACK_P: Final = 0.01
 def outliers(case: Case) -> NamedWarning | None:
     """Points lie too far from their neighbours for scatter."""
     prepared, measurement = case.prepared, case.prepared.measurement
-    flagged = [(i, flag) for i, flag in enumerate(prepared.flags) if flag is not None]
-    if not flagged:
+    sizes = prepared.outlier_sizes
+    if sizes is None or not sizes.any():
         return None
     several = len(measurement.readings) > 1
-    words = [
-        f"line {measurement.line[i]}"
-        + (f" of {measurement.readings[measurement.run[i]].label}" if several else "")
-        + f", {measurement.temperature[i]:.4g} K: {flag}"
-        for i, flag in flagged
-    ]
+    flagged = np.flatnonzero(sizes).tolist()
+    words = [outlier_at(measurement, i, float(sizes[i])) for i in flagged]
     more = f"; and {len(words) - _SHOWN} more (column flag of residuals.csv)" if len(words) > _SHOWN else ""
-    lines = " ".join(f"--mask-lines {measurement.line[i]}" for i, _ in flagged[:_SHOWN])
+    lines = " ".join(f"--mask-lines {measurement.line[i]}" for i in flagged[:_SHOWN])
     lines = "mask_lines of its run in a sheet" if several else lines
     return NamedWarning(
         code="outliers",
         level="note",
         concerns="data",
         message=f"too far from the neighbours for scatter: {'; '.join(words[:_SHOWN])}{more}",
-        found=max(float(flag.partition(" ")[0]) for _, flag in flagged),
+        found=float(np.abs(sizes).max()),
         threshold=OUTLIER,
         advice=f"nothing is left out by itself: look at these points, and leave out what is wrong by {lines}",
     )
+
+
+def outlier_at(measurement: Measurement, position: int, size: float) -> str:
+    """Say where a point stands, and how far it lies from its neighbours, in scatters with sign."""
+    label = measurement.readings[measurement.run[position]].label
+    of_run = f" of {label}" if len(measurement.readings) > 1 else ""
+    where = f"line {measurement.line[position]}{of_run}, {measurement.temperature[position]:.4g} K"
+    return f"{where}: {outlier_words(size)}"
 
 
 def run_overlap(case: Case) -> NamedWarning | None:
@@ -60,13 +64,16 @@ def run_overlap(case: Case) -> NamedWarning | None:
         f"{each.first} is {percent_text(100 * abs(each.ratio - 1))} {'above' if each.ratio > 1 else 'below'} "
         f"{each.second} from {each.temperature_low:.4g} to {each.temperature_high:.4g} K (ratio "
         f"{format_value(each.ratio, each.u)})"
-        for each in differing
+        for each in differing[:_SHOWN]
     ]
+    kept = case.prepared.overlaps
+    least = "at least " if len(differing) == len(kept) < case.prepared.overlaps_compared else ""
+    more = f"; and {least}{len(differing) - _SHOWN} more pairs of runs" if len(differing) > _SHOWN else ""
     return NamedWarning(
         code="run-overlap",
         level="warn",
         concerns=f"{worst.first}, {worst.second}",
-        message=f"the runs differ where both were measured: {'; '.join(words)}",
+        message=f"the runs differ where both were measured: {'; '.join(words)}{more}",
         found=abs(worst.ratio - 1),
         threshold=_OVERLAP,
         advice=(

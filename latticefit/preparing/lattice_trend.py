@@ -7,6 +7,7 @@ from typing import Final
 
 import numpy as np
 
+from ..constants import NORMAL_MEDIAN
 from ..functions import einstein_heat_capacity
 from ..records import FloatArray
 
@@ -17,7 +18,6 @@ _HIGHEST: Final = 20.0  # times the highest T: modes above are not excited
 _MOST_POINTS: Final = 500  # more are averaged in blocks before the weights are sought
 _ROUNDS: Final = 6
 _TUNING: Final = 2.0  # scatters beyond which a point loses weight
-_NORMAL_MEDIAN: Final = 1.4826
 
 
 @dataclass(frozen=True)
@@ -93,7 +93,7 @@ def lattice_trend(temperature: FloatArray, heat_capacity: FloatArray) -> Lattice
         weight = non_negative(columns * (trust / level)[:, None], C * trust / level)
         level = np.maximum(columns @ weight, 1e-3 * C)
         off = np.abs(np.log(C / level))
-        scatter = max(_NORMAL_MEDIAN * float(np.median(off)), 1e-9)
+        scatter = max(NORMAL_MEDIAN * float(np.median(off)), 1e-9)
         trust = np.sqrt(np.minimum(1.0, _TUNING * scatter / np.maximum(off, 1e-300)))
     kept = weight[: theta.size] > 0
     return LatticeTrend(theta[kept], np.concatenate([weight[: theta.size][kept], weight[theta.size :]]), float(T[-1]))

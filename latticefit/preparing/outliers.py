@@ -7,11 +7,12 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
-from ..records import FloatArray
+from ..constants import NORMAL_MEDIAN
+from ..records import FloatArray, Measurement
 from .lattice_trend import lattice_trend
 from .scatter import local_scatter, repeat_sets
 
-__all__ = ["OUTLIER", "outliers"]
+__all__ = ["OUTLIER", "outlier_words", "outliers", "outliers_of_runs"]
 
 OUTLIER: Final = 3.7
 """Deviation from the neighbours, in scatters, from which a point is flagged."""
@@ -24,7 +25,6 @@ _TROUBLED: Final = 2.0  # times the scatter, where the neighbours themselves fol
 _LEAST: Final = 1e-4  # relative scatter that is believed of a measurement
 _RAISED: Final = 2.0  # scatters that the neighbours of a point lie off where it belongs to a feature
 _FEATURE: Final = 3  # adjacent points or sets of repeats that make a feature
-_NORMAL_MEDIAN: Final = 1.4826
 
 
 def outliers(temperature: FloatArray, heat_capacity: FloatArray, sigma: FloatArray | None = None) -> FloatArray:
@@ -78,6 +78,36 @@ def outliers(temperature: FloatArray, heat_capacity: FloatArray, sigma: FloatArr
     return found
 
 
+def outliers_of_runs(measurement: Measurement, index: NDArray[np.intp], sigma: FloatArray | None) -> FloatArray:
+    """Look at each run of a measurement alone.
+
+    Parameters
+    ----------
+    measurement : Measurement
+    index : ndarray of int, shape (m,)
+        The points that count, by ascending temperature.
+    sigma : ndarray, shape (m,), or None
+        Their stated standard uncertainty, unit of the heat capacity.
+
+    Returns
+    -------
+    ndarray, shape (n,)
+        As from `outliers`, for each point of the measurement.
+    """
+    found = np.zeros(measurement.run.size)
+    for run in np.unique(measurement.run[index]):
+        own = measurement.run[index] == run
+        place = index[own]
+        T, C = measurement.temperature[place], measurement.heat_capacity[place]
+        found[place] = outliers(T, C, None if sigma is None else sigma[own])
+    return found
+
+
+def outlier_words(size: float) -> str:
+    """Say how far a point lies from its neighbours; `size` in scatters, with sign."""
+    return f"{abs(size):.1f} times the scatter {'above' if size > 0 else 'below'} its neighbours"
+
+
 def _windows(points: int, side: int) -> NDArray[np.intp]:
     """Return the positions of each point's neighbours in order, itself included, shape (n, at most 2 side + 1)."""
     size = min(2 * side + 1, points)
@@ -90,7 +120,7 @@ def _from_neighbours(flat: FloatArray, sets: NDArray[np.intp]) -> tuple[FloatArr
     others = np.where(sets[members] == sets[:, None], np.nan, flat[members])
     others[np.isnan(others).all(axis=1)] = 0.0  # more repeats than a neighbourhood holds: compared with the curve
     middle = np.nanmedian(others, axis=1)[:, None]
-    near = _NORMAL_MEDIAN * np.nanmedian(np.abs(others - middle), axis=1)
+    near = NORMAL_MEDIAN * np.nanmedian(np.abs(others - middle), axis=1)
     kept = np.abs(others - middle) <= 3 * near[:, None]
     count = np.maximum(kept.sum(axis=1), 1)
     mean = np.where(kept, others, 0.0).sum(axis=1) / count
@@ -98,8 +128,8 @@ def _from_neighbours(flat: FloatArray, sets: NDArray[np.intp]) -> tuple[FloatArr
 
 
 def _scatter(off: FloatArray) -> FloatArray:
-    local = _NORMAL_MEDIAN * np.median(off[_windows(off.size, _WIDE)], axis=1)
-    return np.maximum(local, _LEAST_OF_RUN * _NORMAL_MEDIAN * float(np.median(off)))
+    local = NORMAL_MEDIAN * np.median(off[_windows(off.size, _WIDE)], axis=1)
+    return np.maximum(local, _LEAST_OF_RUN * NORMAL_MEDIAN * float(np.median(off)))
 
 
 def _adjacent(raised: FloatArray, sets: NDArray[np.intp], i: int) -> int:

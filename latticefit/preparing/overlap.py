@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Iterator
 from dataclasses import dataclass
-from itertools import combinations
 from typing import Final
 
 import numpy as np
@@ -13,10 +13,14 @@ from numpy.typing import NDArray
 from ..records import FloatArray, Measurement, RunOverlap
 from .lattice_trend import lattice_trend
 
-__all__ = ["run_overlaps"]
+__all__ = ["FEW_PAIRS", "run_overlaps", "worst_overlaps"]
+
+FEW_PAIRS: Final = 12
+"""Pairs of runs that are all shown, in the order of the runs; of more the worst are."""
 
 _FEWEST: Final = 3  # points of each run in the common range
 _SIDE: Final = 4  # neighbours on each side that a value between points is taken from
+_KEPT: Final = 200  # pairs, where there are more
 
 
 @dataclass(frozen=True)
@@ -25,12 +29,21 @@ class _Run:
 
     temperature: FloatArray
     heat_capacity: FloatArray
-    sigma: FloatArray
+    relative: FloatArray
 
-    def between(self, low: float, high: float) -> _Run:
-        """Return the points from `low` to `high`, ends included."""
-        inside = (low <= self.temperature) & (high >= self.temperature)
-        return _Run(self.temperature[inside], self.heat_capacity[inside], self.sigma[inside])
+
+@dataclass(frozen=True)
+class _Compared:
+    """Points of a sparser run beside a denser one.
+
+    `difference` is ln(C/C of the other run) with its variance, shape (m,), `members` and `share` the points of the
+    other run that it was taken from and the part of each, shape (m, at most 8).
+    """
+
+    difference: FloatArray
+    variance: FloatArray
+    members: NDArray[np.intp]
+    share: FloatArray
 
 
 def run_overlaps(
@@ -60,67 +73,101 @@ def run_overlaps(
     A step of 2.5 % between runs of 30 to 300 points with 0.3 to 2 % noise is recovered without bias; it lies within u
     in 67 to 70 %, within 2 u in 93 to 96 % of 300 cases each (scripts/noticing.py).
     """
+    if len(measurement.readings) == 1:
+        return ()
     labels = [reading.label for reading in measurement.readings]
-    runs = [
-        _Run(*(each[run == number] for each in (temperature, heat_capacity, sigma))) for number in range(len(labels))
-    ]
-    found = []
-    for first, second in combinations(range(len(labels)), 2):
-        parts = _common(runs[first], runs[second])
-        if parts is None:
-            continue
-        few, many = sorted((0, 1), key=lambda each: parts[each].temperature.size)
-        log_ratio, u = _compared(parts[few], (runs[first], runs[second])[many])
-        ratio = math.exp(log_ratio if few == 0 else -log_ratio)
-        T = parts[few].temperature
-        overlap = RunOverlap(labels[first], labels[second], ratio, ratio * u, float(T[0]), float(T[-1]), int(T.size))
-        found.append(overlap)
-    return tuple(found)
+    order = np.argsort(run, kind="stable")
+    parts = np.split(order, np.searchsorted(run[order], np.arange(1, len(labels))))
+    relative = sigma / heat_capacity
+    runs = [_Run(*(each[part] for each in (temperature, heat_capacity, relative))) for part in parts]
+    begin, end = _common(runs)
+    found: dict[tuple[int, int], RunOverlap] = {}
+    for number in range(len(runs)):
+        for few, log_ratio, u in _beside(runs, number, begin, end):
+            pair = min(few, number), max(few, number)
+            ratio = math.exp(log_ratio if pair[0] == few else -log_ratio)
+            T = runs[few].temperature[begin[few, number] : end[few, number]]
+            ends = float(T[0]), float(T[-1])
+            found[pair] = RunOverlap(labels[pair[0]], labels[pair[1]], ratio, ratio * u, *ends, int(T.size))
+    return tuple(found[pair] for pair in sorted(found))
 
 
-def _common(first: _Run, second: _Run) -> tuple[_Run, _Run] | None:
-    """Return the points of two runs in their common range, None where that is too little to compare."""
-    if min(first.temperature.size, second.temperature.size) < _FEWEST:
-        return None
-    low = max(first.temperature[0], second.temperature[0])
-    high = min(first.temperature[-1], second.temperature[-1])
-    parts = first.between(low, high), second.between(low, high)
-    return parts if min(each.temperature.size for each in parts) >= _FEWEST else None
+def worst_overlaps(overlaps: tuple[RunOverlap, ...]) -> tuple[RunOverlap, ...]:
+    """Return up to 12 pairs of runs as they are; of more those 200 that differ by most standard uncertainties."""
+    if len(overlaps) <= FEW_PAIRS:
+        return overlaps
+    return tuple(sorted(overlaps, key=lambda each: -abs(each.ratio - 1) / each.u)[:_KEPT])
 
 
-def _compared(few: _Run, many: _Run) -> tuple[float, float]:
-    """Return the mean of ln(C/C of the other run) at the points of the first, and its standard uncertainty.
+def _common(runs: list[_Run]) -> tuple[NDArray[np.intp], NDArray[np.intp]]:
+    """Return from which to which point each run (row) lies in the range that it has in common with each (column)."""
+    first = np.array([each.temperature[0] if each.temperature.size else np.inf for each in runs])
+    last = np.array([each.temperature[-1] if each.temperature.size else -np.inf for each in runs])
+    begin = [np.searchsorted(each.temperature, np.maximum(first, first[i])) for i, each in enumerate(runs)]
+    end = [np.searchsorted(each.temperature, np.minimum(last, last[i]), "right") for i, each in enumerate(runs)]
+    return np.array(begin, dtype=np.intp), np.array(end, dtype=np.intp)
 
-    The other run is taken at these temperatures from a straight line through its eight nearest points, after division
-    by a smooth curve through all of them (`lattice_trend`). A point of it that serves several temperatures counts
-    once in the uncertainty; where the ratios scatter by more than that, u is larger by as much (R. T. Birge, Phys. Rev.
-    40, 207 (1932)).
+
+def _beside(
+    runs: list[_Run], number: int, begin: NDArray[np.intp], end: NDArray[np.intp]
+) -> Iterator[tuple[int, float, float]]:
+    """Compare one run with all that have fewer points than it in the common range: run, mean of ln C/C, and its u."""
+    other, many = (end - begin)[:, number], (end - begin)[number]
+    earlier = np.arange(len(runs)) < number
+    fewer = (other < many) | ((other == many) & earlier)  # of two that have as many, the earlier counts as sparser
+    partners = np.flatnonzero(fewer & (np.minimum(other, many) >= _FEWEST))
+    if partners.size == 0:
+        return
+    pieces = [slice(begin[i, number], end[i, number]) for i in partners]
+    T, C, relative = (
+        np.concatenate([getattr(runs[i], name)[piece] for i, piece in zip(partners, pieces, strict=True)])
+        for name in ("temperature", "heat_capacity", "relative")
+    )
+    compared, start = _differences(T, C, relative, runs[number]), 0
+    for i in partners.tolist():
+        stop = start + int(other[i])
+        yield i, *_mean(compared, slice(start, stop), relative, runs[number].relative)
+        start = stop
+
+
+def _differences(T: FloatArray, C: FloatArray, relative: FloatArray, many: _Run) -> _Compared:
+    """Compare points with a run that is taken there from a straight line through its eight nearest points.
+
+    Both are divided by a smooth curve through all points of the run (`lattice_trend`) beforehand.
     """
-    T, at = few.temperature, many.temperature
-    relative, relative_other = few.sigma / few.heat_capacity, many.sigma / many.heat_capacity
-    trend = lattice_trend(at, many.heat_capacity)
-    nearest = _nearest(T, at, relative_other)
-    difference = np.log(few.heat_capacity / trend.at(T)) - nearest @ np.log(many.heat_capacity / trend.at(at))
-    variance = relative**2 + nearest**2 @ relative_other**2
+    trend = lattice_trend(many.temperature, many.heat_capacity)
+    members, share = _nearest(T, many)
+    flat = np.log(many.heat_capacity / trend.at(many.temperature))
+    difference = np.log(C / trend.at(T)) - (share * flat[members]).sum(axis=1)
+    return _Compared(difference, relative**2 + (share**2 * many.relative[members] ** 2).sum(axis=1), members, share)
+
+
+def _mean(compared: _Compared, part: slice, relative: FloatArray, relative_many: FloatArray) -> tuple[float, float]:
+    """Return the mean difference of a part of the points, and its standard uncertainty.
+
+    A point of the denser run that serves several temperatures counts once in the uncertainty; where the differences
+    scatter by more than that, u is larger by as much (R. T. Birge, Phys. Rev. 40, 207 (1932)).
+    """
+    difference, variance, members = compared.difference[part], compared.variance[part], compared.members[part]
     weight = 1 / variance / np.sum(1 / variance)
     mean = float(weight @ difference)
-    own = float((weight * relative) @ (weight * relative))
-    common = (weight @ nearest) * relative_other
-    excess = float(np.sum((difference - mean) ** 2 / variance)) / (T.size - 1)
-    return mean, float(np.sqrt((own + common @ common) * max(1.0, excess)))
+    own = weight * relative[part]
+    lowest, highest = int(members[0, 0]), int(members[-1, -1])
+    share = weight[:, None] * compared.share[part]
+    common = np.bincount((members - lowest).ravel(), share.ravel()) * relative_many[lowest : highest + 1]
+    excess = float(np.sum((difference - mean) ** 2 / variance)) / (difference.size - 1)
+    return mean, math.sqrt(float(own @ own + common @ common) * max(1.0, excess))
 
 
-def _nearest(T: FloatArray, at: FloatArray, relative: FloatArray) -> FloatArray:
-    """Return the matrix that takes values at `at` to values at `T`, by weighted straight lines in ln T."""
-    matrix = np.zeros((T.size, at.size))
+def _nearest(T: FloatArray, many: _Run) -> tuple[NDArray[np.intp], FloatArray]:
+    """Return the points of a run nearest to temperatures, and their parts in weighted straight lines in ln T."""
+    at = many.temperature
     size = min(2 * _SIDE, at.size)
     starts = np.clip(np.searchsorted(at, T) - _SIDE, 0, at.size - size)
-    for row, (start, here) in enumerate(zip(starts.tolist(), np.log(T).tolist(), strict=True)):
-        members = slice(start, start + size)
-        x, weight = np.log(at[members]) - here, relative[members] ** -2.0
-        weight = weight / weight.sum()
-        middle = float(weight @ x)
-        spread = float(weight @ (x - middle) ** 2)
-        lean = -middle * (x - middle) / spread if spread > 1e-18 else 0.0
-        matrix[row, members] = weight * (1 + lean)
-    return matrix
+    members = starts[:, None] + np.arange(size)
+    x, weight = np.log(at)[members] - np.log(T)[:, None], many.relative[members] ** -2.0
+    weight = weight / weight.sum(axis=1, keepdims=True)
+    middle = (weight * x).sum(axis=1, keepdims=True)
+    spread = (weight * (x - middle) ** 2).sum(axis=1, keepdims=True)
+    lean = np.divide(-middle * (x - middle), spread, out=np.zeros_like(x), where=spread > 1e-18)
+    return members, weight * (1 + lean)

@@ -9,14 +9,15 @@ import numpy as np
 from numpy.typing import NDArray
 
 from ..errors import InputError
+from ..exclusion import reasons_kept_out
 from ..records import FloatArray, Measurement, PreparedData, SigmaKind
 from .addenda import measured_total, with_addenda
-from .outliers import outliers
-from .overlap import run_overlaps
-from .replicates import asks_for_replicates, sigma_from_replicates, with_replicates
+from .outliers import outliers_of_runs
+from .overlap import run_overlaps, worst_overlaps
+from .replicates import Repeated, asks_for_replicates, sigma_from_replicates, with_replicates
 from .scatter import FEWEST_POINTS, pooled_scatter
 
-__all__ = ["prepare"]
+__all__ = ["points_to_fit", "prepare"]
 
 Interval = tuple[float, float]
 
@@ -52,11 +53,9 @@ def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Seq
         If the heat capacity is not per mole, no point is left, or repeats are asked for and there are none.
     """
     _refuse_other_basis(measurement)
-    single, repeated = measurement, with_replicates(measurement)
+    single = measurement
+    repeated, reasons = points_to_fit(measurement, window, mask)
     measurement = repeated.measurement
-    reasons = tuple(
-        why or dropped for why, dropped in zip(_reasons(measurement, window, mask), repeated.dropped, strict=True)
-    )
     index = _used(measurement, reasons)
     temperature, heat_capacity = measurement.temperature[index], measurement.heat_capacity[index]
     if measurement.sigma is not None:
@@ -64,13 +63,16 @@ def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Seq
         sigma, text = measurement.sigma[index], f"stated: {measurement.sigma_text}"
     elif asks_for_replicates(measurement):
         kind = "estimated"
-        singly = index if single.run.size == measurement.run.size else _used(single, _reasons(single, window, mask))
+        singly = (
+            index if single.run.size == measurement.run.size else _used(single, reasons_kept_out(single, window, mask))
+        )
         total = measured_total(measurement)[index]
         sigma, text = sigma_from_replicates(single, singly, total, repeated.size[index])
     else:
         kind = "estimated"
         sigma, text = _estimated(temperature, measured_total(measurement)[index], measurement.run[index])
     sigma, text = with_addenda(measurement, index, sigma, text)
+    overlaps = run_overlaps(measurement, temperature, heat_capacity, sigma, measurement.run[index])
     return PreparedData(
         measurement=measurement,
         temperature=temperature,
@@ -82,9 +84,25 @@ def prepare(measurement: Measurement, window: Sequence[Interval] = (), mask: Seq
         sigma_kind=kind,
         sigma_text=text,
         sigma_assumed=kind == "estimated" and text.startswith(_ASSUMED_WORD),
-        flags=_flags(measurement, index, sigma if kind == "stated" else None),
-        overlaps=run_overlaps(measurement, temperature, heat_capacity, sigma, measurement.run[index]),
+        outlier_sizes=outliers_of_runs(measurement, index, sigma if kind == "stated" else None),
+        overlaps=worst_overlaps(overlaps),
+        overlaps_compared=len(overlaps),
     )
+
+
+def points_to_fit(
+    measurement: Measurement, window: Sequence[Interval] = (), mask: Sequence[Interval] = ()
+) -> tuple[Repeated, tuple[str | None, ...]]:
+    """Return the measurement with its repeats as asked, on any basis, and why each point of it is not fitted.
+
+    Raises
+    ------
+    InputError
+        If repeats are asked for and there are none.
+    """
+    repeated = with_replicates(measurement)
+    kept_out = reasons_kept_out(repeated.measurement, window, mask)
+    return repeated, tuple(why or dropped for why, dropped in zip(kept_out, repeated.dropped, strict=True))
 
 
 def _refuse_other_basis(measurement: Measurement) -> None:
@@ -104,62 +122,6 @@ def _used(measurement: Measurement, reasons: Sequence[str | None]) -> NDArray[np
         first = next((reason for reason in reasons if reason), "none was read")
         raise InputError(f"no point is left to fit: all {len(reasons)} are left out (the first: {first})")
     return used[np.argsort(measurement.temperature[used], kind="stable")]
-
-
-def _flags(measurement: Measurement, index: NDArray[np.intp], sigma: FloatArray | None) -> tuple[str | None, ...]:
-    """Say of the points at `index` how far they lie from their neighbours, where that is too far for scatter."""
-    flags: list[str | None] = [None] * measurement.run.size
-    for run in np.unique(measurement.run[index]):
-        own = measurement.run[index] == run
-        place = index[own]
-        sizes = outliers(
-            measurement.temperature[place], measurement.heat_capacity[place], None if sigma is None else sigma[own]
-        )
-        for i in np.flatnonzero(sizes):
-            side = "above" if sizes[i] > 0 else "below"
-            flags[int(place[i])] = f"{abs(sizes[i]):.1f} times the scatter {side} its neighbours"
-    return tuple(flags)
-
-
-# ------------------------------------------------------------------------------------------------ windows and masks
-
-
-def _reasons(measurement: Measurement, window: Sequence[Interval], mask: Sequence[Interval]) -> tuple[str | None, ...]:
-    by_run = [(reading.settings.window, reading.settings.mask) for reading in measurement.readings]
-    reasons: list[str | None] = []
-    points = zip(measurement.temperature.tolist(), measurement.run.tolist(), strict=True)
-    for i, (temperature, run) in enumerate(points):
-        if measurement.set_aside and measurement.set_aside[i] is not None:
-            reasons.append(measurement.set_aside[i])
-            continue
-        run_window, run_mask = by_run[run]
-        masked = next((interval for interval in (*run_mask, *mask) if _inside(temperature, interval)), None)
-        if not _in_any(temperature, run_window):
-            reasons.append(_outside(run_window))
-        elif not _in_any(temperature, window):
-            reasons.append(_outside(window))
-        else:
-            reasons.append(None if masked is None else f"masked {_words(masked)}")
-    return tuple(reasons)
-
-
-def _inside(temperature: float, interval: Interval) -> bool:
-    return interval[0] <= temperature <= interval[1]
-
-
-def _in_any(temperature: float, windows: Sequence[Interval]) -> bool:
-    return not windows or any(_inside(temperature, window) for window in windows)
-
-
-def _outside(windows: Sequence[Interval]) -> str:
-    return f"outside window{'s' if len(windows) > 1 else ''} {' and '.join(map(_words, windows))}"
-
-
-def _words(interval: Interval) -> str:
-    low, high = interval
-    if np.isinf(high):
-        return f"from {low:g} K"
-    return f"up to {high:g} K" if low <= 0 else f"{low:g}-{high:g} K"
 
 
 # ------------------------------------------------------------------------------------------------------------ sigma

@@ -11,6 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.stats import f as f_distribution
 
+from ..constants import REPEAT_FACTOR
 from ..errors import InputError
 from ..records import ExcludedRow, FloatArray, Measurement, Repair
 from ..rounding import percent_text
@@ -104,7 +105,7 @@ def _sets(measurement: Measurement, number: int, only_usable: bool) -> list[_Set
 def _none_found(measurement: Measurement, asking: dict[int, object]) -> str:
     number, word = next(iter(asking.items()))
     T = np.sort(measurement.temperature[measurement.run == number])
-    close = T.size > 1 and bool((T[1:] < 1.003 * T[:-1]).any())
+    close = T.size > 1 and bool((T[1:] < REPEAT_FACTOR * T[:-1]).any())
     why = (
         "its points follow each other so closely that sets cannot be told apart"
         if close

@@ -9,6 +9,7 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
+from ..constants import NORMAL_MEDIAN, REPEAT_FACTOR
 from ..records import FloatArray
 from .lattice_trend import lattice_trend
 
@@ -24,10 +25,8 @@ __all__ = [
 ]
 
 _NEIGHBOURS: Final = 7
-_NORMAL_MEDIAN: Final = 1.4826  # standard deviation of a normal distribution over the median of its absolute values
 _LEAST_FREEDOM: Final = 1e-6
 
-_REPEAT: Final = 1.003  # points closer than this factor in T may be repeats of one set
 _WIDEST_SET: Final = 1.009  # a longer chain of such points is no set
 _APART: Final = 4.0  # sets lie at least this many times further apart than the points within them
 _APART_EACH: Final = 2.0  # and each set this many times further from its neighbours than its own points
@@ -89,7 +88,7 @@ def repeat_sets(temperature: FloatArray, asked: bool = False) -> NDArray[np.intp
     stand in sets. A point outside the sets has a number of its own.
     """
     steps = np.diff(np.log(temperature))
-    inside = steps < math.log(_REPEAT)
+    inside = steps < math.log(REPEAT_FACTOR)
     inside = _without_chains(steps, inside)
     if not inside.any() or inside.all() or (not asked and inside.sum() < _SHARE * steps.size):
         return None
@@ -256,5 +255,5 @@ def local_scatter(temperature: FloatArray, heat_capacity: FloatArray) -> float |
     if not useful.any():
         return None
     deviation = (log_c - fitted)[useful] / np.sqrt(freedom[useful])
-    scatter = _NORMAL_MEDIAN * float(np.median(np.abs(deviation)))
+    scatter = NORMAL_MEDIAN * float(np.median(np.abs(deviation)))
     return scatter if math.isfinite(scatter) else None

@@ -8,6 +8,7 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
+from ..constants import NORMAL_MEDIAN
 from ..records import Feature, FloatArray
 from .lattice_trend import lattice_functions, lattice_trend, non_negative
 
@@ -33,7 +34,6 @@ _PLAIN: Final = 0.1  # excess of a peak that no smooth error makes, so that it n
 _LOCAL: Final = 2.5  # standard uncertainties of what is seen there
 _RAISED: Final = 2.0  # scatters by which a point beside a peak belongs to it
 _NEAR_IN_T: Final = 1.2  # factor in T between two pieces that belong together
-_NORMAL_MEDIAN: Final = 1.4826
 
 
 @dataclass(frozen=True)
@@ -128,7 +128,7 @@ class _Pulls:
         terms = np.column_stack([used**2, residual * used, basis * used[:, None]])
         self._sums = np.vstack([np.zeros(terms.shape[1]), np.cumsum(terms, axis=0)])
         freedom = max(self.place.size - basis.shape[1], 1) / self.place.size
-        self._common = max(1.0, _NORMAL_MEDIAN * float(np.median(np.abs(residual))) / np.sqrt(freedom))
+        self._common = max(1.0, NORMAL_MEDIAN * float(np.median(np.abs(residual))) / np.sqrt(freedom))
 
     def peaks(self, width: int) -> tuple[FloatArray, FloatArray]:
         """Return pull and amount of `width` adjacent points, by the first of them."""
@@ -172,7 +172,7 @@ def _believed(found: list[_Found], explained: _Explained, points: Points, kept: 
     pulls, believed = _Pulls(explained, points, kept), []
     for each in found:
         elsewhere = pulls.steps()[0] if each.kind == "step" else pulls.peaks(each.width)[0]
-        common = max(1.0, _NORMAL_MEDIAN * float(np.median(np.abs(elsewhere))))
+        common = max(1.0, NORMAL_MEDIAN * float(np.median(np.abs(elsewhere))))
         weighed = replace(each, significance=each.significance / common)
         if weighed.significance > SIGNIFICANT:
             believed.append(weighed)

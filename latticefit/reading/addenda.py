@@ -23,6 +23,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from ..errors import InputError, nearest
+from ..exclusion import kept_out
 from ..records import (
     AddendaSettings,
     AddendaShare,
@@ -35,7 +36,6 @@ from ..records import (
 from ..rounding import percent_range
 from ..units import heat_capacity_unit
 from .addenda_file import Known, read_known
-from .points import kept_out
 from .wording import counted, quoted, shown_name
 
 __all__ = ["take_off"]

@@ -25,6 +25,7 @@ from numpy.typing import NDArray
 from scipy.interpolate import CubicSpline
 from scipy.special import logsumexp
 
+from ..constants import REPEAT_FACTOR
 from ..errors import InputError
 from ..records import FloatArray
 
@@ -37,7 +38,7 @@ MARGIN: Final = 0.005
 """How far beyond its points a curve is continued, as a part of T: repeats of one set point differ by as much (common
 practice, no source)."""
 
-_REPEAT: Final = math.log(1.003)  # points closer than this in ln T are averaged
+_REPEAT: Final = math.log(REPEAT_FACTOR)  # points closer than this in ln T are averaged
 _MOST: Final = 250  # averages: the eigenvalue problem grows with their cube
 _STRENGTHS: Final = 80
 _BETWEEN: Final = 4  # places between two points at which u is worked out

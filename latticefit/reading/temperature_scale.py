@@ -17,8 +17,8 @@ from numpy.polynomial import polynomial
 from numpy.typing import NDArray
 
 from ..errors import InputError
+from ..exclusion import kept_out
 from ..records import ExcludedRow, FloatArray, Measurement, Repair
-from .points import kept_out
 from .wording import counted, shown_name
 
 __all__ = ["on_its90", "scale_difference", "scale_slope"]

@@ -191,10 +191,13 @@ class PreparedData(Frozen):
         The sigma model in force, in words.
     sigma_assumed : bool
         True where nothing was stated and nothing could be estimated: only the relative sizes of sigma mean anything.
-    flags : tuple of (str or None), length of the measurement or 0
-        How far a fitted point lies from its neighbours, where that is too far for scatter; None for the others.
+    outlier_sizes : ndarray, shape of the measurement, or None
+        How far a fitted point lies from its neighbours, in scatters, where that is too far for scatter; 0 for the
+        others. None where it was not looked at.
     overlaps : tuple of RunOverlap
-        Every pair of runs with a common range.
+        Pairs of runs with a common range: all in the order of the runs, of many those that differ most, worst first.
+    overlaps_compared : int
+        How many pairs have a common range.
     """
 
     measurement: Measurement
@@ -207,5 +210,6 @@ class PreparedData(Frozen):
     sigma_kind: SigmaKind
     sigma_text: str
     sigma_assumed: bool = False
-    flags: tuple[str | None, ...] = ()
+    outlier_sizes: FloatArray | None = None
     overlaps: tuple[RunOverlap, ...] = ()
+    overlaps_compared: int = 0

@@ -119,7 +119,7 @@ def measured_rows(analysis: Analysis) -> tuple[Row, ...]:
         Row("sigma", prepared.sigma_text, f"the covariance is {analysis.fit.covariance_kind}"),
         *(Row(*each) for each in correction_words(measurement)),
         *(() if analysis.level is None else (Row("level", level_text(analysis.level)),)),
-        *(Row(*each) for each in overlap_words(prepared.overlaps)),
+        *(Row(*each) for each in overlap_words(prepared.overlaps, prepared.overlaps_compared)),
     )
 
 

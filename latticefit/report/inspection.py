@@ -10,7 +10,8 @@ from typing import Any
 
 import numpy as np
 
-from ..diagnosing.examination import Decade, Examination, examine
+from ..diagnosing.examination import Decade, Examination
+from ..diagnosing.point_rules import outlier_at
 from ..records import Feature, Measurement, Reading, RunOverlap
 from ..rounding import percent_text
 from ..wording import harmless
@@ -31,12 +32,12 @@ _WIDTH = 80
 _LABEL = 14
 
 
-def inspection_record(measurement: Measurement) -> dict[str, Any]:
+def inspection_record(measurement: Measurement, found: Examination) -> dict[str, Any]:
     """Return what was read from the one file of a measurement, as in the contract of ``inspect --json``."""
-    found = examine(measurement)
     return {
         **_how(measurement),
         "points": int(measurement.temperature.size),
+        "points_to_fit": found.to_fit,
         "rows_left_out": [{"line": each.line, "reason": each.reason} for each in measurement.excluded],
         "repairs": [{"file": each.file, "line": each.line, "message": each.message} for each in measurement.repairs],
         "warnings": _warnings(measurement, found),
@@ -87,7 +88,7 @@ def _arrays(measurement: Measurement) -> dict[str, Any]:
 
 def _warnings(measurement: Measurement, found: Examination) -> list[str]:
     words = [level_text(found.level)] if level_is_in_doubt(found.level) else []
-    words += [f"outlier: {_outlier_words(measurement, *each)}" for each in found.outliers]
+    words += [f"outlier: {outlier_at(measurement, *each)}" for each in found.outliers]
     return words + [_feature_words(each) for each in found.features]
 
 
@@ -102,11 +103,10 @@ def _feature_record(feature: Feature) -> dict[str, Any]:
     }
 
 
-def inspection_text(measurement: Measurement) -> str:
+def inspection_text(measurement: Measurement, found: Examination) -> str:
     """Return the same for people, within 80 columns and one screen unless there is much to mend."""
     reading = measurement.readings[0]
     unit = _UNITS[measurement.basis][0]
-    found = examine(measurement)
     converted = "" if reading.heat_capacity_unit == unit else f", converted to {unit}"
     facts: list[tuple[str, str]] = [
         ("written", _written(reading)),
@@ -124,7 +124,7 @@ def inspection_text(measurement: Measurement) -> str:
         ),
         ("spread", ", ".join(map(_decade_words, found.decades))),
         ("repeats", _repeats(found)),
-        ("outliers", _listed([_outlier_words(measurement, *each) for each in found.outliers])),
+        ("outliers", _listed([harmless(outlier_at(measurement, *each)) for each in found.outliers])),
         ("features", _listed([_feature_words(each) for each in found.features])),
         ("level", level_text(found.level)),
     ]
@@ -167,17 +167,20 @@ def _points(measurement: Measurement, found: Examination) -> str:
     T = measurement.temperature
     rows = sum(each.rows for each in measurement.readings)
     words = f"{T.size} of {rows} rows, {T.min():.4g} to {T.max():.4g} K"
-    if not found.left_out:
+    if not found.left_out and not found.averaged:
         return words
     counts = Counter(_without_numbers(harmless(each)) for each in found.left_out).most_common()
     named = [f"{count} {reason}" for reason, count in counts[:_MOST_REASONS]]
     more = sum(count for _, count in counts[_MOST_REASONS:])
-    others = f"; {more} for other reasons" if more else ""
-    return f"{words}; {T.size - len(found.left_out)} to be fitted ({'; '.join(named)}{others})"
+    named += [f"{more} for other reasons"] if more else []
+    named += [f"{found.averaged} averaged into the means of {found.means} sets"] if found.averaged else []
+    return f"{words}; {found.to_fit or 'none'} to be fitted ({'; '.join(named)})"
 
 
 def _without_numbers(reason: str) -> str:
     """A reason of one line in the words for all of its kind: ``line 12 masked`` is one of the masked lines."""
+    if re.fullmatch(r"first of a set of \d+, dropped as asked", reason):
+        return "first of their sets, dropped as asked"
     return "by --mask-lines" if re.fullmatch(r"line \d+ masked", reason) else reason
 
 
@@ -198,12 +201,6 @@ def _repeats(found: Examination) -> str:
     if not found.repeated_sets:
         return "none"
     return f"{found.repeated_points} points in {found.repeated_sets} sets (--replicates says what is done with them)"
-
-
-def _outlier_words(measurement: Measurement, position: int, size: float) -> str:
-    side = "above" if size > 0 else "below"
-    where = f"line {measurement.line[position]}, {measurement.temperature[position]:.4g} K"
-    return f"{where}: {abs(size):.1f} times the scatter {side} its neighbours"
 
 
 def _feature_words(feature: Feature) -> str:
@@ -249,9 +246,9 @@ def _repairs(measurement: Measurement) -> list[str]:
     return [*lines, *([f"    and {more} more (--json lists all)"] if more > 0 else [])]
 
 
-def overlap_text(overlaps: tuple[RunOverlap, ...]) -> str:
+def overlap_text(overlaps: tuple[RunOverlap, ...], compared: int) -> str:
     """Return how runs compare where they overlap, a line each."""
     lines = []
-    for label, words, remark in overlap_words(overlaps):
+    for label, words, remark in overlap_words(overlaps, compared):
         lines += _entry(label, harmless(_with_remark(words, remark)))
     return "\n".join(lines) + ("\n" if lines else "")

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import Any
 
+from ..preparing.overlap import FEW_PAIRS
 from ..records import LackOfFit, Measurement, RunOverlap
 from ..rounding import format_value, percent_text
 from .wording import plain_number
@@ -68,16 +69,18 @@ def lack_of_fit_record(found: LackOfFit | None) -> dict[str, Any] | None:
     }
 
 
-def overlap_words(overlaps: tuple[RunOverlap, ...]) -> tuple[tuple[str, str, str], ...]:
-    """Give one row for each pair of runs that overlap: label, ratio with u, range."""
-    return tuple(
+def overlap_words(overlaps: tuple[RunOverlap, ...], compared: int) -> tuple[tuple[str, str, str], ...]:
+    """Give one row for each pair of runs that overlap: label, ratio with u, range; of many the worst, and how many."""
+    rows = tuple(
         (
             "overlap",
             f"{each.first} / {each.second} = {format_value(each.ratio, each.u)}",
             f"{plain_number(each.temperature_low)} to {plain_number(each.temperature_high)} K, {each.points} points",
         )
-        for each in overlaps
+        for each in overlaps[:FEW_PAIRS]
     )
+    more = "the pairs above differ by most standard uncertainties"
+    return rows if compared <= FEW_PAIRS else (*rows, ("overlaps", f"{compared} pairs of runs compared", more))
 
 
 def overlap_record(overlaps: tuple[RunOverlap, ...]) -> list[dict[str, Any]]:

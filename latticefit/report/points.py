@@ -8,6 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from ..preparing.addenda import with_addenda
+from ..preparing.outliers import outlier_words
 from ..records import Analysis, FloatArray, Frozen
 
 __all__ = ["MeasuredPoints", "measured_points"]
@@ -83,5 +84,11 @@ def measured_points(analysis: Analysis) -> MeasuredPoints:
         line=measurement.line,
         used=used,
         reasons=prepared.reasons,
-        flags=prepared.flags or (None,) * residual.size,
+        flags=_flags(prepared.outlier_sizes, residual.size),
     )
+
+
+def _flags(sizes: FloatArray | None, points: int) -> tuple[str | None, ...]:
+    if sizes is None:
+        return (None,) * points
+    return tuple(outlier_words(size) if size else None for size in sizes.tolist())

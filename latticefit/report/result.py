@@ -128,6 +128,7 @@ def _data(analysis: Analysis) -> dict[str, Any]:
         "sigma_text": prepared.sigma_text,
         "level": level_record(analysis.level),
         "overlaps": overlap_record(prepared.overlaps),
+        "overlaps_compared": prepared.overlaps_compared,
         "repairs": [{"file": each.file, "line": each.line, "message": each.message} for each in measurement.repairs],
     }
 
