@@ -8,7 +8,7 @@ from ..preparing.scatter import repeat_sets
 from ..records import NamedWarning
 from ..rounding import percent_text
 from .case import Case
-from .lack_of_fit import first_of_averaged_sets, first_of_sets
+from .lack_of_fit import FIRST_OFF, first_of_averaged_sets, first_of_sets
 from .verdict import DURBIN_WATSON, MISFIT, RUNS_P, blame, correlated
 
 __all__ = [
@@ -24,7 +24,6 @@ __all__ = [
 
 _POINTS_PER_PARAMETER = 5
 _SIGMA_OVERSTATED = 0.5
-_FIRST_OFF = 4.0  # standard errors from which the first points of sets are off by no chance
 _RUN_PULL = 4.0  # mean normalised residual of a run, in its own standard errors
 
 
@@ -106,7 +105,7 @@ def repeats(case: Case) -> NamedWarning | None:
     if not sizes:
         return None
     first = first_of_sets(case.prepared)
-    off = first is not None and abs(first.mean) > _FIRST_OFF * first.u
+    off = first is not None and abs(first.mean) > FIRST_OFF * first.u
     settling = (
         f"; the first of each lies {percent_text(100 * abs(first.mean))} {'above' if first.mean > 0 else 'below'} the "
         "others"
@@ -134,7 +133,7 @@ def repeats(case: Case) -> NamedWarning | None:
 def first_points_averaged(case: Case) -> NamedWarning | None:
     """The first point of each set had not settled and was averaged in."""
     first = first_of_averaged_sets(case.prepared)
-    if first is None or abs(first.mean) <= _FIRST_OFF * first.u:
+    if first is None or abs(first.mean) <= FIRST_OFF * first.u:
         return None
     side = "above" if first.mean > 0 else "below"
     return NamedWarning(
@@ -143,7 +142,7 @@ def first_points_averaged(case: Case) -> NamedWarning | None:
         concerns="data",
         message=f"the first point of each averaged set lies {percent_text(100 * abs(first.mean))} {side} the others",
         found=abs(first.mean) / first.u,
-        threshold=_FIRST_OFF,
+        threshold=FIRST_OFF,
         advice="it had not settled: --replicates drop-first leaves it out of each set",
     )
 

@@ -11,11 +11,13 @@ from numpy.typing import NDArray
 
 from ..errors import InputError
 from ..exclusion import reasons_kept_out
+from ..preparing.addenda import with_addenda
 from ..preparing.features import suspected_features
 from ..preparing.outliers import outliers_of_runs
 from ..preparing.prepare import points_to_fit, prepare
 from ..preparing.scatter import pooled_scatter, repeat_sets
 from ..records import Feature, FloatArray, LevelFinding, Measurement, PreparedData, RunOverlap
+from .lack_of_fit import unsettled_first_points
 from .level import examine_prepared_level, level_not_judged
 
 __all__ = ["Decade", "Examination", "examine"]
@@ -59,6 +61,10 @@ class Examination:
     overlaps : tuple of RunOverlap
         As in PreparedData; empty where the measurement cannot be prepared.
     overlaps_compared : int
+    sigma : ndarray, shape (n,), or None
+        Stated standard uncertainty of each point, that of the addenda in it; unit of the measurement.
+    unsettled : float or None
+        By how much the first point of each set of repeats lies above the others, relative, where that is no chance.
     """
 
     decades: tuple[Decade, ...]
@@ -74,6 +80,8 @@ class Examination:
     to_fit: int
     overlaps: tuple[RunOverlap, ...]
     overlaps_compared: int
+    sigma: FloatArray | None
+    unsettled: float | None
 
 
 def examine(measurement: Measurement) -> Examination:
@@ -109,7 +117,16 @@ def examine(measurement: Measurement) -> Examination:
         to_fit=single.count(None) + means,
         overlaps=() if prepared is None else prepared.overlaps,
         overlaps_compared=0 if prepared is None else prepared.overlaps_compared,
+        sigma=_sigma(measurement),
+        unsettled=None if prepared is None else unsettled_first_points(prepared),
     )
+
+
+def _sigma(measurement: Measurement) -> FloatArray | None:
+    if measurement.sigma is None:
+        return None
+    every = np.arange(measurement.run.size)
+    return with_addenda(measurement, every, np.array(measurement.sigma), "")[0]
 
 
 def _prepared(measurement: Measurement) -> tuple[PreparedData | None, str]:

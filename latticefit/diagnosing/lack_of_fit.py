@@ -12,9 +12,19 @@ from scipy.stats import f as f_distribution
 from ..preparing.scatter import repeat_sets, spread_of_sets
 from ..records import FitRecord, FloatArray, LackOfFit, PreparedData
 
-__all__ = ["FirstOfSets", "first_of_sets", "lack_of_fit"]
+__all__ = [
+    "FIRST_OFF",
+    "FirstOfSets",
+    "first_of_averaged_sets",
+    "first_of_sets",
+    "lack_of_fit",
+    "unsettled_first_points",
+]
 
 _FEWEST_FREEDOM: Final = 3
+FIRST_OFF = 4.0
+"""Standard errors from which the first points of sets are off by no chance."""
+
 _FEWEST_SETS: Final = 5
 
 
@@ -45,6 +55,14 @@ def first_of_averaged_sets(prepared: PreparedData) -> FirstOfSets | None:
         if row.averaged_into is not None:
             sets.setdefault(row.averaged_into, []).append(row.heat_capacity)
     return _summed([values[0] / float(np.mean(values[1:])) - 1 for values in sets.values() if len(values) > 1])
+
+
+def unsettled_first_points(prepared: PreparedData) -> float | None:
+    """By how much the first point of each set lies above the others, relative; None where that may be chance."""
+    for first in (first_of_sets(prepared), first_of_averaged_sets(prepared)):
+        if first is not None and abs(first.mean) > FIRST_OFF * first.u:
+            return first.mean
+    return None
 
 
 def _summed(differences: list[float]) -> FirstOfSets | None:

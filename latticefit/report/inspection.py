@@ -10,15 +10,16 @@ from typing import Any
 
 import numpy as np
 
+from ..constants import GAS_CONSTANT
 from ..diagnosing.examination import Decade, Examination
 from ..diagnosing.point_rules import outlier_at
 from ..records import Feature, Measurement, Reading, RunOverlap
 from ..rounding import percent_text
 from ..wording import harmless
-from .corrections import correction_words
+from .corrections import correction_words, mass_words
 from .level import level_is_in_doubt, level_record, level_text
 from .noticed import overlap_words
-from .wording import significant
+from .wording import plain_number, significant
 
 __all__ = ["inspection_record", "inspection_text", "overlap_text"]
 
@@ -49,7 +50,7 @@ def inspection_record(measurement: Measurement, found: Examination) -> dict[str,
         "scatter_percent": None if found.scatter is None else 100 * found.scatter,
         "features": [_feature_record(each) for each in found.features],
         "level": level_record(found.level),
-        "measurement": _arrays(measurement),
+        "measurement": _arrays(measurement, found),
     }
 
 
@@ -69,17 +70,22 @@ def _how(measurement: Measurement) -> dict[str, Any]:
         "temperature_unit": reading.temperature_unit,
         "heat_capacity_unit": reading.heat_capacity_unit,
         "quantity": measurement.quantity,
+        "sample": {
+            "formula": measurement.sample.formula,
+            "atoms_per_formula_unit": measurement.sample.atoms,
+            "molar_mass_g_mol": None if measurement.sample.molar_mass is None else 1e3 * measurement.sample.molar_mass,
+        },
         "sigma": measurement.sigma_text,
         "runs": [each.label for each in measurement.readings],
     }
 
 
-def _arrays(measurement: Measurement) -> dict[str, Any]:
+def _arrays(measurement: Measurement, found: Examination) -> dict[str, Any]:
     key = _UNITS[measurement.basis][1]
     return {
         "temperature_K": measurement.temperature.tolist(),
         f"heat_capacity_{key}": measurement.heat_capacity.tolist(),
-        f"sigma_{key}": None if measurement.sigma is None else measurement.sigma.tolist(),
+        f"sigma_{key}": None if found.sigma is None else found.sigma.tolist(),
         "run": [measurement.readings[i].label for i in measurement.run.tolist()],
         "line": measurement.line.tolist(),
         "set_aside": list(measurement.set_aside or (None,) * measurement.run.size),
@@ -109,6 +115,7 @@ def inspection_text(measurement: Measurement, found: Examination) -> str:
     unit = _UNITS[measurement.basis][0]
     converted = "" if reading.heat_capacity_unit == unit else f", converted to {unit}"
     facts: list[tuple[str, str]] = [
+        ("sample", _sample(measurement)),
         ("written", _written(reading)),
         ("temperature", f"{harmless(reading.temperature_column)}, in {reading.temperature_unit}"),
         (
@@ -131,8 +138,21 @@ def inspection_text(measurement: Measurement, found: Examination) -> str:
     lines = [harmless(reading.file)]
     for label, words in facts:
         lines += _entry(label, words)
-    lines += ["", *_rows(measurement), "", *_repairs(measurement)]
+    lines += ["", *_rows(measurement, found), "", *_repairs(measurement)]
     return "\n".join(lines).rstrip() + "\n"
+
+
+def _sample(measurement: Measurement) -> str:
+    """Formula, atoms, molar mass, 3nR and mass: what turns the file into J/(mol K)."""
+    sample = measurement.sample
+    words = [] if sample.formula is None else [f"{harmless(sample.formula)}"]
+    if sample.atoms is not None:
+        words.append(f"{plain_number(sample.atoms, 6)} atoms, 3nR = {3 * sample.atoms * GAS_CONSTANT:.5g} J/(mol K)")
+    if sample.molar_mass is not None:
+        words.append(f"{plain_number(1e3 * sample.molar_mass, 6)} g/mol")
+    if sample.mass is not None:
+        words.append(mass_words(measurement))
+    return ", ".join(words) or "nothing is known: give --formula"
 
 
 def _entry(label: str, words: str) -> list[str]:
@@ -156,11 +176,12 @@ def _sigma(measurement: Measurement, found: Examination) -> str:
         asked = measurement.readings[0].settings.sigma
         words = f"to be taken from {asked}" if asked in ("scatter", "replicates") else "none stated"
         return f"{words}; {scatter}" if scatter else words
-    relative = np.asarray(measurement.sigma) / np.asarray(measurement.heat_capacity)
+    relative = np.asarray(found.sigma) / np.asarray(measurement.heat_capacity)
     size = f"{percent_text(100 * float(relative.min()))} to {percent_text(100 * float(relative.max()))}"
     if np.isclose(relative.min(), relative.max(), rtol=0.02):
         size = percent_text(100 * float(np.median(relative)))
-    return f"{harmless(measurement.sigma_text)}: {size}" + (f"; {scatter}" if scatter else "")
+    known = "" if measurement.addenda_u is None else " and the addenda"
+    return f"{harmless(measurement.sigma_text)}{known}: {size}" + (f"; {scatter}" if scatter else "")
 
 
 def _points(measurement: Measurement, found: Examination) -> str:
@@ -200,7 +221,11 @@ def _decade_words(decade: Decade) -> str:
 def _repeats(found: Examination) -> str:
     if not found.repeated_sets:
         return "none"
-    return f"{found.repeated_points} points in {found.repeated_sets} sets (--replicates says what is done with them)"
+    words = f"{found.repeated_points} points in {found.repeated_sets} sets (--replicates says what is done with them)"
+    if found.unsettled is None:
+        return words
+    side = "above" if found.unsettled > 0 else "below"
+    return f"{words}; the first of each lies {percent_text(100 * abs(found.unsettled))} {side} the others"
 
 
 def _feature_words(feature: Feature) -> str:
@@ -217,7 +242,7 @@ def _listed(words: Sequence[str]) -> str:
     return shown if len(words) <= 3 else f"{shown}; and {len(words) - 3} more"
 
 
-def _rows(measurement: Measurement) -> list[str]:
+def _rows(measurement: Measurement, found: Examination) -> list[str]:
     """The first and last points by temperature."""
     T, C = np.asarray(measurement.temperature), np.asarray(measurement.heat_capacity)
     order = np.argsort(T, kind="stable")
@@ -227,7 +252,7 @@ def _rows(measurement: Measurement) -> list[str]:
     for place, i in enumerate(shown):
         if place == _SHOWN_ROWS and T.size > 2 * _SHOWN_ROWS:
             lines.append(f"  {'...':>12}")
-        sigma = "" if measurement.sigma is None else significant(float(measurement.sigma[i]), 2)
+        sigma = "" if found.sigma is None else significant(float(found.sigma[i]), 2)
         lines.append(f"  {float(T[i]):>12.6g} {float(C[i]):>18.6g} {sigma:>12}".rstrip())
     return lines
 
