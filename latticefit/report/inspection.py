@@ -11,6 +11,7 @@ from typing import Any
 import numpy as np
 
 from ..diagnosing.examination import Decade, Examination, examine
+from ..reading.unused import looks_like_uncertainty
 from ..records import Feature, Measurement, Reading, RunOverlap
 from ..rounding import percent_text
 from ..wording import harmless
@@ -65,6 +66,7 @@ def _how(measurement: Measurement) -> dict[str, Any]:
             "heat_capacity": reading.heat_capacity_column,
             "sigma": reading.sigma_column,
         },
+        "unused_columns": list(reading.unused_columns),
         "temperature_unit": reading.temperature_unit,
         "heat_capacity_unit": reading.heat_capacity_unit,
         "quantity": measurement.quantity,
@@ -116,6 +118,7 @@ def inspection_text(measurement: Measurement) -> str:
             f"{harmless(reading.heat_capacity_column)}, in {reading.heat_capacity_unit}{converted}",
         ),
         ("sigma", _sigma(measurement, found)),
+        *_not_used(reading),
         ("points", _points(measurement, found)),
         *([("runs", _runs(measurement))] if len(measurement.readings) > 1 else []),
         *(
@@ -133,6 +136,11 @@ def inspection_text(measurement: Measurement) -> str:
         lines += _entry(label, words)
     lines += ["", *_rows(measurement), "", *_repairs(measurement)]
     return "\n".join(lines).rstrip() + "\n"
+
+
+def _not_used(reading: Reading) -> list[tuple[str, str]]:
+    doubtful = [harmless(each) for each in reading.unused_columns if looks_like_uncertainty(each)]
+    return [("not used", ", ".join(doubtful))] if doubtful else []
 
 
 def _entry(label: str, words: str) -> list[str]:
