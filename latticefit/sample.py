@@ -66,6 +66,7 @@ def parse_formula(text: str) -> Formula:
     if len(plain) > _LONGEST_FORMULA:
         raise InputError(f"the formula {plain[:30] + '...'!r} is longer than {_LONGEST_FORMULA} characters")
     _refuse_unknown_elements(text, plain)
+    _refuse_leading_number(text, plain)
     atoms, molar_mass = _count(text, plain)
     if not (math.isfinite(molar_mass) and molar_mass > 0 and math.isfinite(atoms) and atoms > 0):
         raise InputError(f"formula {text!r} has no atoms with a known atomic weight: write it as in 'Al2O3'")
@@ -105,6 +106,24 @@ def _refuse_unknown_elements(text: str, plain: str) -> None:
         if symbol not in known:
             hint = f"; did you mean {symbol.capitalize()!r}?" if symbol.capitalize() in known else ""
             raise InputError(f"formula {text!r}: {symbol!r} is not a chemical element{hint}")
+
+
+def _refuse_leading_number(text: str, plain: str) -> None:
+    """Refuse ``13CH4`` and ``2NaCl``; a coefficient among several, as in ``3Al2O3*2SiO2``, is read."""
+    import periodictable
+
+    found = re.fullmatch(r"([\d.]+)([A-Z][a-z]?)?(.*)", plain)
+    if found is None:
+        return
+    number, symbol, rest = found[1], found[2], found[3]
+    isotopes = [] if symbol in (None, "D", "T") else periodictable.elements.symbol(symbol).isotopes
+    isotope = number.isdigit() and int(number) in isotopes
+    if "+" in rest and not isotope:
+        return
+    meant = f"an isotope is written {f'{symbol}[{number}]{rest}'!r}; else " if isotope else ""
+    raise InputError(
+        f"formula {text!r} begins with a number, which would multiply what follows: {meant}leave the number out"
+    )
 
 
 def _count(text: str, plain: str) -> tuple[float, float]:
@@ -262,7 +281,7 @@ def sample_notes(settings: SampleSettings) -> tuple[str, ...]:
         grams = f"{formula.molar_mass * 1000:.6g} g/mol, {formula.atoms:g} atoms"
         notes.append(f"formula {formula.text!r} read as {formula.read_as!r} ({grams})")
     if formula.read_as[0].isdigit():
-        notes.append(f"formula {formula.text!r} read as that many times the rest; an isotope is written as in 'Li[7]F'")
+        notes.append(f"formula {formula.text!r} begins with a number, which multiplies its first part only")
     if settings.atoms is not None and not math.isclose(settings.atoms, formula.atoms, rel_tol=1e-9):
         notes.append(f"{settings.atoms:g} atoms as stated, although {formula.text!r} has {formula.atoms:g}")
     if settings.molar_mass is not None:

@@ -303,7 +303,7 @@ _REWRITES: Final = (
     (r"\*\*|\^", "^"),
     (r"\b[Jj]oules?\b", "J"),
     (r"\bKelvins?\b", "K"),
-    (r"\bmoles\b", "mol"),
+    (r"\bmoles\b|\bM(?:OL|ol)(?:ES?|es?)?\b", "mol"),
     (r"\b(k?cal)_?\{?(?:th)\}?(?![A-Za-z])", r"\1"),
     (r"\b(k?cal)(?:_?\{?IT\}?(?![A-Za-z])|\s?\(IT\))|\bIT (k?cal)\b", r"\1\2IT"),
     (r"\bk_?\{?(?:B|\(B\))\}?(?![A-Za-z])", "kB"),

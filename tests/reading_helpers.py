@@ -8,6 +8,7 @@ from typing import Any
 from latticefit.reading import read_measurement
 from latticefit.records import Measurement, RunSettings, SampleSettings
 
+MASS_NOT_USED = "the mass is not used: every run is per mole"
 SAMPLE = SampleSettings(formula="Cu", mass="10 mg")
 
 
@@ -18,5 +19,5 @@ def read_text(folder: Path, text: str | bytes, sample: SampleSettings = SAMPLE, 
 
 
 def messages(measurement: Measurement) -> list[str]:
-    """What the reader noted, without the file."""
-    return [repair.message for repair in measurement.repairs]
+    """What the reader noted on the file, without its name."""
+    return [repair.message for repair in measurement.repairs if repair.message != MASS_NOT_USED]

@@ -574,6 +574,7 @@ def test_a_mass_that_converts_nothing_is_told(tmp_path: Path) -> None:
     write(tmp_path, run=MOLAR)
     found = read(tmp_path, sample=replace(SAMPLE, mass="10.0(2) mg"))
     assert messages(found) == ["the mass and its uncertainty are not used: no run is in J/K"]
-    assert messages(read(tmp_path)) == []
+    bare = read(tmp_path, sample=replace(SAMPLE, mass="10 mg"))
+    assert [each.message for each in bare.repairs] == ["the mass is not used: every run is per mole"]
     codes = [each.code for each in lf.fit(found, "debye + einstein").analysis.warnings]
     assert "mass-uncertainty" not in codes

@@ -9,12 +9,14 @@ from pathlib import Path
 import numpy as np
 import pytest
 from helpers import DEMO
+from reading_helpers import read_text
 
 import latticefit as lf
 from latticefit.cli import main
 from latticefit.diagnosing import examination, level
 from latticefit.preparing import prepare
 from latticefit.records import Measurement, PreparedData
+from latticefit.report.inspection import inspection_record, inspection_text
 
 TRUTH = tomllib.loads((DEMO / "truth.toml").read_text(encoding="utf-8"))
 
@@ -176,3 +178,13 @@ def test_a_file_is_prepared_once(monkeypatch: pytest.MonkeyPatch, repeats: str) 
     monkeypatch.setattr(level, "prepare", counted)
     assert main(["inspect", repeats, "--formula", "Ne"]) == 0
     assert len(calls) == 1
+
+
+def test_columns_that_were_not_used_are_listed(tmp_path: Path) -> None:
+    """JSON lists every column that nothing was taken from; the screen names one that looks like an uncertainty."""
+    header = "T/K,Cp/(J/(mol K)),s/(J/(mol K)),remark,quality"
+    rows = "".join(f"{10 * k},{k},0.1,ok,1\n" for k in range(1, 7))
+    found = read_text(tmp_path, f"{header}\n{rows}", require=("quality >= 0.9",))
+    assert inspection_record(found)["unused_columns"] == ["s/(J/(mol K))", "remark"]
+    assert "not used    s/(J/(mol K))\n" in inspection_text(found)
+    assert "  not used  " not in inspection_text(read_text(tmp_path, "T/K,Cp/(J/(mol K)),remark\n1,2,a\n2,3,b\n"))

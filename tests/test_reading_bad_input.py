@@ -41,8 +41,16 @@ FILES = [
     ("Cp\n1\n2\n", "run.csv: has one column; temperature and heat capacity are needed side by side"),
     ("1\n2\n3\n", "run.csv: has one column; temperature and heat capacity are needed side by side"),
     ("1,0" + ",0" * 1001, "run.csv: line 1 has 1003 columns, more than the 1000 that are read"),
-    ("T_K Cp_J_molK note\n1 2 ok\n2 3\n", "run.csv: line 3 has 2 cells where the header names 3 columns"),
-    ("T_K;Cp_J_molK\n1;2;3\n", "run.csv: line 2 has 3 cells where the header names 2 columns"),
+    (
+        "T_K Cp_J_molK note\n1 2 ok\n2 3\n",
+        "run.csv: line 3 has 2 cells where the header names 3 columns; "
+        "correct it, or leave the line out by --mask-lines 3",
+    ),
+    (
+        "T_K;Cp_J_molK\n1;2;3\n",
+        "run.csv: line 2 has 3 cells where the header names 2 columns; "
+        "correct it, or leave the line out by --mask-lines 2",
+    ),
     (
         "T in K and C in J\n1 2\n3 4\n",
         "run.csv: line 1 has 7 words over 2 columns; separate the columns by tabs, commas or semicolons",
@@ -69,10 +77,26 @@ FILES = [
         "column 'Cp_J_molK'); write them one way",
     ),
     # cells
-    ("T_K,Cp_J_molK\n1,2\n2,x\n", "run.csv: line 3, column 'Cp_J_molK': 'x' cannot be read as a number"),
-    ("T_K,Cp_J_molK\n1,2\n2,1_0\n", "run.csv: line 3, column 'Cp_J_molK': '1_0' cannot be read as a number"),
-    ("T_K;Cp_J_molK\n1;1.23,5\n2;3\n", "run.csv: line 2, column 'Cp_J_molK': '1.23,5' cannot be read as a number"),
-    ("T_K,Cp_J_molK\n1,2\n\x1b[2J,3\n", "run.csv: line 3, column 'T_K': '\\x1b[2J' cannot be read as a number"),
+    (
+        "T_K,Cp_J_molK\n1,2\n2,x\n",
+        "run.csv: line 3, column 'Cp_J_molK': 'x' cannot be read as a number; "
+        "correct it, or leave the line out by --mask-lines 3",
+    ),
+    (
+        "T_K,Cp_J_molK\n1,2\n2,1_0\n",
+        "run.csv: line 3, column 'Cp_J_molK': '1_0' cannot be read as a number; "
+        "correct it, or leave the line out by --mask-lines 3",
+    ),
+    (
+        "T_K;Cp_J_molK\n1;1.23,5\n2;3\n",
+        "run.csv: line 2, column 'Cp_J_molK': '1.23,5' cannot be read as a number; "
+        "correct it, or leave the line out by --mask-lines 2",
+    ),
+    (
+        "T_K,Cp_J_molK\n1,2\n\x1b[2J,3\n",
+        "run.csv: line 3, column 'T_K': '\\x1b[2J' cannot be read as a number; "
+        "correct it, or leave the line out by --mask-lines 3",
+    ),
     (
         "T_K,Cp_J_molK\n1,2\nT_K,Cp_J_gK\n",
         "run.csv: line 3 is a header that differs from the first; put each table into a file",
@@ -274,7 +298,8 @@ def test_no_run_is_refused() -> None:
             "T_K,Cp_J_molK\n1,2\n",
             "T_K,Cp_J_molK,sigma_J_molK\n1,2,1\n",
             {},
-            "runs 'a' and 'b': only one states an uncertainty; give 'a' a --sigma",
+            "runs 'a' and 'b': only one states an uncertainty; give 'a' one in a run sheet, as sigma = '1%' in its [[run]], "
+            "or estimate both by --sigma scatter",
         ),
         (
             "T_K,Cp_J_molK\n1,2\n",

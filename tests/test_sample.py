@@ -143,6 +143,19 @@ def test_isotope_in_any_spelling(text: str) -> None:
     assert formula.molar_mass == pytest.approx((7.016003 + 18.998403) / 1000, rel=1e-6)
 
 
-def test_leading_number_is_noted() -> None:
-    """``7LiF`` is seven formula units, not an isotope; the note says how that is written."""
-    assert "an isotope is written as in 'Li[7]F'" in sample_notes(SampleSettings(formula="7LiF"))[0]
+@pytest.mark.parametrize(
+    ("text", "isotope"), [("13CH4", "C[13]H4"), ("7Li2O", "Li[7]2O"), ("7Li2O*H2O", "Li[7]2O+H2O"), ("2NaCl", None)]
+)
+def test_leading_number_is_refused(text: str, isotope: str | None) -> None:
+    """An isotope or a coefficient at the beginning is refused; where it may be an isotope, its spelling is offered."""
+    with pytest.raises(InputError, match="leave the number out") as caught:
+        parse_formula(text)
+    assert (f"an isotope is written {isotope!r}" in str(caught.value)) == (isotope is not None)
+    if isotope is not None:
+        assert parse_formula(isotope).atoms > 0
+
+
+def test_leading_number_of_several_parts_is_noted() -> None:
+    """``3Al2O3*2SiO2`` has 21 atoms, and a note says what its first number multiplies."""
+    assert parse_formula("3Al2O3*2SiO2").atoms == 21
+    assert "multiplies its first part only" in sample_notes(SampleSettings(formula="3Al2O3*2SiO2"))[0]

@@ -11,6 +11,7 @@ from reading_helpers import messages, read_text
 from scipy.integrate import trapezoid
 
 from latticefit.errors import InputError
+from latticefit.reading.settings import RUN, checked
 from latticefit.reading.temperature_scale import scale_difference, scale_slope
 
 # Values assigned to fixed points in the texts of IPTS-68 (edition of 1975) and ITS-90, both from memory. Triple points
@@ -130,3 +131,10 @@ def test_rows_left_out_are_converted_too(tmp_path: Path) -> None:
     text = "# invented data\nT (K),Cp (J/(mol K))\n100,10\n300,-1\n600,26\n"
     found = read_text(tmp_path, text, temperature_scale="IPTS-68")
     assert found.excluded[0].temperature == pytest.approx(299.9933, abs=2e-4)
+
+
+def test_other_scale_is_refused_without_a_guess(tmp_path: Path) -> None:
+    """A scale that is not known is not taken for a near one: the data must be converted first."""
+    for scale in ("EPT-76", "IPTS-48"):
+        with pytest.raises(InputError, match="only ITS-90 and IPTS-68 are known; convert data on another scale first"):
+            checked({"temperature_scale": scale}, RUN)

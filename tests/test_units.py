@@ -260,3 +260,9 @@ def test_units_library_is_loaded_only_when_a_unit_is_read() -> None:
     """Importing the module costs no import of the units library."""
     code = "import sys, latticefit.sample; sys.exit(bool({'pint', 'periodictable'} & set(sys.modules)))"
     assert subprocess.run([sys.executable, "-c", code], check=False).returncode == 0
+
+
+def test_mole_in_capitals() -> None:
+    """``J/MOL.K`` is J/(mol K): nothing else is a heat capacity."""
+    for text in ("J/MOL.K", "J/(Mol K)", "J/MOL-K", "J MOL-1 K-1"):
+        assert heat_capacity_unit(text).text == "J/(mol K)"

@@ -67,8 +67,14 @@ def add_column_options(parser: CommandParser) -> None:
     )
     group.add_argument("--coverage-factor", metavar="K", help="k of the stated uncertainties, where they are U")
     group.add_argument("--temperature-scale", metavar="SCALE", help="ITS-90, or IPTS-68 to convert T and Cp from it")
-    group.add_argument("--worksheet", metavar="NAME|NUMBER", help="sheet of a spreadsheet file")
-    group.add_argument("--split-by", metavar="COLUMN", help="a column whose values divide the file into runs")
+    group.add_argument(
+        "--worksheet", metavar="NAME|NUMBER", help="sheet of a spreadsheet file, by name or by number from 1"
+    )
+    group.add_argument(
+        "--split-by",
+        metavar="COLUMN",
+        help="a column whose values divide the file into runs, or series for the lines 'Series 1'",
+    )
     group.add_argument(
         "--addenda",
         metavar="FILE",

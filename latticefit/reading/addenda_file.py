@@ -120,5 +120,6 @@ def _addenda_columns(run: RunSettings, folder: Path) -> list[Column]:
 def _by_key(message: str) -> str:
     """Say which keys of a run sheet do what a message advises by options, which concern the runs."""
     keys = "temperature|heat-capacity|temperature-unit|heat-capacity-unit|sigma|coverage-factor|worksheet"
+    message = re.sub(r", or leave the line out by --mask-lines \d+$", "", message)  # addenda have no such key
     plain = re.sub(rf"--({keys})(?![-\w])", lambda option: option[1].replace("-", "_"), message)
     return message if plain == message else f"{plain} (keys of its [[addenda]] in a run sheet)"

@@ -20,7 +20,7 @@ _SERIES: Final = re.compile(r"(?i)(?:series|run|set|sample|cycle)\s*[:#.]?\s*\w{
 _FOOTNOTE: Final = re.compile(
     r"\s*(?:(?:[*†‡§¶%!;]+|//|--)\s*[^\W\d]|\(?[a-e]\)\s*[^\W\d]|\[[a-e]\]\s*[^\W\d]|(?i:notes?|remarks?|footnotes?)\b)"
 )
-_NO_VALUE: Final = frozenset({"n/a", "na", "none", "null", "nan", "inf", "infinity"})
+_NO_VALUE: Final = frozenset({"n/a", "na", "none", "null", "nan", "inf", "infinity", "n.a."})
 
 
 class Row(NamedTuple):
@@ -274,11 +274,12 @@ def _what_it_is(
 def _is_text(row: Row, words: str, reader: _Reader, after_data: bool) -> bool:
     filled = [cell for cell in row.cells if cell]
     numbers = _numbers(row)
-    if _FOOTNOTE.match(words) and numbers < 2 and (numbers == 0 or len(row.cells) != reader.width):
+    few = numbers < 2 or (len(filled) - numbers >= 3 and len(filled) > 3 * numbers)  # "u(T) = 0.01 K; u(Cp) = 0.5"
+    if _FOOTNOTE.match(words) and few and (numbers == 0 or len(row.cells) != reader.width):
         return True
     lettered = re.match(r"[^\W\d]", words) is not None and words.casefold() not in _NO_VALUE
     if not lettered or any(re.match(r"[-+−.,]?\d", cell) for cell in filled[1:] if reader.delimiter != "blank"):
         return False
     if reader.delimiter == "blank":
-        return numbers < 2 and len(row.cells) != reader.width
+        return few and len(row.cells) != reader.width
     return numbers == 0 and (len(filled) == 1 or after_data)

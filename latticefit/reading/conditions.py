@@ -19,7 +19,7 @@ from .table import Table
 from .values import Decimal, parse_number
 from .wording import bare, counted, listed, quoted
 
-__all__ = ["check_condition", "reasons_to_leave_out", "set_aside"]
+__all__ = ["check_condition", "condition_column", "reasons_to_leave_out", "set_aside"]
 
 _COMPARISONS: Final[dict[str, Callable[[float, float], bool]]] = {
     "<": operator.lt,
@@ -152,6 +152,17 @@ def _condition(text: str, columns: tuple[Column, ...], shown: str) -> _Condition
             "or !="
         )
     return _Condition(text, column, sign, limit, number)
+
+
+def condition_column(text: str, columns: tuple[Column, ...], shown: str) -> Column:
+    """Return the column that a condition is about.
+
+    Raises
+    ------
+    InputError
+        If it cannot be read or the column is not there.
+    """
+    return _condition(text, columns, shown).column
 
 
 def _unmet(table: Table, condition: _Condition, decimal: Decimal) -> list[str | None]:

@@ -12,6 +12,7 @@ import numpy as np
 from ..errors import InputError
 from ..records import AddendaSettings, Measurement, Reading, Repair, RunSettings, SampleSettings
 from ..sample import build_sample, converted_by_mass, sample_notes
+from ..units import heat_capacity_unit
 from .addenda import take_off
 from .run import RunData, read_run
 from .temperature_scale import on_its90
@@ -81,19 +82,26 @@ def read_measurement(
         set_aside=aside if any(why is not None for why in aside) else (),
     )
     return take_off(
-        on_its90(_with_mass_note(measurement)),
+        on_its90(_with_mass_note(measurement, bool(addenda))),
         addenda,
         folder,
         lambda run: read_measurement(SampleSettings(atoms=1), (run,), folder),
     )
 
 
-def _with_mass_note(measurement: Measurement) -> Measurement:
-    """Say so where the uncertainty of a mass is stated and the mass converts nothing."""
-    unused = measurement.sample.mass_u is not None and measurement.basis != "sample"
-    if not unused or converted_by_mass(measurement):
+def _with_mass_note(measurement: Measurement, with_addenda: bool) -> Measurement:
+    """Say so where a mass converts nothing: its uncertainty is stated, or every run is per mole."""
+    sample = measurement.sample
+    if sample.mass is None or measurement.basis == "sample" or converted_by_mass(measurement):
         return measurement
-    note = Repair("sample", None, "the mass and its uncertainty are not used: no run is in J/K")
+    bases = {heat_capacity_unit(each.heat_capacity_unit).basis for each in measurement.readings}
+    if sample.mass_u is not None:
+        words = "the mass and its uncertainty are not used: no run is in J/K"
+    elif bases <= {"mol", "mol_atoms"} and not with_addenda:  # addenda in J/K need the mass
+        words = "the mass is not used: every run is per mole"
+    else:
+        return measurement
+    note = Repair("sample", None, words)
     return replace(measurement, repairs=(note, *measurement.repairs))
 
 
@@ -144,7 +152,10 @@ def _refuse_unlike(parts: Sequence[RunData]) -> None:
                     f"{pair}: one states an uncertainty and that of the other is to be estimated from {word}; state "
                     f"one for {quoted(silent.reading.label)} too, or give both --sigma {word}"
                 )
-            raise InputError(f"{pair}: only one states an uncertainty; give {quoted(silent.reading.label)} a --sigma")
+            raise InputError(
+                f"{pair}: only one states an uncertainty; give {quoted(silent.reading.label)} one in a run sheet, as "
+                "sigma = '1%' in its [[run]], or estimate both by --sigma scatter"
+            )
 
 
 def _sigma_text(parts: Sequence[RunData]) -> str:

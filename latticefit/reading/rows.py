@@ -132,7 +132,10 @@ def _numbers(table: Table, column: Column, decimal: Decimal, fitted: Sequence[bo
         if number is None and not needed:
             number = Number(math.nan, None)
         if number is None:
-            raise InputError(f"{place(shown, row, column)}: {quoted(cell)} cannot be read as a number")
+            raise InputError(
+                f"{place(shown, row, column)}: {quoted(cell)} cannot be read as a number; correct it, or leave the "
+                f"line out by --mask-lines {row.line}"
+            )
         numbers.append(number)
     return numbers
 

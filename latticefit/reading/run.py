@@ -20,6 +20,7 @@ from .rows import Cells, read_cells, reasons_against, refuse_bad_sigma, refuse_t
 from .sigma_source import SigmaSource, find_sigma_source
 from .table import Table, find_table
 from .text import TextFile, load_text
+from .unused import unused_columns
 from .wording import quoted, shown_name
 
 __all__ = ["RunData", "read_run"]
@@ -90,7 +91,7 @@ def read_run(sample: Sample, run: RunSettings, path: Path, index: int) -> RunDat
     """
     source = load_text(path, run.file, run.worksheet)
     shown = shown_name(run.file)
-    table = find_table(source)
+    table = find_table(source, run.mask_lines)
     columns = describe_columns(table.headers or [None] * table.width)
     choice = _choose(columns, run, shown)
     aside, aside_notes = set_aside(table, columns, choice.columns, run, source.last_line, shown)
@@ -107,7 +108,7 @@ def read_run(sample: Sample, run: RunSettings, path: Path, index: int) -> RunDat
     left_out = [(i, reason) for i, reason in enumerate(reasons) if reason is not None]
     of_row = index + division.of_row
     return RunData(
-        reading=_reading(source, table, choice, cells, run),
+        reading=_reading(source, table, columns, choice, cells, run),
         temperature=temperature[keep],
         heat_capacity=heat_capacity[keep],
         sigma=None if sigma is None else sigma[keep],
@@ -311,7 +312,9 @@ def _written_notes(choice: _Choice, cells: Cells) -> list[str]:
 # ------------------------------------------------------------------------------------------------------- the record
 
 
-def _reading(source: TextFile, table: Table, choice: _Choice, cells: Cells, run: RunSettings) -> Reading:
+def _reading(
+    source: TextFile, table: Table, columns: tuple[Column, ...], choice: _Choice, cells: Cells, run: RunSettings
+) -> Reading:
     def name(column: Column) -> str | int:
         alone = (table.headers or ()).count(column.header or "") == 1
         return column.header if column.header and alone else column.index + 1
@@ -343,4 +346,5 @@ def _reading(source: TextFile, table: Table, choice: _Choice, cells: Cells, run:
         heat_capacity_unit=choice.heat_capacity_unit.text,
         rows=len(table.rows),
         settings=settings,
+        unused_columns=unused_columns(columns, choice.columns, run, shown_name(run.file)),
     )

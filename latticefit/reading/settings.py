@@ -156,6 +156,14 @@ def _one_of(*choices: str) -> Converter:
     return convert
 
 
+def _scale(value: Any, where: str) -> str:
+    if not isinstance(value, str) or value not in ("ITS-90", "IPTS-68"):
+        raise InputError(
+            f"{where} cannot be {_kind(value)}: only ITS-90 and IPTS-68 are known; convert data on another scale first"
+        )
+    return str(value)
+
+
 # --------------------------------------------------------------------------------------- intervals, grids and bounds
 
 
@@ -310,7 +318,7 @@ RUN: Final[Mapping[str, Converter]] = MappingProxyType(
         "window": _intervals,
         "mask": _intervals,
         "worksheet": _text,
-        "temperature_scale": _one_of("ITS-90", "IPTS-68"),
+        "temperature_scale": _scale,
         "require": _conditions,
         "mask_lines": _lines,
         "replicates": _one_of("keep", "average", "drop-first"),

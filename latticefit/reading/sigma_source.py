@@ -11,7 +11,7 @@ from ..errors import InputError, nearest
 from ..records import RunSettings
 from ..units import HeatCapacityUnit, TemperatureUnit
 from .columns import find_column
-from .headers import Column, uncertainty_columns
+from .headers import Column, is_uncertainty_of_anything, uncertainty_columns
 from .sigma import SigmaModel, parse_sigma_text
 from .wording import listed, offered, quoted
 
@@ -70,12 +70,24 @@ def find_sigma_source(
             return _to_estimate(word, columns, taken, stated, shown)
         if column is None:
             return _from_text(str(run.sigma), columns, stated, shown)
+        _refuse_number_alone(column, run.sigma, shown)
         return _from_column(column, taken, unit, stated, (), shown)
     column, notes = _recognised(columns, taken, shown)
     if column is not None:
         return _from_column(column, taken, unit, stated, notes, shown)
     text = f"written with the values of {quoted(taken[1].label)}"
     return SigmaSource(None, None, None, stated, text + _divided(stated), notes)
+
+
+def _refuse_number_alone(column: Column, asked: str | int, shown: str) -> None:
+    """Refuse a column chosen by number whose header speaks neither of an uncertainty nor of a unit."""
+    by_name = isinstance(asked, str) and asked.strip() in (column.header, column.name)
+    if by_name or column.header is None or column.unit is not None or is_uncertainty_of_anything(column):
+        return
+    raise InputError(
+        f"{shown}: column {column.index + 1}, {quoted(column.label)}, names neither an uncertainty nor a unit; if it "
+        f"is the sigma, ask for it by its header: --sigma {quoted(column.label)}"
+    )
 
 
 def _to_estimate(

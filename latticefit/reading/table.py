@@ -4,9 +4,10 @@ from __future__ import annotations
 
 import csv
 import re
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 from contextlib import suppress
 from dataclasses import dataclass, replace
+from itertools import pairwise
 from typing import Final, NamedTuple
 
 from ..errors import InputError
@@ -19,6 +20,7 @@ __all__ = ["MAX_COLUMNS", "Table", "find_table"]
 
 MAX_COLUMNS: Final = 1000
 _SAMPLED_LINES: Final = 200
+_SPREADSHEET_ERROR: Final = re.compile(r"\s*#(?:N/A|DIV/0!|VALUE!|NUM!)", re.IGNORECASE)  # an empty cell, no comment
 _DELIMITERS: Final[dict[str, str | None]] = {"tab": "\t", "semicolon": ";", "comma": ",", "blank": None}
 
 
@@ -51,8 +53,8 @@ class _Line(NamedTuple):
     text: str
 
 
-def find_table(source: TextFile) -> Table:
-    """Find the table in a file.
+def find_table(source: TextFile, masked: Sequence[tuple[int, int]] = ()) -> Table:
+    """Find the table in a file; a row in one of the `masked` intervals of lines may have any number of cells.
 
     Raises
     ------
@@ -82,8 +84,11 @@ def find_table(source: TextFile) -> Table:
         if commented is not None:
             headers = tuple(commented.cells)
             notes = (*notes, f"column names taken from the comment in line {commented.line}")
-    _check_rows(rows, headers, delimiter, shown)
-    width = max(len(row.cells) for row in rows) if headers is None else len(headers)
+    unmasked = [row for row in rows if not any(first <= row.line <= last for first, last in masked)] or rows
+    if headers is not None and delimiter == "comma":
+        _refuse_comma_in_header(unmasked, headers, shown)
+    _check_rows(unmasked, headers, delimiter, shown)
+    width = max(len(row.cells) for row in unmasked) if headers is None else len(headers)
     if width < 2:
         raise InputError(f"{shown}: has one column; temperature and heat capacity are needed side by side")
     return Table(delimiter, headers, width, tuple(rows), notes, parts.repairs, parts.series)
@@ -113,7 +118,7 @@ def _without_comments(lines: list[str]) -> list[_Line]:
     kept = []
     for number, line in enumerate(lines, start=1):
         text = line.strip(" \r\x1a\x0c")
-        if not text.strip() or text.lstrip().startswith("#"):
+        if not text.strip() or (text.lstrip().startswith("#") and _SPREADSHEET_ERROR.match(text) is None):
             continue
         if "#" in text:
             text = re.sub(r"\s#(?:\s.*)?$", "", text)
@@ -203,9 +208,25 @@ def _check_rows(rows: list[Row], headers: tuple[str, ...] | None, delimiter: str
             found = f"line {row.line} has {counted(len(row.cells), 'cell')} where {named}"
             if delimiter == "comma" and all(is_number(cell) and "." not in cell for cell in row.cells):
                 raise _decimal_comma(row, f"{found}, perhaps decimal commas in a comma-separated file", shown)
-            raise InputError(f"{shown}: {found}")
+            raise InputError(f"{shown}: {found}; correct it, or leave the line out by --mask-lines {row.line}")
     if delimiter == "comma" and headers is None:
         _refuse_unclear_commas(rows, shown)
+
+
+def _refuse_comma_in_header(rows: list[Row], headers: tuple[str, ...], shown: str) -> None:
+    """Refuse ``T/K,Cp,m/(J K-1 mol-1)`` over two columns: the comma of a name has divided it."""
+    most = max(len(row.cells) for row in rows)
+    if most >= len(headers):
+        return
+    for before, after in pairwise(headers):
+        if re.fullmatch(r"(?:Δ|[dD]elta\s*)?[CcSHhs]_?[pvPV]?", before) and re.match(
+            r"(?:[mpv]|sat)(?![A-Za-z])", after
+        ):
+            whole = quoted(f"{before},{after}")
+            raise InputError(
+                f"{shown}: the header names {counted(len(headers), 'column')} but the rows have "
+                f"{counted(most, 'cell')}; a header that holds a comma, as {whole} does, must stand in double quotes"
+            )
 
 
 def _refuse_unclear_commas(rows: list[Row], shown: str) -> None:

@@ -11,7 +11,10 @@ __all__ = ["Decimal", "Number", "Spelling", "is_number", "is_plain", "mixed_deci
 
 Decimal = Literal["point", "comma"]
 
-_MISSING: Final = frozenset({"", "nan", "na", "n/a", "-", "--", "–", "—", "none", "null"})
+_MISSING: Final = frozenset(
+    {"", "nan", "na", "n/a", "-", "--", "–", "—", "none", "null"}
+    | {"---", "n.a.", ".", "*", "#n/a", "#div/0!", "#value!", "#num!"}
+)
 _INFINITE: Final = frozenset({"inf", "+inf", "-inf", "infinity", "+infinity", "-infinity"})
 _DIGITS = r"(?:\d+(?:[.,]\d*)?|[.,]\d+)"
 _PATTERN: Final = re.compile(

@@ -66,7 +66,8 @@ class ExcludedRow:
 class Reading:
     """How one run was read: path and sha256 of its file, and the choices that were made.
 
-    Runs that come from one file, divided by a column, share its path and its settings.
+    Runs that come from one file, divided by a column, share its path and its settings. `unused_columns` are the headers
+    of the columns that nothing was taken from.
     """
 
     path: str
@@ -83,6 +84,7 @@ class Reading:
     heat_capacity_unit: str
     rows: int
     settings: RunSettings
+    unused_columns: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True)

@@ -13,6 +13,7 @@ import numpy as np
 from ..constants import GAS_CONSTANT
 from ..diagnosing.examination import Decade, Examination
 from ..diagnosing.point_rules import outlier_at
+from ..reading.unused import looks_like_uncertainty
 from ..records import Feature, Measurement, Reading, RunOverlap
 from ..rounding import percent_text
 from ..wording import harmless
@@ -67,6 +68,7 @@ def _how(measurement: Measurement) -> dict[str, Any]:
             "heat_capacity": reading.heat_capacity_column,
             "sigma": reading.sigma_column,
         },
+        "unused_columns": list(reading.unused_columns),
         "temperature_unit": reading.temperature_unit,
         "heat_capacity_unit": reading.heat_capacity_unit,
         "quantity": measurement.quantity,
@@ -123,6 +125,7 @@ def inspection_text(measurement: Measurement, found: Examination) -> str:
             f"{harmless(reading.heat_capacity_column)}, in {reading.heat_capacity_unit}{converted}",
         ),
         ("sigma", _sigma(measurement, found)),
+        *_not_used(reading),
         ("points", _points(measurement, found)),
         *([("runs", _runs(measurement))] if len(measurement.readings) > 1 else []),
         *(
@@ -153,6 +156,11 @@ def _sample(measurement: Measurement) -> str:
     if sample.mass is not None:
         words.append(mass_words(measurement))
     return ", ".join(words) or "nothing is known: give --formula"
+
+
+def _not_used(reading: Reading) -> list[tuple[str, str]]:
+    doubtful = [harmless(each) for each in reading.unused_columns if looks_like_uncertainty(each)]
+    return [("not used", ", ".join(doubtful))] if doubtful else []
 
 
 def _entry(label: str, words: str) -> list[str]:
