@@ -21,6 +21,7 @@ if TYPE_CHECKING:
 
 __all__ = [
     "HEAT_CAPACITY_EXAMPLES",
+    "KELVIN_ASSUMED",
     "HeatCapacityUnit",
     "TemperatureUnit",
     "find_heat_capacity_unit",
@@ -29,6 +30,9 @@ __all__ = [
     "parse_quantity",
     "temperature_unit",
 ]
+
+KELVIN_ASSUMED: Final = "is not stated; taken as K"
+"""How the note ends that the reader makes of temperatures without a unit."""
 
 UnitBasis = Literal["mol", "mol_atoms", "gram", "sample"]
 

@@ -82,9 +82,11 @@ def test_the_hydrate_is_read_as_it_comes_and_its_water_is_missed_where_it_is_lef
     assert not {"mode-sum", "implausible-level", "above-classical-limit"} & set(fit.warnings["code"])
     dry = formula.split("*")[0]
     without = lf.fit(lf.read(DEMO / "sjelite.csv", formula=dry), terms="debye + einstein", cp_cv="nernst-lindemann")
-    assert f"a formula without its 2 H2O would give (1.28): give --formula '{formula}'" in " ".join(
-        str(without).split()
+    said = " ".join(str(without).split())
+    assert "a formula without its 2 H2O (factor 1.28), or 3 to 12 H2O whose stiff" in (
+        said := " ".join(str(without).split())
     )
+    assert f"give --formula with its water, '{formula}' to" in said
 
 
 def test_two_platforms_show_their_step_once_the_unsettled_points_are_dropped() -> None:

@@ -282,15 +282,15 @@ def test_held_modes_are_freed_to_see_whether_they_are_three_per_atom(factor: flo
 
 def test_the_mode_sum_names_the_slip() -> None:
     """Half the modes: the message says which slips give that; at 5 % none is invented."""
-    assert "values per mole of half the formula unit would give (0.5)" in mode_sum_of(0.5).message
-    assert "that is what" not in mode_sum_of(1.05).message
+    assert "values per mole of half the formula unit (factor 0.5)" in mode_sum_of(0.5).message
+    assert "explained by" not in mode_sum_of(1.05).message
 
 
 def test_a_small_excess_of_a_model_without_cp_cv_is_not_called_a_slip() -> None:
     """Cp data 4 % above the harmonic level, fitted without Cp - Cv: the message names that first, and no slip."""
     found = mode_sum_of(1.04, quantity="Cp")
     assert "so much can be the Cp-Cv that the model does not have" in found.message
-    assert "that is what" not in found.message
+    assert "explained by" not in found.message
 
 
 def test_a_model_that_misses_the_data_leaves_the_mode_sum_to_the_level() -> None:

@@ -7,6 +7,7 @@ import importlib.util
 import json
 import subprocess
 import sys
+import tomllib
 from dataclasses import replace
 from pathlib import Path
 from types import ModuleType
@@ -213,8 +214,9 @@ def test_fit_and_rank_refuse_an_impossible_level_with_numbers_and_remedy(call: o
         call(norrium())  # type: ignore[operator]
     sentence = str(caught.value)
     assert sentence == (
-        "the heat capacity is 1032 times 3nR at 299.9 K, which no solid reaches (the modes add up to 1028(36) of 3 per "
-        "atom); that is what values in mJ/(mol K) that are read as J/(mol K) would give (1000): give "
+        "the heat capacity is 1032 times 3nR at 299.9 K, which no solid reaches (theta_D of single points undefined "
+        "at or above 3nR, the modes add up to 1028(36) of 3 per atom); that would be explained by values in "
+        "mJ/(mol K) that are read as J/(mol K) (factor 1000): give "
         "--heat-capacity-unit 'mJ/(mol K)'; or give --accept-level to fit the data as they are"
     )
 
@@ -291,19 +293,20 @@ def test_slips_that_lower_the_level_are_named_where_the_modes_can_be_counted(kin
     [
         (
             {"formula": "He4Ne4"},
-            "the modes add up to 1.286(36) of 3 per atom; that is what a formula without its 2 H2O would give (1.28): "
-            "give --formula 'He4Ne4*2H2O'",
+            "the modes add up to 1.286(36) of 3 per atom; that could be explained by a formula without its 2 H2O "
+            "(factor 1.28), or 3 to 12 H2O whose stiff vibrations are not excited: give --formula with its water, "
+            "'He4Ne4*2H2O' to 'He4Ne4*12H2O'",
         ),
         (
             {"formula": SJELITE, "molar_mass": "96.733 g/mol"},
-            "the modes add up to 0.735(21) of 3 per atom; that is what a molar mass without its 2 H2O would give "
-            "(0.729): give --formula 'He4Ne4*2H2O' without --molar-mass",
+            "the modes add up to 0.735(21) of 3 per atom; that would be explained by a molar mass without its 2 H2O "
+            "(factor 0.729): give --formula 'He4Ne4*2H2O' without --molar-mass",
         ),
         (
             {"formula": "He4Ne4", "molar_mass": "132.759 g/mol"},
-            "the heat capacity is 1.66 times 3nR at 309.8 K, which no solid reaches (the modes add up to 1.766(50) of "
-            "3 per atom); that is what a formula without the 2 H2O of its molar mass would give (1.75): give --formula "
-            "'He4Ne4*2H2O' without --molar-mass",
+            "the heat capacity is 1.66 times 3nR at 309.8 K, which no solid reaches (theta_D of single points 29 to "
+            "188 K, the modes add up to 1.766(50) of 3 per atom); that would be explained by a formula without the 2 "
+            "H2O of its molar mass (factor 1.75): give --formula 'He4Ne4*2H2O' without --molar-mass",
         ),
     ],
 )
@@ -330,7 +333,8 @@ def test_slips_that_explain_equally_well_are_both_named() -> None:
     found = examine_prepared_level(scaled(0.5))
     assert found.verdict == "suspicious"
     assert {each.slip for each in found.explanations} == {"unit", "formula-unit"}
-    assert "or what" in found.sentence
+    assert "that could be explained by values in J/(mol-atom K)" in found.sentence
+    assert ", or by values per mole of half the formula unit (factor 0.5)" in found.sentence
     assert len(found.explanations) <= 3
 
 
@@ -372,6 +376,73 @@ def test_a_stated_number_that_contradicts_the_formula_is_the_first_suspect(tmp_p
     found = examine_level(per_gram)
     assert found.verdict == "suspicious"
     assert found.explanations[0].words == "the molar mass 122.2 g/mol where He4Ne4*2H2O has 132.759"
+
+
+def with_stiff_modes(
+    folder: Path, formula: str, unit: str, values: list[float], atoms: float, factor: float = 1.0
+) -> LevelFinding:
+    """The level of invented data of a solid with stiff modes, read by a formula and in a unit."""
+    C = factor * np.array(invented_solid("debye + 2 einstein", values, T, atoms=atoms).heat_capacity)
+    rows = "".join(f"{t:.6g},{c:.6g}\n" for t, c in zip(T, C, strict=True))
+    return examine_level(read_text(folder, f"T/K,Cp/({unit})\n{rows}", SampleSettings(formula=formula)))
+
+
+def test_a_hydrate_whose_stiff_modes_are_frozen_is_given_as_a_range(tmp_path: Path) -> None:
+    """Invented gypsum with 11 of 36 modes frozen, read without water: one explanation, a range that holds 2 H2O."""
+    found = with_stiff_modes(tmp_path, "CaSO4", "J/(mol K)", [260.0, 10.0, 500.0, 15.0, 2800.0, 11.0], 12)
+    assert found.verdict in ("suspicious", "impossible")
+    (water,) = found.explanations
+    assert water.words == "a formula without its 1 to 2 H2O whose stiff vibrations are not excited"
+    assert water.remedy == "give --formula with its water, 'CaSO4*H2O' to 'CaSO4*2H2O'"
+    assert water.expected is None
+    assert "that could be explained by" in found.sentence
+
+
+def test_a_unit_slip_stands_before_water(tmp_path: Path) -> None:
+    """J labelled cal of a carbonate with 10 % of its modes frozen: the unit is named first although H2O fits too."""
+    found = with_stiff_modes(tmp_path, "CaCO3", "cal/(mol K)", [280.0, 6.0, 420.0, 7.5, 2000.0, 1.5], 5)
+    assert found.verdict == "impossible"
+    assert found.explanations[0].words == "values in J/(mol K) that are read as cal/(mol K)"
+    assert "theta_D of single points" in found.sentence
+
+
+def test_addenda_as_an_explanation_have_no_factor(tmp_path: Path) -> None:
+    """Addenda explain a level of any size: no number is given for them, which would only repeat the measured one."""
+    facts = tomllib.loads((DEMO / "truth.toml").read_text(encoding="utf-8"))["quellite"]
+    data = lf.read(DEMO / "quellite_total.csv", formula=facts["formula"], mass=f"{facts['mass_mg']} mg")
+    found = examine_level(data)
+    assert found.explanations[0].slip == "addenda"
+    assert found.explanations[0].expected is None
+    assert "that could be explained by the heat capacity of the addenda, still in the data: give" in found.sentence
+
+
+@pytest.mark.parametrize(
+    ("header", "shift", "suspected"), [("T", 0.0, True), ("T/K", 0.0, False), ("T", 273.15, False)]
+)
+def test_celsius_read_as_kelvin_is_offered_where_no_unit_is_stated(
+    header: str, shift: float, suspected: bool, tmp_path: Path
+) -> None:
+    """20 to 400 degC of a Debye solid of 800 K: offered in degC without a unit, not with K stated, nor of data in K."""
+    at = np.linspace(20.0, 400.0, 50)
+    C = np.array(debye_solid(800.0, at + 273.15).heat_capacity)
+    rows = "".join(f"{t + shift:.6g},{c:.6g}\n" for t, c in zip(at, C, strict=True))
+    found = examine_level(read_text(tmp_path, f"{header},Cp/(J/(mol K))\n{rows}", SampleSettings(formula="NaCl")))
+    assert ("temperature-unit" in {each.slip for each in found.explanations}) == suspected
+    if suspected:
+        assert found.verdict == "suspicious"
+        assert "temperatures in degC that are read as K (with degC theta_D of single points varies" in found.sentence
+        assert "give --temperature-unit degC" in found.sentence
+    elif shift:
+        assert found.verdict == "plausible"
+
+
+def test_a_level_without_mode_sum_says_theta_and_why() -> None:
+    """Below theta/4 the sentence holds the theta of the points, and why the modes are not counted."""
+    found = examine_prepared_level(debye_solid(900.0, np.geomspace(20.0, 180.0, 40)))
+    assert found.verdict == "not judged"
+    assert "below theta/4" in found.sentence
+    assert "theta_D of single points" in found.sentence
+    assert "the modes are not counted: the data end below theta/2 of theta_D[m=2] = " in found.sentence
 
 
 def test_without_atoms_or_amount_nothing_is_judged(tmp_path: Path) -> None:

@@ -3,19 +3,20 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from math import isclose
 
-from ..records import Measurement
+from ..records import LevelExplanation, Measurement
 from ..sample import Formula, element_counts, parse_formula
 from ..units import UnitBasis
 
-__all__ = ["Slip", "molar_mass_slips", "shown", "water_slips"]
+__all__ = ["Slip", "merged_waters", "molar_mass_slips", "shown", "water_slips"]
 
 _WATERS = (0.5, 1.0, 1.5, *map(float, range(2, 13)))  # per formula unit
-_ATOMS, _STIFF_MODES = 3, 3  # of one H2O; the stiff ones are its O-H vibrations, 2300 to 5000 K
-_COLD = 600.0  # K: below, the O-H vibrations are not excited
+# of one H2O; the stiff ones, at most, are its O-H vibrations, 2300 to 5000 K, and its librations, 600 to 1200 K
+_ATOMS, _STIFF_MODES = 3, 6
+_COLD = 600.0  # K: below, they are not excited
 _SAME_MASS = 1e-3  # relative; the rounding of a molar mass is below
 _SAME_WATER = 0.02  # of one H2O
 
@@ -25,7 +26,8 @@ class Slip:
     """One slip: its kind, what was slipped, the factor by which it changes C/(3nR), and how to mend it.
 
     `doubt` is how unusual it is, in units of a squared deviation in standard uncertainties: it tells slips apart that
-    explain a level equally well.
+    explain a level equally well. `stiff` is the share of the modes that may not be excited where the slip is the
+    reason, so that the level may be lower by it; `waters` the H2O that a formula lacks.
     """
 
     kind: str
@@ -33,6 +35,8 @@ class Slip:
     expected: float
     remedy: str
     doubt: float
+    stiff: float = 0.0
+    waters: float | None = None
 
 
 def shown(formula: Formula) -> str:
@@ -108,7 +112,7 @@ def water_slips(measurement: Measurement, basis: UnitBasis, warmest: float) -> I
     """Give the slips in the water of crystallisation: a formula that lacks it, or a sample that has lost it.
 
     Data per gram or per sample change with the molar mass and the atoms, data per mole with the atoms alone. Below
-    600 K the O-H vibrations of water are not excited, so that it may count 6 modes instead of 9.
+    600 K the stiff vibrations of water are not excited, so that it may count 3 to 9 modes.
 
     Parameters
     ----------
@@ -133,11 +137,8 @@ def water_slips(measurement: Measurement, basis: UnitBasis, warmest: float) -> I
             words = f"a formula without its {waters:g} H2O"
             remedy = f"give --formula '{_with_waters(formula, _parts(formula)[1] + waters)}'"
         doubt = 2.0 + 0.3 * waters + (2.0 if waters % 1 else 0.0)
-        yield Slip("hydrate-water", words, _changed(sample.atoms, mass, waters), remedy, doubt)
-        if warmest < _COLD and not waters % 1:
-            words += ", whose O-H vibrations are not excited"
-            expected = _changed(sample.atoms, mass, waters, _STIFF_MODES)
-            yield Slip("hydrate-water", words, expected, remedy, doubt + 1)
+        stiff = _STIFF_MODES * waters / (3 * (sample.atoms + _ATOMS * waters)) if warmest < _COLD else 0.0
+        yield Slip("hydrate-water", words, _changed(sample.atoms, mass, waters), remedy, doubt, stiff, waters)
     if formula is not None:
         own = _parts(formula)[1]
         for kept in (0.0, *(each for each in _WATERS if each < own)):
@@ -146,6 +147,40 @@ def water_slips(measurement: Measurement, basis: UnitBasis, warmest: float) -> I
                 remedy = f"give --formula '{_with_waters(formula, kept)}'"
                 doubt = 2.0 + 0.2 * kept + (2.0 if kept % 1 else 0.0)
                 yield Slip("lost-water", words, _changed(sample.atoms, mass, kept - own), remedy, doubt)
+
+
+def merged_waters(full: Sequence[Slip], stiff: Sequence[Slip], formula: str | None) -> LevelExplanation:
+    """Make one explanation of all numbers of H2O that a formula may lack, so that none is stated as the fact.
+
+    Parameters
+    ----------
+    full, stiff : sequence of Slip
+        Those that explain the level with all their modes excited, and those that do with stiff ones not excited.
+    formula : str or None
+    """
+    if len(full) + len(stiff) == 1 and full:
+        return LevelExplanation(full[0].kind, full[0].words, full[0].expected, full[0].remedy)
+    factor = f" (factor {full[0].expected:.3g})" if len(full) == 1 else ""
+    said = [f"{_amounts(full)}{factor}"] if full else []
+    if stiff:
+        said.append(f"{_amounts(stiff)} whose stiff vibrations are not excited")
+    words, kind = ", or ".join(said), (full or stiff)[0].kind
+    if formula is None:
+        return LevelExplanation(kind, f"{words}, left out of --atoms and --molar-mass", None, (full or stiff)[0].remedy)
+    dry = parse_formula(formula)
+    lowest, highest = (_with_waters(dry, _parts(dry)[1] + each) for each in _ends([*full, *stiff]))
+    ends = f"'{lowest}'" if lowest == highest else f"'{lowest}' to '{highest}'"
+    return LevelExplanation(kind, f"a formula without its {words}", None, f"give --formula with its water, {ends}")
+
+
+def _ends(slips: Sequence[Slip]) -> tuple[float, float]:
+    waters = [each.waters or 0.0 for each in slips]
+    return min(waters), max(waters)
+
+
+def _amounts(slips: Sequence[Slip]) -> str:
+    lowest, highest = _ends(slips)
+    return f"{lowest:g} H2O" if lowest == highest else f"{lowest:g} to {highest:g} H2O"
 
 
 def _consistent(measurement: Measurement) -> bool:
@@ -158,7 +193,7 @@ def _consistent(measurement: Measurement) -> bool:
     return same_mass and isclose(sample.atoms, formula.atoms, rel_tol=1e-9)
 
 
-def _changed(atoms: float, molar_mass: float | None, waters: float, stiff: float = 0.0) -> float:
-    """C/(3nR) over the right one where `waters` more belong to the formula unit, `stiff` modes of each not excited."""
-    modes = (3 * (atoms + _ATOMS * waters) - stiff * waters) / (3 * atoms)
+def _changed(atoms: float, molar_mass: float | None, waters: float) -> float:
+    """C/(3nR) over the right one where `waters` more belong to the formula unit."""
+    modes = (atoms + _ATOMS * waters) / atoms
     return modes if molar_mass is None else modes / (1 + waters * parse_formula("H2O").molar_mass / molar_mass)

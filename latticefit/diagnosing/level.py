@@ -6,9 +6,9 @@ Debye temperature that each point has, and the number of modes that the shape of
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
-from math import hypot, log
+from math import exp, hypot, inf, log
 
 import numpy as np
 from numpy.typing import NDArray
@@ -18,10 +18,10 @@ from ..errors import InputError
 from ..functions import invert_debye
 from ..preparing import prepare
 from ..records import FloatArray, LevelExplanation, LevelFinding, LevelVerdict, Measurement, PreparedData, Sample
-from .hydrates import Slip
+from .hydrates import Slip, merged_waters
 from .level_fit import ModeCount, count_modes
 from .level_words import level_sentence
-from .slips import addenda_left_in, possible_slips
+from .slips import addenda_left_in, kelvin_assumed, possible_slips
 from .stiff import stiff_share
 
 __all__ = ["LEVEL_IMPOSSIBLE", "examine_level", "examine_prepared_level", "explain_mode_sum", "level_not_judged"]
@@ -46,6 +46,12 @@ _SANE = 1.2  # times 3nR that a mended level may reach
 _LARGEST_U, _SAVING_U = 0.1, 0.05  # of a mode sum that condemns a high level, and of one that saves it
 _FEW = 3  # points up to 400 K that can do so
 _SPREAD = 0.3  # relative spread of theta(T) of an ordinary solid
+_ICE_POINT = 273.15  # K
+_TELLING = 0.95  # C/3nR above which a point tells little of theta
+_DRIFT = 0.5  # spread of ln theta from which temperatures may be in degC; with these it must fall to half and to 0.4
+_STILL = 0.4
+_HIGH_ENOUGH = 0.75  # C/3nR of data in degC whose modes cannot be counted
+_FIRST = ("unit", "mass", "atoms", "molar-mass")  # slips that stand before water and formula unit
 
 
 @dataclass(frozen=True)
@@ -115,7 +121,9 @@ def examine_prepared_level(prepared: PreparedData) -> LevelFinding:
 
     Suspicious: the modes that the data show, counted where the data reach theta/2, miss 3 per atom by more than 3 % and
     3 u; fewer are no suspicion as far as stiff modes of light atoms may not be excited, unless a stated molar mass or
-    number of atoms contradicts the formula and explains it. Not judged: data that end below theta/4.
+    number of atoms contradicts the formula and explains it. Suspicious as well: temperatures without a stated
+    unit, where theta drifts as they are read, in K, and hardly changes with degC. Not judged: data that end below
+    theta/4.
 
     Parameters
     ----------
@@ -135,7 +143,11 @@ def examine_prepared_level(prepared: PreparedData) -> LevelFinding:
     level = _Level(T, ratio, count, sample.atoms)
     slips = possible_slips(measurement, level.top)
     verdict = _verdict(level, sample, slips)
+    in_celsius = _in_celsius(level, prepared)
+    if in_celsius and verdict != "impossible":
+        verdict = "suspicious"
     explanations = _all_explanations(level, slips, measurement) if verdict in ("suspicious", "impossible") else ()
+    explanations = (*in_celsius, *explanations)[:_MOST]
     reason = f"the data end at {level.top:.4g} K, below theta/4" if verdict == "not judged" else None
     theta = level.theta()
     defined = theta[np.isfinite(theta)]
@@ -151,7 +163,7 @@ def examine_prepared_level(prepared: PreparedData) -> LevelFinding:
         explanations=explanations,
         sentence="",
     )
-    return replace(finding, sentence=level_sentence(finding))
+    return replace(finding, sentence=level_sentence(finding, _uncounted(level)))
 
 
 def explain_mode_sum(prepared: PreparedData, ratio: float, u: float) -> tuple[LevelExplanation, ...]:
@@ -174,6 +186,17 @@ def level_not_judged(reason: str) -> LevelFinding:
     """Return the finding for data whose level cannot be judged, for a reason in words."""
     finding = LevelFinding("not judged", reason, None, None, None, None, None, None, (), "")
     return replace(finding, sentence=level_sentence(finding))
+
+
+def _uncounted(level: _Level) -> str | None:
+    """Why there is no mode sum, in words; None where there is one."""
+    if level.mode_sum is not None:
+        return None
+    if level.count is not None:
+        return f"the modes are not counted: the data end below theta/2 of theta_D[m=2] = {level.count.theta:.3g} K"
+    if level.top <= _WARM:
+        return f"the modes are not counted: the data end at {level.top:.4g} K"
+    return "the modes are not counted: that takes 6 points over a factor of 2 in T, and a fit that succeeds"
 
 
 # ---------------------------------------------------------------------------------------------------------- verdict
@@ -229,39 +252,93 @@ def _suspicious(level: _Level, sample: Sample, slips: Sequence[Slip]) -> bool:
 
 def _all_explanations(level: _Level, slips: Sequence[Slip], measurement: Measurement) -> tuple[LevelExplanation, ...]:
     """The slips, behind the addenda where those may still be in the data: whatever their size, they raise the level."""
-    found = _explanations(level, slips)
+    found = _explanations(level, slips, measurement.sample)
     raised = float(level.ratio[-1]) if level.mode_sum is None else level.mode_sum[0]
     if not addenda_left_in(measurement) or not 1 < raised <= _MOST_ADDENDA:
         return found
-    words = "the heat capacity of the addenda, still in the data,"
-    return (LevelExplanation("addenda", words, raised, "give --addenda FILE"), *found[: _MOST - 1])
+    words = "the heat capacity of the addenda, still in the data"
+    return (LevelExplanation("addenda", words, None, "give --addenda FILE"), *found[: _MOST - 1])
 
 
-def _explanations(level: _Level, slips: Sequence[Slip]) -> tuple[LevelExplanation, ...]:
-    """The slips that give a sane level, the best first."""
-    ranked = sorted(
-        ((cost, each) for each in slips if (cost := _cost(level, each)) is not None), key=lambda pair: pair[0]
-    )
-    kept: list[Slip] = []
-    for cost, each in ranked:
-        alike = sum(other.kind == each.kind for other in kept)
-        if cost <= ranked[0][0] + _NEAR and len(kept) < _MOST and alike < _MOST_OF_A_KIND:
-            kept.append(each)
-    return tuple(LevelExplanation(each.kind, each.words, each.expected, each.remedy) for each in kept)
+def _explanations(level: _Level, slips: Sequence[Slip], sample: Sample) -> tuple[LevelExplanation, ...]:
+    """The slips that give a sane level: unit, mass and molar mass first, the best of them first."""
+    stiff = stiff_share(sample, level.top)
+    costs = [(min(_costs(level, each, stiff), default=inf), each) for each in slips]
+    best = min((cost for cost, _ in costs), default=inf)
+    near = sorted((pair for pair in costs if pair[0] < inf and pair[0] <= best + _NEAR), key=lambda pair: pair[0])
+    waters = [each for _, each in near if each.waters is not None]
+    kept: list[LevelExplanation] = []
+    for _, each in sorted(near, key=lambda pair: pair[1].doubt > 0 and pair[1].kind not in _FIRST):
+        if len(kept) == _MOST or sum(other.slip == each.kind for other in kept) == _MOST_OF_A_KIND:
+            continue
+        if each.waters is None:
+            kept.append(LevelExplanation(each.kind, each.words, each.expected, each.remedy))
+        elif each is waters[0]:
+            full = [slip for slip in waters if _excited(level, slip)]
+            kept.append(merged_waters(full, [slip for slip in waters if slip not in full], sample.formula))
+    return tuple(kept)
 
 
-def _cost(level: _Level, slip: Slip) -> float | None:
-    """How badly a slip explains the level, in squares of standard uncertainties; None where it does not."""
-    factor = 1 / slip.expected
+def _excited(level: _Level, slip: Slip) -> bool:
+    """Whether a slip explains the level within 1 u with all its modes excited, or no count says otherwise."""
+    found = level.rough_sum
+    return found is None or slip.stiff == 0 or abs(found[0] - slip.expected) <= found[1]
+
+
+def _costs(level: _Level, slip: Slip, stiff: float) -> Iterator[float]:
+    """How badly a slip explains the level, with all modes excited and with stiff ones not; none where it does not."""
+    cost = _cost(level, slip.expected, slip.doubt)
+    if cost is not None:
+        yield cost
+    found, stiff = level.rough_sum, slip.stiff or stiff
+    if found is not None and stiff > 0:
+        cost = _cost(level, min(max(found[0], slip.expected * (1 - stiff)), slip.expected), slip.doubt + 1)
+        if cost is not None:
+            yield cost
+
+
+def _cost(level: _Level, expected: float, doubt: float) -> float | None:
+    """How badly a factor explains the level, in squares of standard uncertainties; None where it does not."""
+    factor = 1 / expected
     theta = level.theta(factor)
     if factor * level.ratio[-1] > _SANE or not ((theta >= _LOWEST_THETA) & (theta <= _HIGHEST_THETA)).any():
         return None
     found = level.rough_sum
     if found is not None and found[0] > 0:
         off = log(factor * found[0]) / hypot(found[1] / found[0], 0.005)
-        return off * off + slip.doubt if abs(off) <= _EXPLAINS else None
+        return off * off + doubt if abs(off) <= _EXPLAINS else None
     # too low for a count: theta must be that of a solid at every point, and one that hardly changes is the likelier
     known = theta[np.isfinite(theta)]
     if known.min() < _LOWEST_THETA or known.max() > _HIGHEST_THETA or 2 * known.size < theta.size:
         return None
-    return float(np.log(known.max() / known.min()) / _SPREAD) ** 2 + slip.doubt
+    return float(np.log(known.max() / known.min()) / _SPREAD) ** 2 + doubt
+
+
+def _in_celsius(level: _Level, prepared: PreparedData) -> tuple[LevelExplanation, ...]:
+    """Temperatures in degC read as K, where no file states their unit and degC make the level clearly saner."""
+    if not kelvin_assumed(prepared.measurement):
+        return ()
+    now, then = _drift(level.T, level.ratio), _drift(level.T + _ICE_POINT, level.ratio)
+    if now is None or then is None or now < _DRIFT or then > min(_STILL, now / 2):
+        return ()
+    count = count_modes(replace(prepared, temperature=prepared.temperature + _ICE_POINT))
+    shifted = _Level(level.T + _ICE_POINT, level.ratio, count, level.atoms)
+    found = shifted.mode_sum
+    if found is None and (count is not None or not _HIGH_ENOUGH <= level.ratio[-1] <= _SANE):
+        return ()
+    if found is not None and abs(found[0] - 1) > max(_LEAST, _SURE * found[1]):
+        return ()
+    words = (
+        "temperatures in degC that are read as K (with degC theta_D of single points varies by a factor of "
+        f"{exp(then):.3g} in place of {exp(now):.3g})"
+    )
+    return (LevelExplanation("temperature-unit", words, None, "give --temperature-unit degC"),)
+
+
+def _drift(T: FloatArray, ratio: FloatArray) -> float | None:
+    """Spread of ln theta over the points below 0.95 x 3nR; None where they are few or theta is that of no solid."""
+    telling = (ratio > 0) & (ratio <= _TELLING)
+    theta = np.asarray(invert_debye(ratio[telling]) * T[telling])
+    if theta.size < _FEW or not np.all(np.isfinite(theta)) or theta.max() > _HIGHEST_THETA:
+        return None
+    return float(np.log(theta.max() / theta.min()))

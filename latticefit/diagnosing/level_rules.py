@@ -56,7 +56,8 @@ def above_classical_limit(case: Case) -> NamedWarning | None:
         return None
     advice = "check mass, molar mass, formula and addenda; an extra contribution or Cp-Cv is the other explanation"
     if case.level.explanations:
-        advice = f"{explained(case.level.explanations, case.level.mode_sum_ratio)}; otherwise {advice}"
+        slips = explained(case.level.explanations, case.level.mode_sum_ratio, case.level.mode_sum_u)
+        advice = f"{slips}; otherwise {advice}"
     return NamedWarning(
         code="above-classical-limit",
         level="warn",
@@ -99,7 +100,7 @@ def _against_three(case: Case, counted: _Counted) -> NamedWarning | None:
     elif level == "note":
         message += "; so much a few terms can miss of a real spectrum"
     elif explanations := explain_mode_sum(case.prepared, counted.ratio, counted.u):
-        message += f"; {explained(explanations, counted.ratio)}"
+        message += f"; {explained(explanations, counted.ratio, counted.u)}"
     return _warning(level, message, counted.ratio)
 
 

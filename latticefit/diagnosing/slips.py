@@ -12,10 +12,10 @@ from math import isclose
 
 from ..records import Measurement, Sample
 from ..sample import parse_formula
-from ..units import UnitBasis, find_heat_capacity_unit
+from ..units import KELVIN_ASSUMED, UnitBasis, find_heat_capacity_unit
 from .hydrates import Slip, molar_mass_slips, shown, water_slips
 
-__all__ = ["Slip", "addenda_left_in", "possible_slips"]
+__all__ = ["Slip", "addenda_left_in", "kelvin_assumed", "possible_slips"]
 
 _PREFIXES = {"k": 3, "": 0, "m": -3, "u": -6, "n": -9}  # power of ten
 _DENOMINATORS = ("(mol K)", "(g K)", "(kg K)", "(mol-atom K)", "K")
@@ -46,6 +46,12 @@ def addenda_left_in(measurement: Measurement) -> bool:
     """Whether the data are of whole samples, in J/K, and nothing was taken off."""
     units = [find_heat_capacity_unit(each.heat_capacity_unit) for each in measurement.readings]
     return not measurement.addenda_settings and all(each is not None and each.basis == "sample" for each in units)
+
+
+def kelvin_assumed(measurement: Measurement) -> bool:
+    """Whether no file states the unit of its temperatures, so that they were taken as K."""
+    assumed = {each.file for each in measurement.repairs if each.message.endswith(KELVIN_ASSUMED)}
+    return all(each.file in assumed for each in measurement.readings)
 
 
 # ------------------------------------------------------------------------------------------------------------- units

@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from ..errors import InputError
 from ..records import Basis, ExcludedRow, FloatArray, Quantity, Reading, Repair, RunSettings, Sample
-from ..units import HeatCapacityUnit, TemperatureUnit, heat_capacity_unit, temperature_unit
+from ..units import KELVIN_ASSUMED, HeatCapacityUnit, TemperatureUnit, heat_capacity_unit, temperature_unit
 from .columns import choose_columns
 from .conditions import reasons_to_leave_out, set_aside
 from .division import Division, divide_rows, order_notes
@@ -191,7 +191,7 @@ def _temperature_unit(column: Column, asked: str | None, shown: str) -> tuple[Te
     _refuse_other_unit(column, "temperature", "--temperature-unit", shown)
     if unit_unread(column, names_temperature):
         raise InputError(f"{shown}: the unit in {quoted(column.label)} cannot be read; give it by --temperature-unit")
-    return temperature_unit("K"), (f"the unit of {quoted(column.label)} is not stated; taken as K",)
+    return temperature_unit("K"), (f"the unit of {quoted(column.label)} {KELVIN_ASSUMED}",)
 
 
 def _heat_capacity_unit(column: Column, asked: str | None, shown: str) -> tuple[HeatCapacityUnit, tuple[str, ...]]:

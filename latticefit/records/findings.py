@@ -217,15 +217,16 @@ class LevelExplanation:
         Its kind, e.g. ``"unit"``, ``"hydrate-water"``, ``"molar-mass"``.
     words : str
         What was slipped, e.g. ``"a molar mass without its 2 H2O"``.
-    expected : float
-        By what factor of the right one the slip changes the level; the mode sum over 3 per atom that it gives.
+    expected : float or None
+        By what factor of the right one the slip changes the level; the mode sum over 3 per atom that it gives. None
+        where it has no factor of its own (addenda, temperatures) or where several numbers of H2O fit.
     remedy : str
         What to do where it is the reason.
     """
 
     slip: str
     words: str
-    expected: float
+    expected: float | None
     remedy: str
 
 
