@@ -109,6 +109,18 @@ def test_line_numbers_end_with_the_file(tmp_path: Path) -> None:
             read_text(tmp_path, table, mask_lines=((3, 4),))
 
 
+def test_masked_intervals_may_overlap_and_miss_the_rows(tmp_path: Path) -> None:
+    """Both ends of an interval are masked, rows in two of them counted in each, and lines without a row in none."""
+    lines = ((5, 6), (6, 7), (1, 3))
+    measurement = read_text(
+        tmp_path, "# a\n# b\nT/K,Cp/R\n" + "".join(f"{k},1\n" for k in range(4, 10)), mask_lines=lines
+    )
+    assert measurement.set_aside == (None, *(f"line {k} masked" for k in (5, 6, 7)), None, None)
+    assert [each for each in messages(measurement) if "masked by" in each] == [
+        "2 rows masked by lines 5:6", "2 rows masked by lines 6:7", "no row masked by lines 1:3",
+    ]  # fmt: skip
+
+
 def test_pair_of_lines_is_an_interval(tmp_path: Path) -> None:
     """From Python (2, 4) are three lines, as windows are; [2, 4] are two; three numbers in brackets are refused."""
     (tmp_path / "run.csv").write_text(TABLE, encoding="utf-8")
@@ -174,6 +186,10 @@ def test_too_many_runs_are_refused(tmp_path: Path) -> None:
     rows = "".join(f"{k},1,r{k}x\n" for k in range(1, division.MAX_RUNS + 2))
     with pytest.raises(InputError, match="'run' has 201 values in 201 rows, which looks like a measured quantity"):
         read_text(tmp_path, "T/K,Cp/R,run\n" + rows, split_by="run")
+    series = [f"Series {k}\n{k},1\n" for k in range(1, division.MAX_RUNS + 2)]
+    with pytest.raises(InputError, match="begin a series divide it into 201 runs, more than the 200 of a file; divide"):
+        read_text(tmp_path, "T/K,Cp/R\n" + "".join(series), split_by="series")
+    assert len(read_text(tmp_path, "T/K,Cp/R\n" + "".join(series[:-1]), split_by="series").readings) == 200
 
 
 def test_rows_above_the_first_series(tmp_path: Path) -> None:

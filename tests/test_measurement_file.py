@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -134,6 +135,18 @@ def test_files_are_kept(tmp_path: Path) -> None:
     assert latticefit.write_measurement(read, tmp_path / "mine.csv", replace=True) == tmp_path / "mine.csv"
     assert "1.0,2.0\n3.0,4.0\n" in (tmp_path / "mine.csv").read_text("utf-8")
     assert {each.name for each in tmp_path.iterdir()} == {"run.csv", "mine.csv"}
+
+
+def test_addenda_file_is_never_replaced(tmp_path: Path) -> None:
+    """The file that was taken off is one that was read, by whatever name it is reached."""
+    (tmp_path / "blank.csv").write_text("T_K,C_J_K\n1,1e-3\n3,2e-3\n", encoding="utf-8")
+    (tmp_path / "other").symlink_to("blank.csv")
+    read = read_text(tmp_path, "T_K,C_J_K\n1,2\n3,4\n")
+    blank = replace(read.readings[0], path=str(tmp_path / "blank.csv"), file="blank.csv")
+    gone = replace(blank, path=str(tmp_path / "gone.csv"))
+    for name in ("blank.csv", "other"):
+        with pytest.raises(InputError, match="was read for this measurement; it is never replaced"):
+            latticefit.write_measurement(replace(read, addenda_readings=(gone, blank)), tmp_path / name, replace=True)
 
 
 def test_what_would_not_read_back_is_refused() -> None:

@@ -109,6 +109,28 @@ def test_input_names_stay_in_their_folder(name: str, metal: Analysis, tmp_path: 
     assert _names(tmp_path) == {"measured", "out"}
 
 
+@pytest.mark.parametrize(
+    ("name", "copy"),
+    [
+        ("CON.csv", "_CON.csv"),
+        ("aux", "_aux"),
+        ("Com1 .tar.gz", "_Com1 .tar.gz"),
+        ("lpt\u00b2.txt", "_lpt\u00b2.txt"),
+        (".nul.csv", "_nul.csv"),
+        ("console.csv", "console.csv"),
+        ("com10.csv", "com10.csv"),
+        ("\u71b1" * 90 + ".csv", "\u71b1" * 38 + ".csv"),
+    ],
+)
+def test_input_names_that_some_systems_refuse(name: str, copy: str, metal: Analysis, tmp_path: Path) -> None:
+    """Names of devices get a sign before them, whatever their ending, and long ones are cut by their bytes.
+
+    The names: common practice, no source.
+    """
+    out = write_report(_with_settings(metal, file=name), tmp_path / "out", figures="none")
+    assert copy in _names(out / "inputs")
+
+
 def test_names_that_differ_in_case_only_are_kept_apart(metal: Analysis, tmp_path: Path) -> None:
     """Some file systems know no case: HALDEN.CSV and halden.csv get two names."""
     out = write_report(_with_settings(metal, file="HALDEN.CSV"), tmp_path / "out", figures="none")

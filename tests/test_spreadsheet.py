@@ -14,7 +14,7 @@ from reading_helpers import messages, read_text
 import latticefit
 from latticefit.cli import main
 from latticefit.errors import InputError
-from latticefit.reading import spreadsheet, text
+from latticefit.reading import sheet_size, spreadsheet, table, text
 
 TABLE = [["invented data", None], ["T (K)", "Cp (J/(mol K))"], [1.5, 2.25], [3, 4.5]]
 
@@ -98,6 +98,52 @@ def test_row_far_down_is_refused(tmp_path: Path) -> None:
         read_text(tmp_path, data)
 
 
+def test_empty_cells_beside_the_table_do_not_count(tmp_path: Path) -> None:
+    """Two columns of 2500 rows under a long note with many words are read, with a gap in a row and one in the rows."""
+    rows = [
+        ["invented data, " * 100],
+        [*TABLE[1], "q"],
+        *([1.5 + k, 2.25] for k in range(2500)),
+        [],
+        [9e3, None, 7],
+        [1e4, 8],
+    ]
+    measurement = read_text(tmp_path, book(rows))
+    assert measurement.temperature.size == 2501
+    assert (measurement.line[-1], measurement.heat_capacity[-1]) == (2505, 8)
+    assert [(each.line, each.reason) for each in measurement.excluded] == [(2504, "no heat capacity")]
+
+
+def test_note_of_many_words_is_no_table_of_many_columns(tmp_path: Path) -> None:
+    """Blanks and commas in a cell of a spreadsheet separate no columns."""
+    rows = [["invented, data " * 1100], *TABLE[1:]]
+    assert list(read_text(tmp_path, book(rows)).heat_capacity) == [2.25, 4.5]
+
+
+def test_text_without_end_is_refused(tmp_path: Path) -> None:
+    """The text of a cell has a limit, and that of all cells together, as often as it stands there."""
+    long = with_part(book([["x"], *TABLE]), SHEET, lambda xml: xml.replace(b">x<", b">" + b"x" * 200_000 + b"<"))
+    with pytest.raises(InputError) as caught:
+        read_text(tmp_path, long)
+    assert str(caught.value) == (
+        "run.csv: row 1 has a cell of 200000 characters, more than the 32767 that are read; shorten it, or save the "
+        "table as CSV"
+    )
+    with pytest.raises(InputError, match="its cells hold more than the 50 MB of text that are read"):
+        read_text(tmp_path, book([["x" * 32_000] * 40] * 40))
+
+
+def test_memory_that_ends_is_told_in_words(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Where the memory ends although no limit is passed, that is no damage and no traceback."""
+
+    def full(rows: list[list[str]]) -> list[str]:
+        raise MemoryError
+
+    monkeypatch.setattr(spreadsheet, "_lines", full)
+    with pytest.raises(InputError, match="needs more memory than there is; save the table as CSV"):
+        read_text(tmp_path, book(TABLE))
+
+
 def test_missing_library_is_named(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     """Without the extra the sentence says what to install."""
     monkeypatch.setitem(__import__("sys").modules, "openpyxl", None)
@@ -111,6 +157,10 @@ def test_text_limits(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
         read_text(tmp_path, "# invented data\n" + ",".join("1" * 10_000) + "\n")
     with pytest.raises(InputError, match="line 1 has 100001 characters, more than the 100000 that are read"):
         read_text(tmp_path, "1" * 100_001)
+    assert table.MAX_TABLE_CELLS > 100_000 * 40  # a long log of many columns is read
+    monkeypatch.setattr(table, "MAX_TABLE_CELLS", 9)
+    with pytest.raises(InputError, match="has more than 9 cells down to line 5, the most that are read; keep the"):
+        read_text(tmp_path, "1,2\n" * 9)
     monkeypatch.setattr(text, "MAX_LINES", 5)
     with pytest.raises(InputError, match="has 6 lines, more than the 5 that are read"):
         read_text(tmp_path, "1,2\n" * 6)
@@ -221,6 +271,11 @@ REPEATED = 'table:number-columns-repeated="{}"'
         (HEAD + row(cell(1.5, REPEATED.format(999_999_999))), "row 2 has more than the 1000 columns that are read"),
         (row(EMPTY, more='table:number-rows-repeated="999999999"') + row(1.5, 2.5), "more than the 2000000 cells"),
         (HEAD + row(f"<table:table-cell {REPEATED.format(9999)}/>", 1.5), "row 2 has more than the 1000 columns"),
+        (HEAD + row("x" * 200_000), "row 2 has a cell of 200000 characters, more than the 32767 that are read"),
+        (
+            HEAD + row(cell("x" * 9_000, REPEATED.format(900)), more='table:number-rows-repeated="1500"'),
+            "its cells hold more than the 50 MB of text that are read",
+        ),
         (row(cell(1.5, REPEATED.format("9" * 30))), r"the spreadsheet is damaged \(ValueError\)"),
         (row(cell(1.5, REPEATED.format(-1))), r"the spreadsheet is damaged \(ValueError\)"),
         (row("x") * 3, "no worksheet holds two columns of numbers"),
@@ -233,6 +288,16 @@ def test_ods_that_would_fill_the_memory_or_is_damaged(rows: str, words: str, tmp
     """Cells, columns and rows that repeat without end are refused before one is repeated, damage in one sentence."""
     with pytest.raises(InputError, match=words):
         read_text(tmp_path, ods(rows))
+
+
+def test_cells_are_counted_over_all_sheets(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Sheets that are each within the limit pass it together; one that is chosen is counted alone."""
+    monkeypatch.setattr(sheet_size, "MAX_CELLS", 10)
+    sheet = HEAD + row(1.5, 2.25) + row(3.0, 4.5)
+    for data in (ods(sheet, sheet), books("b", "a")):
+        with pytest.raises(InputError, match="has more than the 10 cells that are read"):
+            read_text(tmp_path, data)
+        assert read_text(tmp_path, data, worksheet="a").temperature.size == 2
 
 
 def test_ods_without_the_library_for_xlsx(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
@@ -267,10 +332,11 @@ def books(*titles: str) -> bytes:
 @pytest.mark.parametrize(("worksheet", "rows"), [("2", 3), ("3", 4), (" run ", 2), ("4", 5), ("run", 2)])
 def test_worksheet_by_name_goes_before_its_number(worksheet: str, rows: int, tmp_path: Path) -> None:
     """A sheet that is called 3 is read for "3", be it the second or the third; any other number counts from 1."""
-    measurement = read_text(tmp_path, books("run", "x", "3", " "), worksheet=worksheet)
+    data = books("run", "x", "3", " ")  # once: the library writes the time into it
+    measurement = read_text(tmp_path, data, worksheet=worksheet)
     assert measurement.readings[0].rows == rows
     settings = measurement.readings[0].settings
-    again = read_text(tmp_path, books("run", "x", "3", " "), **{"worksheet": settings.worksheet})
+    again = read_text(tmp_path, data, **{"worksheet": settings.worksheet})
     assert again.readings == measurement.readings
 
 

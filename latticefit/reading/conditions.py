@@ -9,6 +9,8 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from typing import Final
 
+import numpy as np
+
 from ..errors import InputError
 from ..records import FloatArray, RunSettings
 from .columns import chosen_column, find_column
@@ -120,13 +122,16 @@ def _masked(
     table: Table, lines: tuple[tuple[int, int], ...], last_line: int, shown: str
 ) -> tuple[list[str | None], list[str]]:
     notes = []
+    row_lines = np.array([row.line for row in table.rows], dtype=np.intp)  # they rise, so each interval is a slice
+    masked = np.zeros(row_lines.size, dtype=np.bool_)
     for first, last in lines:
         if last > last_line:
             raise InputError(f"{shown}: there is no line {last} to mask; the last one is {last_line}")
-        count = sum(first <= row.line <= last for row in table.rows)
+        start, stop = np.searchsorted(row_lines, [first, last + 1])
+        masked[start:stop] = True
+        count = int(stop - start)
         where = line_interval_text((first, last))
         notes.append(f"{counted(count, 'row') if count else 'no row'} masked by lines {where}")
-    masked = [any(first <= row.line <= last for first, last in lines) for row in table.rows]
     return [f"line {row.line} masked" if out else None for row, out in zip(table.rows, masked, strict=True)], notes
 
 

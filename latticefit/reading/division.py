@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 import re
+from collections import deque
 from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Final
@@ -90,7 +91,7 @@ def divide_rows(
     wanted = split_by.strip() if isinstance(split_by, str) else split_by
     column = find_column(columns, wanted, shown)
     if column is None and isinstance(wanted, str) and wanted.casefold() == "series" and table.series:
-        return _by_series(table, usable)
+        return _by_series(table, usable, shown)
     if column is None:
         column = chosen_column(columns, wanted, "--split-by", shown)
     if column in data:
@@ -175,16 +176,21 @@ def _merged(table: Table, column: Column, values: list[str]) -> tuple[str, ...]:
     )
 
 
-def _by_series(table: Table, usable: NDArray[np.bool_]) -> Division:
+def _by_series(table: Table, usable: NDArray[np.bool_], shown: str) -> Division:
     """Divide at the lines that begin a series; rows above the first of them are a run of their own."""
     before = f"above {table.series[0][1]}"
     names: dict[str, int] = {}
-    numbers, starts = [], list(table.series)
+    numbers, starts = [], deque(table.series)
     current = before
     for row, use in zip(table.rows, usable, strict=True):
         while starts and starts[0][0] < row.line:
-            current = starts.pop(0)[1]
+            current = starts.popleft()[1]
         numbers.append(names.setdefault(current, len(names)) if use or current in names else -1)
+    if len(names) > MAX_RUNS:
+        raise InputError(
+            f"{shown}: lines that begin a series divide it into {len(names)} runs, more than the {MAX_RUNS} of a file; "
+            "divide it by a column, or not at all"
+        )
     of_row = _filled(numbers)
     return Division(tuple(names), (False,) * len(names), of_row, (_summary("series", tuple(names), of_row),))
 

@@ -7,6 +7,8 @@ from collections.abc import Callable
 from typing import IO, Final
 from xml.parsers import expat
 
+from .sheet_size import SheetSize
+
 __all__ = ["OdsSheets", "read_ods"]
 
 OdsSheets = dict[str, list[list[str]]]
@@ -22,12 +24,8 @@ _NOT_READ: Final = frozenset({f"{_OFFICE}annotation", f"{_TABLE}tracked-changes"
 _DRAWING: Final = "urn:oasis:names:tc:opendocument:xmlns:drawing:1.0 "
 _NUMBER: Final = re.compile(r"[-+]?(?:\d+\.?\d*|\.\d+)(?:[eE][-+]?\d{1,4})?", re.ASCII)
 
-Refuse = Callable[[int, str], Exception]
 
-
-def read_ods(
-    content: IO[bytes], wanted: Callable[[int, str], bool], limits: tuple[int, int], refuse: Refuse
-) -> OdsSheets:
+def read_ods(content: IO[bytes], wanted: Callable[[int, str], bool], size: SheetSize) -> OdsSheets:
     """Read the sheets of a spreadsheet.
 
     Parameters
@@ -36,17 +34,17 @@ def read_ods(
         The part ``content.xml``.
     wanted : callable
         Says for the 0-based number and the name of a sheet whether its rows are read; else it comes out empty.
-    limits : (int, int)
-        Most columns of a sheet and most cells; both are kept before a cell is repeated.
-    refuse : callable
-        Makes the exception for what is beyond the limits: row (0 where it is the whole sheet) and what is too many.
+    size : SheetSize
+        Counts what all sheets hold, before a cell or a row is repeated.
 
     Raises
     ------
+    InputError
+        If it is too large.
     ValueError
         If it is damaged.
     """
-    reader = _Reader(wanted, limits, refuse)
+    reader = _Reader(wanted, size)
     parser = expat.ParserCreate(namespace_separator=" ")
     parser.buffer_text = True
     parser.StartElementHandler = reader.start
@@ -62,13 +60,12 @@ def read_ods(
 class _Reader:
     """What has been read so far; empty cells and rows at the end of a row or a sheet are counted, not kept."""
 
-    def __init__(self, wanted: Callable[[int, str], bool], limits: tuple[int, int], refuse: Refuse) -> None:
+    def __init__(self, wanted: Callable[[int, str], bool], size: SheetSize) -> None:
         self.sheets: OdsSheets = {}
-        self._wanted, self._refuse = wanted, refuse
-        self._most_columns, self._most_cells = limits
+        self._wanted, self._size = wanted, size
         self._unread = 0  # how deep inside something that is not read
         self._rows: list[list[str]] = []
-        self._cells = self._empty_rows = self._empty_cells = 0
+        self._empty_rows = self._empty_cells = 0
         self._repeat = 1
         self._row: list[str] | None = None
         self._cell: dict[str, str] | None = None
@@ -109,7 +106,7 @@ class _Reader:
         if title in self.sheets:
             raise ValueError("two sheets of one name")
         self._rows = self.sheets[title] = []
-        self._cells = self._empty_rows = 0
+        self._empty_rows = 0
         if not self._wanted(number, title):
             self._unread = 1
 
@@ -117,8 +114,9 @@ class _Reader:
         if not value:
             self._empty_cells += count
             return
-        if len(row) + self._empty_cells + count > self._most_columns:
-            raise self._refuse(len(self._rows) + self._empty_rows + 1, "columns")
+        number = len(self._rows) + self._empty_rows + 1
+        self._size.check_columns(number, len(row) + self._empty_cells + count)
+        self._size.check_cell(number, len(value))
         row += [""] * self._empty_cells + [value] * count
         self._empty_cells = 0
 
@@ -126,9 +124,8 @@ class _Reader:
         if not row:
             self._empty_rows += self._repeat
             return
-        self._cells += self._empty_rows + len(row) * self._repeat
-        if self._cells > self._most_cells:
-            raise self._refuse(0, "cells")
+        self._size.add_empty(self._empty_rows)
+        self._size.add_row(row, self._repeat)
         self._rows += [[] for _ in range(self._empty_rows)] + [row] * self._repeat
         self._empty_rows = 0
 

@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import io
+import itertools
+import operator
 import re
 import warnings
 import zipfile
@@ -11,15 +13,14 @@ from typing import Any, Final
 
 from ..errors import InputError, nearest
 from .opendocument import read_ods
+from .sheet_size import MAX_SHEET_COLUMNS, SheetSize
 from .wording import listed, quoted, shown_name
 
-__all__ = ["MAX_CELLS", "MAX_SHEET_COLUMNS", "MAX_UNPACKED", "spreadsheet_lines"]
+__all__ = ["MAX_UNPACKED", "spreadsheet_lines"]
 
 MAX_UNPACKED: Final = 100_000_000
 """Bytes of all parts of a spreadsheet together; the sizes are declared in its directory and kept by the library."""
 MAX_PARTS: Final = 1000
-MAX_SHEET_COLUMNS: Final = 1000
-MAX_CELLS: Final = 2_000_000
 
 _ENTITY_MARKS: Final = tuple(
     mark.encode(encoding) for mark in ("<!DOCTYPE", "<!ENTITY") for encoding in ("ascii", "utf-16-le", "utf-16-be")
@@ -59,16 +60,17 @@ def spreadsheet_lines(
             titles = list(read(lambda number, title: False)) if worksheet is not None else []
             chosen = None if worksheet is None else _chosen(titles, worksheet, shown)
             sheets = read(lambda number, title: chosen in (None, number))
+            if chosen is None:
+                return _only_table(sheets, shown)
+            return _lines(sheets[titles[chosen]]), (), _name_again(titles[chosen], titles)
     except InputError:
         raise
+    except MemoryError:
+        raise InputError(f"{shown}: the spreadsheet needs more memory than there is; save the table as CSV") from None
     except Exception as error:  # neither archives nor the library have a single exception for a damaged file
         raise InputError(
             f"{shown}: the spreadsheet is damaged ({type(error).__name__}); save it once more, or as CSV"
         ) from None
-    if chosen is None:
-        return _only_table(sheets, shown)
-    title = titles[chosen]
-    return _lines(sheets[title]), (), _name_again(title, titles)
 
 
 _Wanted = Callable[[int, str], bool]
@@ -100,12 +102,9 @@ def _ods(archive: zipfile.ZipFile, names: set[str], shown: str) -> Callable[[_Wa
         raise InputError(f"{shown}: the spreadsheet is protected by a password; save it without, or as CSV")
     _refuse_entities(archive, archive.getinfo("content.xml"), shown)
 
-    def refuse(row: int, what: str) -> InputError:
-        return _too_many_columns(row, shown) if what == "columns" else _too_many_cells(shown)
-
     def read(wanted: _Wanted) -> dict[str, list[list[str]]]:
         with archive.open("content.xml") as content:
-            sheets = read_ods(content, wanted, (MAX_SHEET_COLUMNS, MAX_CELLS), refuse)
+            sheets = read_ods(content, wanted, SheetSize(shown))
         if not sheets:
             raise InputError(f"{shown}: is an OpenDocument file but no spreadsheet; save the table as CSV")
         return sheets
@@ -120,11 +119,12 @@ def _xlsx(data: bytes, shown: str) -> Callable[[_Wanted], dict[str, list[list[st
         raise InputError(f"{shown}: is a spreadsheet; install openpyxl to read it, or save the table as CSV") from None
 
     def read(wanted: _Wanted) -> dict[str, list[list[str]]]:
+        size = SheetSize(shown)
         with warnings.catch_warnings():
             warnings.simplefilter("ignore")  # the library warns of styles and validations, which are not read
             book = openpyxl.load_workbook(io.BytesIO(data), read_only=True, data_only=True)
             return {
-                sheet.title: list(_rows(sheet, shown)) if wanted(number, sheet.title) else []
+                sheet.title: list(_rows(sheet, size)) if wanted(number, sheet.title) else []
                 for number, sheet in enumerate(book.worksheets)
             }
 
@@ -164,27 +164,39 @@ def _refuse_entities(archive: zipfile.ZipFile, part: zipfile.ZipInfo, shown: str
             tail = chunk[-24:]
 
 
-def _rows(sheet: Any, shown: str) -> Iterator[list[str]]:
+def _rows(sheet: Any, size: SheetSize) -> Iterator[list[str]]:
+    """Give the rows down to the last that holds something; the library fills those up that a file leaves out."""
     sheet.reset_dimensions()  # the size that a file states need not be true
-    cells, last = 0, 0
-    for row in sheet.iter_rows(max_col=MAX_SHEET_COLUMNS + 1):
-        number = next((cell.row for cell in row if getattr(cell, "row", None)), last + 1)
-        cells += max(len(row), 1) + number - last - 1
-        if len(row) > MAX_SHEET_COLUMNS and row[-1].value is not None:
-            raise _too_many_columns(number, shown)
-        if cells > MAX_CELLS:
-            raise _too_many_cells(shown)
-        yield from ([] for _ in range(number - last - 1))
-        last = number
-        yield [_text(cell) for cell in row]
+    blank, empty = None, 0
+    for number, row in enumerate(sheet.iter_rows(max_col=MAX_SHEET_COLUMNS + 1), start=1):
+        # the library gives one and the same row for all that are left out; there may be a million of them
+        texts = [] if row is blank else _texts(row, number, size)
+        if not texts:
+            blank, empty = row, empty + 1
+            size.add_empty(1)
+            continue
+        size.check_columns(number, len(texts))
+        size.add_row(texts)
+        yield from ([] for _ in range(empty))
+        empty = 0
+        yield texts
 
 
-def _too_many_columns(row: int, shown: str) -> InputError:
-    return InputError(f"{shown}: row {row} has more than the {MAX_SHEET_COLUMNS} columns that are read")
+def _texts(row: tuple[Any, ...], number: int, size: SheetSize) -> list[str]:
+    """Return the cells of a row without the empty ones at its end, with which the library fills it up."""
+    from openpyxl.cell.read_only import EMPTY_CELL
 
-
-def _too_many_cells(shown: str) -> InputError:
-    return InputError(f"{shown}: has more than the {MAX_CELLS} cells that are read; save the table as CSV")
+    width = 1
+    while not all(map(operator.is_, row[width:], itertools.repeat(EMPTY_CELL))):
+        width *= 2
+    texts = []
+    for cell in row[:width]:
+        if isinstance(cell.value, str):
+            size.check_cell(number, len(cell.value))
+        texts.append(_text(cell))
+    while texts and not texts[-1]:
+        texts.pop()
+    return texts
 
 
 def _text(cell: Any) -> str:

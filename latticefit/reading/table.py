@@ -16,9 +16,11 @@ from .text import TextFile
 from .values import is_number
 from .wording import counted, quoted, shown_name
 
-__all__ = ["MAX_COLUMNS", "Table", "find_table"]
+__all__ = ["MAX_COLUMNS", "MAX_TABLE_CELLS", "Table", "find_table"]
 
 MAX_COLUMNS: Final = 1000
+MAX_TABLE_CELLS: Final = 5_000_000
+"""Cells of a file; each takes some 70 bytes of memory, so that these take about half a gigabyte."""
 _SAMPLED_LINES: Final = 200
 _SPREADSHEET_ERROR: Final = re.compile(r"\s*#(?:N/A|DIV/0!|VALUE!|NUM!)", re.IGNORECASE)  # an empty cell, no comment
 _DELIMITERS: Final[dict[str, str | None]] = {"tab": "\t", "semicolon": ";", "comma": ",", "blank": None}
@@ -62,16 +64,12 @@ def find_table(source: TextFile, masked: Sequence[tuple[int, int]] = ()) -> Tabl
         If there is none, if it has one column, or if it is not clear where its columns are.
     """
     shown = shown_name(source.name)
-    _refuse_wide(source.lines, shown)
+    _refuse_wide(source, shown)
     lines = _without_comments(source.lines)
     if not lines:
         raise InputError(f"{shown}: holds comments only, no data")
     delimiter = source.delimiter or _find_delimiter(_sample(lines))
-    rows, plain_blanks = [], any(re.search(r"\S[ \t]+\S", line.text) for line in lines)
-    for line, text in lines:
-        cells = _split(text, delimiter, plain_blanks)
-        if any(cells):
-            rows.append(Row(line, cells))
+    rows = _rows(lines, delimiter, shown)
     if not any(is_number(cell) for row in rows for cell in row.cells):
         raise InputError(f"{shown}: no column holds numbers")
     texts = dict(lines)
@@ -94,9 +92,26 @@ def find_table(source: TextFile, masked: Sequence[tuple[int, int]] = ()) -> Tabl
     return Table(delimiter, headers, width, tuple(rows), notes, parts.repairs, parts.series)
 
 
-def _refuse_wide(lines: list[str], shown: str) -> None:
+def _rows(lines: list[_Line], delimiter: str, shown: str) -> list[Row]:
+    """Split the lines, unless their cells would fill the memory."""
+    rows, plain_blanks = [], any(re.search(r"\S[ \t]+\S", line.text) for line in lines)
+    count = 0
+    for line, text in lines:
+        cells = _split(text, delimiter, plain_blanks)
+        count += len(cells)
+        if count > MAX_TABLE_CELLS:
+            most = f"more than {MAX_TABLE_CELLS} cells down to line {line}, the most that are read"
+            raise InputError(f"{shown}: has {most}; keep the columns that are needed, or fewer rows")
+        if any(cells):
+            rows.append(Row(line, cells))
+    return rows
+
+
+def _refuse_wide(source: TextFile, shown: str) -> None:
     """Refuse too many columns before a line is split into them."""
-    for number, line in enumerate(lines, start=1):
+    if source.delimiter is not None:  # a spreadsheet, whose columns have been counted; a note in it may have many words
+        return
+    for number, line in enumerate(source.lines, start=1):
         if len(line) <= 2 * MAX_COLUMNS or line.lstrip().startswith("#"):
             continue
         columns = (

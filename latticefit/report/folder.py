@@ -36,7 +36,9 @@ _OUR_NAMES = frozenset(
 )
 # Characters that some file system refuses, and all that could leave the folder; leading dots would hide the file.
 _UNSAFE_IN_NAME = re.compile(r'[<>:"/\\|?*]')
-_LONGEST_NAME = 120
+# Names of devices on some systems, whatever ending follows them.
+_RESERVED = re.compile(r"(?i)(?:con|prn|aux|nul|conin\$|conout\$|(?:com|lpt)[0-9\u00b9\u00b2\u00b3]) *(?:\.|$)")
+_LONGEST_NAME = 120  # bytes, of which file systems take 255; a number may be added
 
 
 def check_out_folder(out: Path, replace: bool) -> None:
@@ -171,9 +173,9 @@ def _write_figures(analysis: Analysis, folder: Path, figures: str) -> dict[str, 
 def _file_name(name: str) -> str:
     """A file name that every system accepts and that stays in its folder."""
     safe = "".join("_" if not each.isprintable() else each for each in name)
-    safe = _UNSAFE_IN_NAME.sub("_", safe).strip(" ").lstrip(".")
-    stem, dot, ending = safe[-_LONGEST_NAME:].rpartition(".")
-    return f"{stem or 'input'}{dot}{ending}".rstrip(". ") or "input"
+    safe = _UNSAFE_IN_NAME.sub("_", safe).encode()[-_LONGEST_NAME:].decode(errors="ignore")
+    whole = safe.strip(". ") or "input"
+    return f"_{whole}" if _RESERVED.match(whole) else whole
 
 
 def _copy_inputs(analysis: Analysis, folder: Path) -> list[str]:

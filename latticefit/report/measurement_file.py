@@ -6,6 +6,7 @@ import csv
 import io
 import re
 import secrets
+from contextlib import suppress
 from pathlib import Path
 from typing import Final
 
@@ -116,12 +117,13 @@ def write_measurement_file(measurement: Measurement, path: Path, replace: bool =
     Raises
     ------
     InputError
-        When the file exists already (with `replace`: and was read for this measurement) or cannot be written.
+        When the file exists already (with `replace`: and was read for this measurement, addenda included), or cannot
+        be written.
     """
     shown, text = harmless(str(path)), measurement_csv(measurement)
     if path.is_dir():
         raise InputError(f"{shown!r} is a folder; name a file")
-    if path.exists() and any(path.resolve() == Path(each.path) for each in measurement.readings):
+    if path.exists() and _was_read(path, measurement):
         raise InputError(f"{shown!r} is a file that was read for this measurement; it is never replaced, name another")
     if path.exists() and not replace:
         raise InputError(f"{shown!r} exists already; name another file, or give replace=True")
@@ -136,3 +138,12 @@ def write_measurement_file(measurement: Measurement, path: Path, replace: bool =
         reason = error.strerror if isinstance(error, OSError) and error.strerror else str(error)
         raise InputError(f"{shown!r} cannot be written ({reason}); name another file") from error
     return path
+
+
+def _was_read(path: Path, measurement: Measurement) -> bool:
+    """Say whether a file is one of those read, addenda included, whatever the names by which both are reached."""
+    for reading in (*measurement.readings, *measurement.addenda_readings):
+        with suppress(OSError):  # a file that is gone since
+            if path.samefile(reading.path):
+                return True
+    return False
