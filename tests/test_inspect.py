@@ -185,6 +185,7 @@ def test_columns_that_were_not_used_are_listed(tmp_path: Path) -> None:
     header = "T/K,Cp/(J/(mol K)),s/(J/(mol K)),remark,quality"
     rows = "".join(f"{10 * k},{k},0.1,ok,1\n" for k in range(1, 7))
     found = read_text(tmp_path, f"{header}\n{rows}", require=("quality >= 0.9",))
-    assert inspection_record(found)["unused_columns"] == ["s/(J/(mol K))", "remark"]
-    assert "not used    s/(J/(mol K))\n" in inspection_text(found)
-    assert "  not used  " not in inspection_text(read_text(tmp_path, "T/K,Cp/(J/(mol K)),remark\n1,2,a\n2,3,b\n"))
+    assert inspection_record(found, examination.examine(found))["unused_columns"] == ["s/(J/(mol K))", "remark"]
+    assert "not used    s/(J/(mol K))\n" in inspection_text(found, examination.examine(found))
+    plain = read_text(tmp_path, "T/K,Cp/(J/(mol K)),remark\n1,2,a\n2,3,b\n")
+    assert "  not used  " not in inspection_text(plain, examination.examine(plain))

@@ -298,8 +298,8 @@ def test_no_run_is_refused() -> None:
             "T_K,Cp_J_molK\n1,2\n",
             "T_K,Cp_J_molK,sigma_J_molK\n1,2,1\n",
             {},
-            "runs 'a' and 'b': only one states an uncertainty; give 'a' one in a run sheet, as sigma = '1%' in its [[run]], "
-            "or estimate both by --sigma scatter",
+            "runs 'a' and 'b': only one states an uncertainty; give 'a' one in a run sheet, as sigma = '1%' in its "
+            "[[run]], or estimate both by --sigma scatter",
         ),
         (
             "T_K,Cp_J_molK\n1,2\n",
