@@ -7,7 +7,6 @@ writes data/demo/*.csv and data/demo/truth.toml; the same seeds give the same fi
 
 from __future__ import annotations
 
-import codecs
 from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
@@ -99,7 +98,7 @@ class Demo:
     noise: float
     seed: int
     write: Callable[[np.ndarray, np.ndarray, np.ndarray, float], list[str]]
-    utf16: bool = False
+    byte_order_mark: bool = False
 
 
 def with_sigma(T: np.ndarray, C: np.ndarray, sigma: np.ndarray, molar_mass: float) -> list[str]:
@@ -235,7 +234,7 @@ DEMOS = (
         0.006,
         105,
         per_gram_below_units,
-        utf16=True,
+        byte_order_mark=True,
     ),
 )
 
@@ -343,7 +342,7 @@ def run_truth() -> dict[str, object]:
         "quellite": {
             "title": "Quellite, crystal Q-3, with its blank",
             "formula": "NeXe",
-            "mass_mg": 1e6 * QUELLITE_MASS,
+            "mass_mg": round(1e6 * QUELLITE_MASS, 9),
             "noise_percent": 0.4,
             "solid": QUELLITE.facts,
         },
@@ -367,7 +366,7 @@ def truth_text() -> str:
 
 def files() -> dict[str, bytes]:
     """Every file's name and content."""
-    texts = {f"{demo.name}.csv": encoded("\n".join(lines(demo)) + "\n", demo.utf16) for demo in DEMOS}
+    texts = {f"{demo.name}.csv": encoded("\n".join(lines(demo)) + "\n", demo.byte_order_mark) for demo in DEMOS}
     runs = {
         "grannese_cold.csv": grannese(True),
         "grannese_warm.csv": grannese(False),
@@ -377,9 +376,9 @@ def files() -> dict[str, bytes]:
     return {**texts, **{name: encoded(text) for name, text in runs.items()}, "truth.toml": encoded(truth_text())}
 
 
-def encoded(text: str, utf16: bool = False) -> bytes:
-    """The bytes of a file: UTF-8, or UTF-16 with a byte order mark."""
-    return codecs.BOM_UTF16_LE + text.encode("utf-16-le") if utf16 else text.encode("utf-8")
+def encoded(text: str, byte_order_mark: bool = False) -> bytes:
+    """The bytes of a file, UTF-8: any search finds that the data are invented."""
+    return text.encode("utf-8-sig" if byte_order_mark else "utf-8")
 
 
 def main() -> None:

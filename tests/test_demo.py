@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import codecs
 import importlib.util
 import tomllib
 from types import ModuleType
@@ -41,7 +40,7 @@ def test_every_demo_file_is_made_by_its_script_and_says_invented_data() -> None:
 
 
 def decoded(content: bytes) -> list[str]:
-    return content.decode("utf-16" if content.startswith(codecs.BOM_UTF16_LE) else "utf-8").splitlines()
+    return content.decode("utf-8-sig").splitlines()
 
 
 @pytest.mark.parametrize("name", [name for name, facts in TRUTH.items() if "terms" in facts])
@@ -72,11 +71,11 @@ def test_the_sample_that_starts_at_50_k_refuses_its_low_temperature_theta() -> N
 
 
 def test_the_hydrate_is_read_as_it_comes_and_its_water_is_missed_where_it_is_left_out() -> None:
-    """Sjelite: UTF-16, semicolons, decimal commas, a row of units; right with its formula, found out without water."""
+    """Sjelite: byte order mark, semicolons, decimal commas, a row of units; right as it is, found out without water."""
     formula = TRUTH["sjelite"]["formula"]
     right = lf.read(DEMO / "sjelite.csv", formula=formula)
     reading = right.readings[0]
-    assert (reading.encoding, reading.delimiter, reading.decimal) == ("UTF-16 with BOM", "semicolon", "comma")
+    assert (reading.encoding, reading.delimiter, reading.decimal) == ("UTF-8 with BOM", "semicolon", "comma")
     assert reading.heat_capacity_unit == "J/(g K)"
     fit = lf.fit(right, terms="debye + einstein", cp_cv="nernst-lindemann")
     assert not {"mode-sum", "implausible-level", "above-classical-limit"} & set(fit.warnings["code"])

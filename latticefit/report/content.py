@@ -156,7 +156,7 @@ def _parameter_row(parameter: ParameterValue) -> Row:
 def _derived_row(value: DerivedValue) -> Row:
     if value.value is None:
         return Row(value.symbol, value.status, value.reason or value.definition)
-    shown = plus_minus(value.value, value.u, value.unit)
+    shown = plus_minus(value.value, value.u, value.unit) + ("" if value.u is not None else " (u withheld)")
     if value.status == "interval" and value.low is not None and value.high is not None:
         shown += f", {plain_number(value.low)} to {plain_number(value.high)} {shown_unit(value.unit)} (k = 2)"
     note = value.definition if value.reason is None else f"{value.definition}; {value.reason}"
